@@ -1,0 +1,32 @@
+/** What the tests call of packages that ship no types: second opinions on bytes and curves. */
+
+declare module 'cobs' {
+  /** `zeroFrame` also puts a zero before and after. */
+  export function encode(bytes: Uint8Array, zeroFrame?: boolean): Buffer;
+  export function decode(bytes: Uint8Array): Buffer;
+}
+
+declare module '@yr/monotone-cubic-spline' {
+  type XY = [x: number, y: number];
+  const spline: {
+    /** Bezier segments: the first point, then `[x1, y1, x2, y2, x, y]`, then shorthand `[x2, y2, x, y]`. */
+    points(points: XY[]): number[][];
+  };
+  export default spline;
+}
+
+declare module 'firmata-io' {
+  import type { EventEmitter } from 'node:events';
+
+  export class Firmata extends EventEmitter {
+    constructor(transport: EventEmitter & { write(bytes: Buffer): void }, options?: object, ready?: () => void);
+    readonly isReady: boolean;
+    servoConfig(pin: number, minUs: number, maxUs: number): void;
+    servoWrite(pin: number, value: number): void;
+    analogWrite(pin: number, value: number): void;
+    digitalWrite(pin: number, value: number): void;
+    pinMode(pin: number, mode: number): void;
+    reportAnalogPin(channel: number, on: 0 | 1): void;
+    setSamplingInterval(intervalMs: number): void;
+  }
+}
