@@ -25,7 +25,7 @@ const rooms = [
 ];
 
 const inRooms = (names) => `^src/(${names.join('|')})/`;
-const packages = (names) => `^node_modules/(${names.join('|')})/`;
+const packages = (names) => `(^|/)node_modules/(${names.join('|')})/`;
 
 /** A row imports no row below it. */
 const onlyRoomsAbove = rooms.slice(0, -1).map((room, row) => ({

@@ -1,0 +1,138 @@
+/**
+ * Everything the project promises about itself, in one command: the static checks, then the tests of the rooms, then
+ * the boards, then the smoke test alone and last. The last line printed is `N passed, N failed`.
+ */
+import { spawn } from 'node:child_process';
+import { existsSync, mkdirSync, readdirSync, readFileSync, rmSync } from 'node:fs';
+import { join, resolve } from 'node:path';
+import { provide, type SystemPackage } from './system-packages.ts';
+import { closingLine, sum, type Tally, tallyOfCheck, tallyOfReport, type VitestReport } from './tally.ts';
+
+const ROOT = resolve(import.meta.dirname, '..');
+const REPORTS = join(ROOT, '.cache', 'test');
+
+/** A step that hangs is ended: a test command must always come to its last line. */
+const STEP_LIMIT_MS = 20 * 60_000;
+
+/**
+ * The rooms run on this seed, so that a red run is red again on every machine. Their laws then run once more on a
+ * fresh printed seed (or on EIDOGRAPH_SEED, to replay one), so that every run also looks where none has looked before;
+ * that second pass counts as one check, because it is the same tests again.
+ */
+const FIXED_SEED = '1821';
+
+const SYSTEM_PACKAGES: readonly SystemPackage[] = [
+  { name: 'socat', program: 'socat', neededBy: 'tests of real serial ports (pseudo-terminals)' },
+];
+
+/** npm scripts of the same name, in order. */
+const CHECKS = ['types', 'lint', 'format:check', 'boundaries', 'unused', 'packaging'];
+
+const tallies: Tally[] = [];
+
+async function main(): Promise<void> {
+  rmSync(REPORTS, { recursive: true, force: true });
+  mkdirSync(REPORTS, { recursive: true });
+  const missing = provide(SYSTEM_PACKAGES);
+  sayMissing(missing);
+  for (const name of CHECKS) await step(name, () => check(name));
+  if (hasTests('')) await step('rooms', () => vitest('rooms', ['--project', 'rooms'], { EIDOGRAPH_SEED: FIXED_SEED }));
+  const lawful = foldersWithLaws();
+  if (lawful.length > 0) await step('laws on a fresh seed', () => freshLaws(lawful));
+  for (const project of ['boards', 'smoke']) {
+    if (hasTests(project)) {
+      await step(project, () => vitest(project, ['--project', project], { EIDOGRAPH_SEED: FIXED_SEED }));
+    }
+  }
+  const total = sum(tallies);
+  for (const name of total.skipped) console.log(`skipped: ${name}`);
+  for (const name of total.failed) console.log(`FAILED: ${name}`);
+  sayMissing(missing);
+  console.log(closingLine(total));
+  process.exitCode = total.failed.length === 0 ? 0 : 1;
+}
+
+async function step(name: string, run: () => Promise<Tally>): Promise<void> {
+  console.log(`\n== ${name}`);
+  const startMs = performance.now();
+  const tally = await run();
+  tallies.push(tally);
+  const seconds = ((performance.now() - startMs) / 1000).toFixed(1);
+  console.log(`== ${name}: ${tally.failed.length === 0 ? 'ok' : 'FAILED'}, ${seconds} s`);
+}
+
+async function check(name: string): Promise<Tally> {
+  return tallyOfCheck(name, await ended('npm', ['run', '--silent', name], {}));
+}
+
+async function vitest(name: string, args: readonly string[], env: NodeJS.ProcessEnv): Promise<Tally> {
+  const reportPath = join(REPORTS, `${name.replaceAll(' ', '-')}.json`);
+  const exitCode = await ended(
+    process.execPath,
+    [
+      join('node_modules', 'vitest', 'vitest.mjs'),
+      'run',
+      ...args,
+      '--reporter=default',
+      '--reporter=json',
+      `--outputFile.json=${reportPath}`,
+    ],
+    env,
+  );
+  const report = existsSync(reportPath) ? (JSON.parse(readFileSync(reportPath, 'utf8')) as VitestReport) : null;
+  return tallyOfReport(name, report, exitCode, ROOT);
+}
+
+async function freshLaws(folders: readonly string[]): Promise<Tally> {
+  const again = await vitest('laws on a fresh seed', ['--project', 'rooms', ...folders], {});
+  return again.failed.length === 0 ? { passed: 1, failed: [], skipped: [] } : { ...again, passed: 0, skipped: [] };
+}
+
+/** Folders of `tests/` in which a law is stated, whether in a test or in a file beside it. */
+function foldersWithLaws(): readonly string[] {
+  return readdirSync(join(ROOT, 'tests'), { withFileTypes: true })
+    .filter((entry) => entry.isDirectory() && entry.name !== 'boards' && entry.name !== 'smoke')
+    .map((entry) => join('tests', entry.name))
+    .filter((folder) => sourcesIn(folder).some((path) => readFileSync(path, 'utf8').includes("'fast-check'")))
+    .map((folder) => `${folder}/`);
+}
+
+function hasTests(folder: string): boolean {
+  return sourcesIn(join('tests', folder)).some((path) => path.endsWith('.test.ts'));
+}
+
+function sourcesIn(folder: string): readonly string[] {
+  const path = join(ROOT, folder);
+  if (!existsSync(path)) return [];
+  return readdirSync(path, { recursive: true, encoding: 'utf8' })
+    .filter((name) => name.endsWith('.ts'))
+    .map((name) => join(path, name));
+}
+
+/** Runs a program with its output shown as it comes; resolves with its exit status, 1 when it was ended by a signal. */
+function ended(program: string, args: readonly string[], env: NodeJS.ProcessEnv): Promise<number> {
+  return new Promise((done) => {
+    const child = spawn(program, args, {
+      cwd: ROOT,
+      env: { ...process.env, ...env },
+      stdio: ['ignore', 'inherit', 'inherit'],
+      timeout: STEP_LIMIT_MS,
+      killSignal: 'SIGKILL',
+      // npm is a script on Windows, which only a shell starts.
+      shell: program === 'npm' && process.platform === 'win32',
+    });
+    child.once('error', (error) => {
+      console.log(String(error));
+      done(1);
+    });
+    child.once('close', (code) => done(code ?? 1));
+  });
+}
+
+function sayMissing(missing: readonly SystemPackage[]): void {
+  for (const entry of missing) {
+    console.log(`missing: ${entry.name}, for ${entry.neededBy}; install it with: sudo apt-get install ${entry.name}`);
+  }
+}
+
+await main();
