@@ -1,4 +1,4 @@
-import { execFileSync } from 'node:child_process';
+import { spawnSync } from 'node:child_process';
 import { mkdirSync, mkdtempSync, readdirSync, rmSync, writeFileSync } from 'node:fs';
 import { join } from 'node:path';
 import { afterAll, beforeAll, describe, expect, it } from 'vitest';
@@ -54,12 +54,18 @@ describe('the published package', { timeout: LIMIT_MS }, () => {
       "import { virtualClock } from 'eidograph';\nconst instantUs: number = virtualClock(5).nowUs();\nconsole.log(instantUs);\n",
     );
     const tsc = join(ROOT, 'node_modules', 'typescript', 'bin', 'tsc');
-    const options = ['--strict', '--module', 'nodenext', '--target', 'es2023', '--types', 'node'];
+    const options = ['--strict', '--module', 'nodenext', '--target', 'es2023', '--types', 'node', '--ignoreConfig'];
     run(process.execPath, [tsc, ...options, 'program.ts'], consumer);
     expect(run(process.execPath, ['program.js'], consumer)).toBe('5\n');
   });
 });
 
 function run(program: string, args: readonly string[], cwd: string): string {
-  return execFileSync(program, args, { cwd, encoding: 'utf8', stdio: ['ignore', 'pipe', 'inherit'] });
+  const { status, stdout, stderr } = spawnSync(program, args, {
+    cwd,
+    encoding: 'utf8',
+    stdio: ['ignore', 'pipe', 'pipe'],
+  });
+  if (status !== 0) throw new Error(`${program} ${args.join(' ')} ended with ${status}:\n${stdout}${stderr}`);
+  return stdout;
 }
