@@ -28,7 +28,7 @@ export interface PortListener {
   opened(): void;
   /** Bytes received; the buffer may be reused after the call. */
   data(bytes: Uint8Array): void;
-  /** The last write has left: the port can take another. */
+  /** The last write has left: the port can take another. Not said of a write that was lost with its connection. */
   idle(): void;
   /** It could not be opened, or was open and is no more; it is tried again after `retryMs`. */
   closed(fault: PortFault, retryMs: number): void;
@@ -40,8 +40,14 @@ export interface Port {
   start(listener: PortListener): void;
   /** True when it is open and no write is in flight. */
   readonly canTake: boolean;
-  /** Takes one write; false, and nothing taken, unless `canTake`. The bytes are copied or gone when it returns. */
+  /**
+   * Takes one write of 1 to `WRITE_BYTES_MAX` bytes; false, and nothing taken, unless `canTake`. The bytes are copied
+   * or gone when it returns.
+   */
   write(bytes: Uint8Array): boolean;
-  /** Ends it for good, after the write in flight or 200 ms; resolves when the system has let go. */
+  /**
+   * Ends it for good, after the write in flight or 200 ms; resolves when the system has let go, or has not within a
+   * second. The listener is told nothing more.
+   */
   close(): Promise<void>;
 }
