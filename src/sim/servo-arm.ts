@@ -21,7 +21,12 @@ export interface ServoArm {
 
 export interface ArmOptions {
   readonly name: string;
-  readonly servos: readonly ServoOptions[];
+  readonly servos: readonly ArmServoOptions[];
+}
+
+export interface ArmServoOptions extends ServoOptions {
+  /** Joints by index whose weighted sum is the servo's angle, for boards that are told degrees. */
+  readonly turns: readonly { readonly joint: number; readonly weight: number }[];
 }
 
 export function servoArm(clock: Clock, options: ArmOptions): ServoArm {
