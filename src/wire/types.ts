@@ -1,3 +1,5 @@
+import type { LinesCommands } from './lines-options.ts';
+
 /**
  * What boards and the bridge say to each other, as data. A wire is pure: it turns bytes into events and frames
  * into bytes, and knows no socket, stream, timer or clock.
@@ -29,6 +31,8 @@ export interface OutputWiring {
   /** Parallel to `Frame.pulsesUs`. */
   readonly servos: readonly ServoWiring[];
   readonly power: PowerWiring | null;
+  /** `lines` only: this follower's own texts, where several share a board; absent: those of the `WireChoice`. */
+  readonly lines?: LinesCommands;
 }
 
 export interface ServoWiring {
@@ -62,7 +66,10 @@ export type Garble = 'checksum' | 'oversize' | 'syntax' | 'count' | 'cut';
 
 /** What a wire has to tell. Objects and buffers are reused: valid until `emit` returns. */
 export type WireEvent =
-  /** `counts` is parallel to `InputWiring.channels`; NaN where this reading has no value. `boardUs` NaN if the board has no clock. */
+  /**
+   * `counts` is parallel to `InputWiring.channels`; NaN where this reading has no value. `boardUs` is the board's own
+   * time, going on past the wrap of its counter; NaN if the board has no clock.
+   */
   | { readonly kind: 'reading'; readonly counts: Float64Array; readonly boardUs: number }
   /** The greeting is over: readings will come, commands may go. */
   | { readonly kind: 'ready'; readonly board: string | null }
@@ -73,6 +80,10 @@ export type WireEvent =
   /** Bytes the wire itself has to write now (greeting, configuration). */
   | { readonly kind: 'send'; readonly bytes: Uint8Array }
   | { readonly kind: 'garbled'; readonly bytes: number; readonly why: Garble }
+  /** The board sent this many frames that never came whole (each damaged one is also told as `garbled`). */
+  | { readonly kind: 'lost'; readonly frames: number }
+  /** The board says it has no such channel: what is wired to it stays silent. Told before `ready`, which still comes. */
+  | { readonly kind: 'lacks'; readonly what: 'input' | 'output'; readonly channel: number }
   /** An answer to an echo request. */
   | { readonly kind: 'echo'; readonly id: number; readonly boardUs: number };
 
@@ -83,9 +94,12 @@ export interface WireSession {
   /** A connection has just opened: forget the former one and greet. */
   open(emit: Emit): void;
   push(bytes: Uint8Array, emit: Emit): void;
-  /** Called when the board's time to answer is over (2.5 s after opening, then each second until ready): ask again, or settle. */
+  /**
+   * Called when the board's time to answer is over (2.5 s after opening or after a `reboot`, then each second until
+   * ready): ask again, or settle. Does nothing once ready.
+   */
   nudge(emit: Emit): void;
-  /** Largest `encode`, `limp` or `power` of this output, in bytes: the size `out` must have. */
+  /** Largest `encode`, `limp`, `power` or `echo` of this output, in bytes: the size `out` must have. */
   frameBytesMax(output: number): number;
   /** Writes one command into `out` and the rounded pulses into `frame.sentUs`; returns its length in bytes (0: nothing to send). */
   encode(output: number, frame: Frame, out: Uint8Array): number;
@@ -93,7 +107,7 @@ export interface WireSession {
   limp(output: number, out: Uint8Array): number;
   /** Switches the output's power; 0 bytes if this wire, as configured, cannot. */
   power(output: number, on: boolean, out: Uint8Array): number;
-  /** Asks the board to answer, for timing; 0 bytes where the wire has no echo. */
+  /** Asks the board to answer, for timing; `id` 0 to 127. 0 bytes where the wire has no echo. */
   echo(id: number, out: Uint8Array): number;
 }
 
@@ -110,6 +124,9 @@ export interface WireAbility {
   readonly servoChannels: readonly [number, number];
   /** Channels an input can have. */
   readonly inputChannels: readonly [number, number];
+  /** Most servos of one output. */
+  readonly servosMax: number;
+  /** Whether it can at all; `lines` needs a text for it (`LinesOptions.limp`, `powerOn`, `powerOff`). */
   readonly canLimp: boolean;
   readonly canPower: boolean;
   /** Baud rate assumed when the address names none. */
