@@ -13,6 +13,8 @@ export interface Governor {
   readonly v: Float64Array;
   /** Speed limits in force, rad/s; a joint above a limit that was just lowered brakes down to it. */
   readonly speed: Float64Array;
+  /** Acceleration limits, rad/s^2. */
+  readonly accel: Float64Array;
   /** Where to, radians, at the end of the step. */
   readonly target: Float64Array;
   /** Speed of the target, rad/s: 0 unless it is known, as in unison. A filter's slope is no such knowledge. */
@@ -104,6 +106,7 @@ export function governor(limits: readonly JointLimits[]): Governor {
     x,
     v,
     speed,
+    accel,
     target,
     targetSpeed,
     braking,

@@ -4,6 +4,8 @@ import type { FollowerSpec } from './spec.ts';
 export interface Remap {
   /** wanted[j] = gain_j sum_i weight_ji leader_i + offset_j, radians; a joint without sources stays at rest. */
   mix(leaderRad: Float64Array, wanted: Float64Array): void;
+  /** The same for speeds, rad/s: no offset, and a joint without sources stands. */
+  mixSpeed(leaderRadS: Float64Array, wantedRadS: Float64Array): void;
   /**
    * Deadband, then range: target[j] trails `wanted[j]` by at most the deadband, without steps (backlash form:
    * target = clamp(previous target, wanted - d, wanted + d)), and stays inside the joint's range.
@@ -31,15 +33,18 @@ export function remap(spec: FollowerSpec): Remap {
   const deadband = Float64Array.from(spec.joints, (j) => j.deadbandRad);
   const min = Float64Array.from(spec.joints, (j) => j.minRad);
   const max = Float64Array.from(spec.joints, (j) => j.maxRad);
+  const none = new Float64Array(n);
+  const mixOnto = (base: Float64Array, leader: Float64Array, out: Float64Array): void => {
+    for (let j = 0; j < n; j++) {
+      let sum = base[j] as number;
+      for (let k = first[j] as number; k < (first[j + 1] as number); k++)
+        sum += (scaled[k] as number) * (leader[from[k] as number] as number);
+      out[j] = sum;
+    }
+  };
   return {
-    mix(leaderRad, wanted) {
-      for (let j = 0; j < n; j++) {
-        let sum = offset[j] as number;
-        for (let k = first[j] as number; k < (first[j + 1] as number); k++)
-          sum += (scaled[k] as number) * (leaderRad[from[k] as number] as number);
-        wanted[j] = sum;
-      }
-    },
+    mix: (leaderRad, wanted) => mixOnto(offset, leaderRad, wanted),
+    mixSpeed: (leaderRadS, wantedRadS) => mixOnto(none, leaderRadS, wantedRadS),
     settle(wanted, target, clipped) {
       for (let j = 0; j < n; j++) {
         const want = wanted[j] as number;

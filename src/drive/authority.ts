@@ -1,0 +1,232 @@
+import { US_PER_MS } from '../clock/clock.ts';
+import type { Follower } from '../follower/follower.ts';
+import { BLOCKS } from '../follower/reasons.ts';
+import { nextState, type State, type StateEvent } from '../follower/states.ts';
+import type { BoardEvent, JogEvent, KeyEvent } from './events.ts';
+import type { Jog } from './jog.ts';
+import type { LeaderStage } from './leader-stage.ts';
+import type { Outbox } from './outbox.ts';
+import type { Shared } from './shared.ts';
+import type { Shares } from './shares.ts';
+import { BACK_US, type Standing } from './standing.ts';
+
+/** Who may move the arm: turns keys, port changes and levels into the state table's events, and does what a change entails. */
+export interface Authority {
+  key(event: KeyEvent): void;
+  board(event: BoardEvent): void;
+  jog(event: JogEvent): void;
+  /** Weighs what keeps the arm from following; after every event and before any command. */
+  weigh(): void;
+  raise(event: StateEvent): void;
+  /** Ends pulses and power: the second half of a category 1 stop. */
+  cutPower(): void;
+  /** A bug of ours: this follower is given up where it stands, for the rest of the run. */
+  giveUp(): void;
+}
+
+/** Pause between first pulses: every servo draws its stall current as it starts. */
+export const STAGGER_US = 100 * US_PER_MS;
+
+/** Blocks that last until somebody takes them back; the others are weighed anew at each event. */
+const LATCHED = BLOCKS.held | BLOCKS.contact | BLOCKS.fault;
+
+export function authority(
+  is: Standing,
+  index: number,
+  arm: Follower,
+  lead: LeaderStage,
+  common: Shared,
+  parts: { readonly share: Shares; readonly pending: Outbox; readonly jogging: Jog; readonly unasked: boolean },
+): Authority {
+  const { share, pending, jogging } = parts;
+  const spec = arm.spec;
+  const motion = arm.governor;
+  const now = common.nowUs;
+  const wakesByItself = parts.unasked || spec.wake !== 'ask';
+  let healthSeen = -1;
+
+  const raise = (event: StateEvent): void => {
+    const next = nextState(is.state, event);
+    if (next !== is.state) enter(next, event);
+  };
+
+  const enter = (next: State, event: StateEvent): void => {
+    is.state = next;
+    is.owed = true;
+    common.following[index] = next === 'following' ? 1 : 0;
+    switch (next) {
+      case 'absent':
+        is.downUs = now[0] as number;
+        return;
+      case 'waking':
+        standStill();
+        arm.frame.pulsing = 0;
+        is.going = false;
+        // What was latched, or made limp, stays so until somebody asks: a port that comes back is nobody.
+        if (wakesByItself && (is.blocks & BLOCKS.held) === 0) startWaking();
+        return;
+      case 'joining':
+        arm.settleHere();
+        share.begin(now);
+        is.meeting = spec.joinMeet === 'move';
+        return;
+      case 'following':
+        share.meet(now);
+        return;
+      case 'holding':
+        if (event === 'rested' || event === 'jogged') is.blocks |= BLOCKS.held;
+        return;
+      case 'parking':
+        share.begin(now);
+        letClutchIn();
+        return;
+      case 'limp':
+        endPulses();
+        return;
+      case 'stopped':
+        letClutchIn();
+        if (spec.stopCategory === 0) cutPower();
+        return;
+      case 'jogging':
+        return;
+    }
+  };
+
+  const standStill = (): void => {
+    motion.v.fill(0);
+    is.moving = false;
+  };
+
+  const letClutchIn = (): void => {
+    is.clutchKey = false;
+    arm.clutchRad.fill(0);
+  };
+
+  const startWaking = (): void => {
+    is.going = true;
+    is.nextPulseUs = Math.max(now[0] as number, common.inrushFreeUs[0] as number);
+    common.inrushFreeUs[0] = is.nextPulseUs + STAGGER_US * spec.servos.length;
+    if (spec.hasPower) pending.ask('power_on');
+  };
+
+  const endPulses = (): void => {
+    pending.ask('limp');
+    is.pulsed = false;
+    is.blocks |= BLOCKS.held;
+    standStill();
+  };
+
+  const cutPower = (): void => {
+    if (spec.hasPower) pending.ask('power_off');
+    endPulses();
+  };
+
+  const go = (): void => {
+    is.blocks &= ~BLOCKS.held;
+    if (is.state === 'waking' && !is.going) startWaking();
+    else raise(is.state === 'limp' ? 'go' : 'join');
+  };
+
+  const park = (limpAfter: boolean): void => {
+    is.limpAfterPark = limpAfter;
+    const standsAtRest = is.state === 'holding' && !is.moving && arm.atRest();
+    if (limpAfter && (is.state === 'waking' || standsAtRest)) {
+      raise('limp');
+      return;
+    }
+    is.blocks &= ~(BLOCKS.held | BLOCKS.contact);
+    is.parkStale = lead.stale;
+    raise('park');
+  };
+
+  const noteHealth = (): void => {
+    healthSeen = lead.healthVersion;
+    is.owed = true;
+    if (arm.hold(lead.kernel.health.state)) raise('healed');
+  };
+
+  return {
+    raise,
+    cutPower,
+    key(event) {
+      is.owed = true;
+      switch (event.key) {
+        case 'go':
+          return go();
+        case 'join':
+          is.blocks &= ~BLOCKS.held;
+          return raise('join');
+        case 'hold':
+          is.blocks |= BLOCKS.held;
+          return;
+        case 'park':
+          return park(false);
+        case 'limp':
+          return park(true);
+        case 'stop':
+          return raise('stop');
+        case 'rearm':
+          // Not before the arm stands: a stop is finished first.
+          if (is.state !== 'stopped' || is.moving) return;
+          is.blocks |= BLOCKS.held;
+          return raise('rearm');
+        case 'clutch':
+          is.clutchKey = !is.clutchKey;
+          return;
+        case 'pace':
+        case 'mark':
+          return;
+      }
+    },
+    board(event) {
+      switch (event.kind) {
+        case 'blocked':
+          if (!is.busy) is.busySinceUs = event.tUs;
+          is.busy = true;
+          return;
+        case 'free':
+          is.busy = false;
+          return;
+        case 'ready': {
+          const back = event.kept && is.pulsed && event.tUs - is.downUs <= BACK_US;
+          is.present = true;
+          is.busy = false;
+          is.pulsed = back;
+          return raise(back ? 'back' : 'ready');
+        }
+        case 'down':
+        case 'reboot':
+          is.present = false;
+          is.busy = false;
+          if (event.kind === 'reboot') is.pulsed = false;
+          pending.forget();
+          return raise('down');
+      }
+    },
+    jog(event) {
+      if (is.state === 'holding' && !is.moving && !Number.isNaN(event.pulseUs)) raise('jog');
+      if (is.state !== 'jogging') return;
+      jogging.ask(event.servo, event.pulseUs);
+      is.owed = true;
+    },
+    weigh() {
+      is.blocks &= LATCHED;
+      if (lead.stale) is.blocks |= BLOCKS.stale;
+      if (!lead.enabled) is.blocks |= BLOCKS.enable;
+      if (lead.holding) is.blocks |= BLOCKS.pedal;
+      is.clutched = is.clutchKey || lead.clutched;
+      if (healthSeen !== lead.healthVersion) noteHealth();
+      if (!is.present) raise('down');
+      else if (!is.pulsed) raise('unpulsed');
+      const ignored = is.state === 'parking' && is.parkStale ? BLOCKS.stale : 0;
+      if ((is.blocks & ~ignored) !== 0) raise('block');
+      else if (is.state === 'holding') raise('clear');
+    },
+    giveUp() {
+      is.blocks |= BLOCKS.fault;
+      is.present = false;
+      pending.forget();
+      raise('stop');
+    },
+  };
+}

@@ -1,0 +1,85 @@
+/**
+ * Everything that can happen to a drive, as one serial stream in order of time. What the drive does is a fold over it:
+ * the same plan, start poses and events give the same commands. Sources may reuse event objects: one is valid until
+ * its delivery returns.
+ */
+export type DriveEvent = ReadingEvent | PoseEvent | TickEvent | KeyEvent | BoardEvent | JogEvent;
+
+/** One timed set of raw counts from the leader. */
+export interface ReadingEvent {
+  readonly kind: 'reading';
+  readonly tUs: number;
+  /** Parallel to the leader board's inputs; NaN where this reading has no value. */
+  readonly counts: Float64Array;
+}
+
+/** A virtual leader's pose, radians, in joint order: a take being played, a simulation. */
+export interface PoseEvent {
+  readonly kind: 'pose';
+  readonly tUs: number;
+  readonly poseRad: Float64Array;
+}
+
+/** An instant at which something is due; made from `Drive.dueUs`, never from the moment a timer happened to fire. */
+export interface TickEvent {
+  readonly kind: 'tick';
+  readonly tUs: number;
+}
+
+/** What an operator asks for. */
+export type Key =
+  | 'go'
+  | 'join'
+  | 'hold'
+  | 'park'
+  | 'limp'
+  | 'stop'
+  | 'rearm'
+  /** Takes hold of, or lets go of, the leader for this follower. */
+  | 'clutch'
+  /** Sets the share of every speed limit: `value`, 0 to 1. */
+  | 'pace'
+  /** Names a moment in a recording; moves nothing. */
+  | 'mark';
+
+export interface KeyEvent {
+  readonly kind: 'key';
+  readonly tUs: number;
+  readonly key: Key;
+  /** Index of the follower it is for, or `ALL`. */
+  readonly follower: number;
+  readonly value: number;
+}
+
+/** Every follower. */
+export const ALL = -1;
+/** The leader's own board, in a `BoardEvent`. */
+export const LEADER = -2;
+
+/** What happened to a follower's way out, or to the leader's way in. */
+export interface BoardEvent {
+  readonly kind: /** Open and greeted. */
+    | 'ready'
+    | 'down'
+    /** The board has restarted; a `ready` will follow. */
+    | 'reboot'
+    /** The port is still busy with the last command. */
+    | 'blocked'
+    /** It can take one again. */
+    | 'free';
+  readonly tUs: number;
+  /** Index of the follower, or `LEADER`. */
+  readonly follower: number;
+  /** For `ready`: the board is known not to have restarted since it was last ready. */
+  readonly kept: boolean;
+}
+
+/** Moves one servo by pulse, to measure it. */
+export interface JogEvent {
+  readonly kind: 'jog';
+  readonly tUs: number;
+  readonly follower: number;
+  readonly servo: number;
+  /** Where to, in microseconds; NaN ends the jog and brings the servo back to its joint's angle. */
+  readonly pulseUs: number;
+}

@@ -1,0 +1,171 @@
+import { US_PER_MS, US_PER_S } from '../clock/clock.ts';
+import { follower, type Follower } from '../follower/follower.ts';
+import { BLOCKS } from '../follower/reasons.ts';
+import type { FollowerSpec } from '../follower/spec.ts';
+import { authority, STAGGER_US } from './authority.ts';
+import { ALL, type DriveEvent } from './events.ts';
+import { jog } from './jog.ts';
+import type { LeaderStage } from './leader-stage.ts';
+import { outbox, type CommandKind } from './outbox.ts';
+import type { Shared } from './shared.ts';
+import { shares } from './shares.ts';
+import { standing, type Standing } from './standing.ts';
+import { steering } from './steering.ts';
+
+/** How a follower stands when the drive is made. */
+export interface Start {
+  /** What the first pulse will say, radians; null: the rest pose. */
+  readonly poseRad: Float64Array | null;
+  /** Do not ask for the operator's go, whatever the profile says. */
+  readonly unasked: boolean;
+  /** Its port is open, its servos have pulses and it joins at once: for `trace`. */
+  readonly awake: boolean;
+  /** Number of the board it hangs on: a board takes one command an event. */
+  readonly board: number;
+}
+
+/** One follower's part of the drive: when it is told what. It is also the command it makes. */
+export interface FollowerStage {
+  readonly spec: FollowerSpec;
+  readonly index: number;
+  readonly board: number;
+  readonly arm: Follower;
+  readonly is: Readonly<Standing>;
+  /** What `take` has just made. */
+  readonly kind: CommandKind;
+  /** Commands made so far. */
+  readonly commands: number;
+  /** Age of the newest reading when the last command was made, microseconds. */
+  readonly readingAgeUs: number;
+  /** Handles one event; true when a command is to go out now. */
+  take(event: DriveEvent): boolean;
+  /** The next instant at which it has something to do although nothing arrives; Infinity when there is none. */
+  dueUs(): number;
+  /** A bug of ours was caught: this follower ends where it stands, the others go on. */
+  giveUp(): void;
+}
+
+/** A still arm is told where it is this often, so that a board with a watchdog of its own stays awake. */
+const KEEP_ALIVE_US = 500 * US_PER_MS;
+/** A reading this share of the period before the command is due is not made to wait. */
+const EARLY_SHARE = 0.1;
+/** A longer pause than this many periods is not made up for. */
+const PERIODS_MAX = 2;
+
+/** @param siblings the stages made before on the same board; filled by `drive` as stages are made */
+export function followerStage(
+  spec: FollowerSpec,
+  index: number,
+  lead: LeaderStage,
+  common: Shared,
+  start: Start,
+  siblings: FollowerStage[],
+): FollowerStage {
+  const arm = follower(spec);
+  const is = standing();
+  const dtS = new Float64Array(1);
+  const pending = outbox();
+  const share = shares(spec.joinShare);
+  const jogging = jog(spec.servos.length);
+  const rule = authority(is, index, arm, lead, common, { share, pending, jogging, unasked: start.unasked });
+  const steer = steering(is, arm, lead, common, { share, jogging, raise: rule.raise, cutPower: rule.cutPower });
+  const now = common.nowUs;
+
+  const emit = (kind: CommandKind): true => {
+    self.kind = kind;
+    self.commands++;
+    common.taken[start.board] = 1;
+    return true;
+  };
+
+  const wake = (): boolean => {
+    if (!is.going || (now[0] as number) < is.nextPulseUs) return false;
+    arm.frame.pulsing++;
+    arm.aim();
+    is.nextPulseUs += STAGGER_US;
+    is.lastUs = now[0] as number;
+    if (arm.frame.pulsing === spec.servos.length) {
+      is.pulsed = true;
+      rule.raise('awake');
+    }
+    return emit('move');
+  };
+
+  const move = (early: boolean): boolean => {
+    const sinceUs = (now[0] as number) - is.lastUs;
+    if (sinceUs < spec.periodUs * (early ? 1 - EARLY_SHARE : 1)) return false;
+    if (!is.owed && !is.moving && sinceUs < KEEP_ALIVE_US) return false;
+    is.owed = false;
+    const gap = sinceUs > PERIODS_MAX * spec.periodUs;
+    if (gap && is.moving) {
+      // It was on its way when its port stopped taking commands. Braking all the while is the one motion that is
+      // short, keeps the acceleration limit over the gap, and needs no leap afterwards.
+      if (sinceUs > lead.kernel.spec.timeoutUs) is.blocks |= BLOCKS.contact;
+      dtS[0] = sinceUs / US_PER_S;
+      steer.brake(dtS);
+      is.owed = true;
+    } else {
+      dtS[0] = (gap ? PERIODS_MAX * spec.periodUs : sinceUs) / US_PER_S;
+      steer.step(dtS);
+    }
+    is.lastUs = now[0] as number;
+    self.readingAgeUs = (now[0] as number) - lead.lastUs;
+    return emit('move');
+  };
+
+  /** Where a board is too slow for its followers, the one that has waited longest goes first. */
+  const mustYield = (): boolean => {
+    const mine = self.dueUs();
+    for (const other of siblings) if (other !== self && other.dueUs() < mine) return true;
+    return false;
+  };
+
+  const self: { -readonly [K in keyof FollowerStage]: FollowerStage[K] } = {
+    spec,
+    index,
+    board: start.board,
+    arm,
+    is,
+    kind: 'move',
+    commands: 0,
+    readingAgeUs: Number.NaN,
+    take(event) {
+      const reading = event.kind === 'reading' || event.kind === 'pose';
+      if (reading) is.owed = true;
+      else if (event.kind === 'key') {
+        if (event.follower === ALL || event.follower === index) rule.key(event);
+      } else if (event.kind !== 'tick' && event.follower === index) {
+        if (event.kind === 'jog') rule.jog(event);
+        else rule.board(event);
+      }
+      rule.weigh();
+      if (!is.present || is.busy || common.taken[start.board] === 1) return false;
+      if (siblings.length > 1 && mustYield()) return false;
+      if (pending.some) return emit(pending.take());
+      if (is.state === 'waking') return wake();
+      return is.pulsed && move(reading);
+    },
+    dueUs() {
+      if (!is.present || is.busy) return Number.POSITIVE_INFINITY;
+      if (pending.some) return now[0] as number;
+      if (is.state === 'waking') return is.going ? is.nextPulseUs : Number.POSITIVE_INFINITY;
+      if (!is.pulsed) return Number.POSITIVE_INFINITY;
+      return is.lastUs + (is.owed || is.moving ? spec.periodUs : KEEP_ALIVE_US);
+    },
+    giveUp: rule.giveUp,
+  };
+
+  if (start.poseRad !== null) arm.place(start.poseRad);
+  arm.aim();
+  if (start.awake) {
+    is.present = true;
+    is.pulsed = true;
+    is.state = 'joining';
+    is.meeting = spec.joinMeet === 'move';
+    is.lastUs = (now[0] as number) - spec.periodUs;
+    arm.frame.pulsing = spec.servos.length;
+    share.begin(now);
+  }
+  siblings.push(self);
+  return self;
+}

@@ -1,0 +1,125 @@
+import { leader, type Leader } from '../leader/leader.ts';
+import type { ButtonDuty } from '../leader/spec.ts';
+import { ALL, LEADER, type DriveEvent, type Key, type KeyEvent } from './events.ts';
+import type { Plan } from './plan.ts';
+import type { Shared } from './shared.ts';
+import { unison, type Unison } from './unison.ts';
+
+/** The leader's part of the drive: conditions readings, watches contact and buttons, and moves the virtual leader. */
+export interface LeaderStage {
+  readonly kernel: Leader;
+  /** The pose followers follow, radians: the conditioned one, or the virtual leader's in unison. */
+  readonly poseRad: Float64Array;
+  /** Its speed, rad/s; null where it is not known (no unison). */
+  readonly speedRadS: Float64Array | null;
+  /** True while the last reading is older than the timeout, or the leader's port is down. */
+  readonly stale: boolean;
+  /** False while an enable button exists and is not held. */
+  readonly enabled: boolean;
+  /** True while a clutch button is held. */
+  readonly clutched: boolean;
+  /** True while a hold button is held. */
+  readonly holding: boolean;
+  /** Grows whenever the set of sick joints changes. */
+  readonly healthVersion: number;
+  /** Instant of the last reading or pose, integer microseconds; -Infinity before the first. */
+  readonly lastUs: number;
+  /** Keys that this event's buttons stand for: the first `pressedCount` of `pressed`. */
+  readonly pressed: readonly KeyEvent[];
+  readonly pressedCount: number;
+  take(event: DriveEvent): void;
+  /** When it has to be woken although nothing arrives: the instant contact is lost. */
+  dueUs(): number;
+}
+
+/** What a press of a button asks of all followers; the others are levels. */
+const KEY_OF: Readonly<Partial<Record<ButtonDuty, Key>>> = { stop: 'stop', join: 'join', mark: 'mark' };
+
+export function leaderStage(plan: Plan, common: Shared): LeaderStage {
+  const kernel = leader(plan.leader);
+  const virtual: Unison | null = plan.unison ? unison(plan.followers, plan.leader.joints.length) : null;
+  const specs = plan.leader.buttons;
+  const hasEnable = specs.some((b) => b.does === 'enable');
+  const health = kernel.health.state;
+  const healthBefore = Uint8Array.from(health);
+  const pressed = specs.map((): { -readonly [K in keyof KeyEvent]: KeyEvent[K] } => ({
+    kind: 'key',
+    tUs: 0,
+    key: 'mark',
+    follower: ALL,
+    value: 0,
+  }));
+
+  const readButtons = (tUs: number): void => {
+    self.enabled = !hasEnable;
+    self.clutched = false;
+    self.holding = false;
+    for (let b = 0; b < specs.length; b++) {
+      const does = (specs[b] as (typeof specs)[number]).does;
+      const down = kernel.buttons.down[b] === 1;
+      if (does === 'enable' && down) self.enabled = true;
+      if (does === 'clutch' && down) self.clutched = true;
+      if (does === 'hold' && down) self.holding = true;
+      const key = KEY_OF[does];
+      if (key === undefined || kernel.buttons.edge[b] !== 1) continue;
+      const event = pressed[self.pressedCount++] as (typeof pressed)[number];
+      event.tUs = tUs;
+      event.key = key;
+    }
+  };
+
+  const noteHealth = (): void => {
+    for (let j = 0; j < health.length; j++) {
+      if (health[j] === healthBefore[j]) continue;
+      healthBefore.set(health);
+      self.healthVersion++;
+      return;
+    }
+  };
+
+  const self: { -readonly [K in keyof LeaderStage]: LeaderStage[K] } = {
+    kernel,
+    poseRad: virtual?.poseRad ?? kernel.poseRad,
+    speedRadS: virtual?.speedRadS ?? null,
+    stale: true,
+    enabled: !hasEnable,
+    clutched: false,
+    holding: false,
+    healthVersion: 0,
+    lastUs: Number.NEGATIVE_INFINITY,
+    pressed,
+    pressedCount: 0,
+    take(event) {
+      common.nowUs[0] = event.tUs;
+      common.taken.fill(0);
+      self.pressedCount = 0;
+      // The virtual leader first moves towards what was known until now.
+      if (virtual !== null) {
+        virtual.limit(common.following, common.pace);
+        virtual.advance(kernel.poseRad, common.nowUs);
+      }
+      if (event.kind === 'reading') {
+        kernel.take(event.tUs, event.counts);
+        self.lastUs = event.tUs;
+        readButtons(event.tUs);
+        noteHealth();
+      } else if (event.kind === 'pose') {
+        kernel.poseRad.set(event.poseRad);
+        health.fill(0);
+        self.lastUs = event.tUs;
+        noteHealth();
+      } else if (event.kind === 'key' && event.key === 'pace') {
+        common.pace[0] = event.value;
+      } else if (event.kind === 'down' && event.follower === LEADER) {
+        self.lastUs = Number.NEGATIVE_INFINITY;
+      }
+      const age = event.tUs - self.lastUs;
+      self.stale = age > plan.leader.timeoutUs || age === Number.POSITIVE_INFINITY;
+    },
+    dueUs() {
+      // One microsecond past the timeout is the first integer instant at which the reading is too old.
+      return self.stale ? Number.POSITIVE_INFINITY : self.lastUs + plan.leader.timeoutUs + 1;
+    },
+  };
+  return self;
+}

@@ -1,0 +1,23 @@
+/** What the stages of one drive have in common. Numbers live in arrays so that none crosses a call and is boxed. */
+export interface Shared {
+  /** The instant of the event being handled, in integer microseconds. */
+  readonly nowUs: Float64Array;
+  /** Share of every speed limit, 0 to 1, live. */
+  readonly pace: Float64Array;
+  /** When the next servo may get its first pulse: arms wake one servo after another, for the supply's sake. */
+  readonly inrushFreeUs: Float64Array;
+  /** 1 for each follower in state `following`, in rig order: only those count in unison. */
+  readonly following: Uint8Array;
+  /** 1 for each board that has been given a command in the event being handled. */
+  readonly taken: Uint8Array;
+}
+
+export function shared(startUs: number, followers: number, boards: number, pace: number): Shared {
+  return {
+    nowUs: new Float64Array([startUs]),
+    pace: new Float64Array([pace]),
+    inrushFreeUs: new Float64Array([Number.NEGATIVE_INFINITY]),
+    following: new Uint8Array(followers),
+    taken: new Uint8Array(boards),
+  };
+}

@@ -1,0 +1,102 @@
+import type { Follower } from '../follower/follower.ts';
+import type { StateEvent } from '../follower/states.ts';
+import type { Jog } from './jog.ts';
+import type { LeaderStage } from './leader-stage.ts';
+import type { Shared } from './shared.ts';
+import type { Shares } from './shares.ts';
+import type { Standing } from './standing.ts';
+
+/** What the arm does in each state: one governed step, and what its end state entails. */
+export interface Steering {
+  /** Moves the arm by dtS[0] seconds as its state asks. */
+  step(dtS: Float64Array): void;
+  /** Brakes for dtS[0] seconds, whatever its state. */
+  brake(dtS: Float64Array): void;
+}
+
+const MET_RAD = (1 * Math.PI) / 180;
+const WAIT_RAD = (3 * Math.PI) / 180;
+
+export function steering(
+  is: Standing,
+  arm: Follower,
+  lead: LeaderStage,
+  common: Shared,
+  parts: {
+    readonly share: Shares;
+    readonly jogging: Jog;
+    readonly raise: (event: StateEvent) => void;
+    readonly cutPower: () => void;
+  },
+): Steering {
+  const { share, jogging, raise } = parts;
+  const now = common.nowUs;
+  const shareNow = new Float64Array(1);
+
+  const wish = (): void => {
+    if (lead.speedRadS !== null && is.state === 'following' && !is.clutched) arm.match(lead.poseRad, lead.speedRadS);
+    else arm.want(lead.poseRad, is.clutched);
+  };
+
+  const join = (dtS: Float64Array): void => {
+    wish();
+    is.meeting ||= arm.near(WAIT_RAD);
+    if (!is.meeting) {
+      arm.brake(dtS);
+      return;
+    }
+    share.joining(now, common.pace, shareNow);
+    arm.limitSpeed(shareNow, true);
+    arm.step(dtS);
+    if (arm.near(MET_RAD)) raise('met');
+  };
+
+  const settle = (): void => {
+    if (is.moving) return;
+    if (is.state === 'parking' && arm.atRest()) {
+      raise('rested');
+      if (is.limpAfterPark) raise('limp');
+    } else if (is.state === 'stopped' && arm.spec.stopCategory === 1 && is.pulsed) parts.cutPower();
+  };
+
+  const brake = (dtS: Float64Array): void => {
+    arm.brake(dtS);
+    is.moving = !arm.governor.still();
+    settle();
+  };
+
+  return {
+    brake,
+    step(dtS) {
+      switch (is.state) {
+        case 'following':
+          wish();
+          share.following(now, common.pace, shareNow);
+          arm.limitSpeed(shareNow, false);
+          arm.step(dtS);
+          break;
+        case 'joining':
+          join(dtS);
+          break;
+        case 'parking':
+          arm.wantRest();
+          share.parking(common.pace, shareNow);
+          arm.limitSpeed(shareNow, true);
+          arm.step(dtS);
+          break;
+        case 'jogging': {
+          arm.aim();
+          const going = jogging.step(dtS, arm.frame.pulsesUs);
+          is.moving = jogging.moving;
+          if (!going) raise('jogged');
+          return;
+        }
+        default:
+          brake(dtS);
+          return;
+      }
+      is.moving = !arm.governor.still();
+      settle();
+    },
+  };
+}

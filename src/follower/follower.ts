@@ -1,0 +1,215 @@
+import type { Frame } from '../wire/types.ts';
+import { governor, type Governor } from './governor.ts';
+import { LIMITS } from './reasons.ts';
+import { remap } from './remap.ts';
+import { servos } from './servos.ts';
+import type { FollowerJointSpec, FollowerSpec } from './spec.ts';
+
+/**
+ * The follower kernel: a pose in, a command out. It keeps what the arm was last told, for the follower's whole life;
+ * whether it may move, and when, is decided in `drive/`.
+ */
+export interface Follower {
+  readonly spec: FollowerSpec;
+  readonly governor: Governor;
+  /** What the leader asks for, clutch included, before deadband and range, radians. */
+  readonly wantedRad: Float64Array;
+  /** Deadbanded and inside the range, radians. */
+  readonly targetRad: Float64Array;
+  /** Bits of `LIMITS` for each joint. */
+  readonly limits: Uint8Array;
+  /** 1: a pot that feeds this joint is sick, and the joint holds. */
+  readonly held: Uint8Array;
+  /** Added to what the leader asks, radians; grows while the clutch is out. */
+  readonly clutchRad: Float64Array;
+  readonly frame: Frame;
+  /** Puts the arm, standing, at a pose (clamped to its ranges): what the first pulse will say. */
+  place(poseRad: Float64Array): void;
+  /** Starts the deadband anew from where the arm is. */
+  settleHere(): void;
+  /** Takes the leader's pose as the wish; `clutched`: the wish stays, and the offset takes up the difference. */
+  want(leaderRad: Float64Array, clutched: boolean): void;
+  /**
+   * Takes a virtual leader's pose and speed, in unison: it is deadbanded and limited already, so every joint matches
+   * it without lag.
+   */
+  match(leaderRad: Float64Array, leaderRadS: Float64Array): void;
+  /** Sends every joint home instead. */
+  wantRest(): void;
+  /** Sets speed limits to `share[0]` of the profile's; `together`: joints slow down so that all arrive at once. */
+  limitSpeed(share: Float64Array, together: boolean): void;
+  /** One governed step of dtS[0] seconds, and its pulses into `frame`. */
+  step(dtS: Float64Array): void;
+  /** Brakes for dtS[0] seconds instead. */
+  brake(dtS: Float64Array): void;
+  /** Writes the pulses of the present angles into `frame`. */
+  aim(): void;
+  /**
+   * Holds every joint that a sick pot feeds.
+   * @param health codes of the leader's joints, 0 is sound
+   * @returns true when a joint that was held is free again
+   */
+  hold(health: Uint8Array): boolean;
+  /** True when it stands at its rest pose, up to rounding. */
+  atRest(): boolean;
+  /** True when every joint that is free to move is within `withinRad` of its target. */
+  near(withinRad: number): boolean;
+}
+
+/** A command this far outside its range is a bug of ours, not rounding, radians. */
+const ROUNDING_RAD = 1e-9;
+/** A joint counts as moving at its limit from this share of it on. */
+const AT_LIMIT = 0.999;
+/** A joint this close to its target hardly needs a share of the speed, radians. */
+const CLOSE_RAD = 1e-6;
+
+export function follower(spec: FollowerSpec): Follower {
+  const joints = spec.joints;
+  const n = joints.length;
+  const motion = governor(joints);
+  const map = remap(spec);
+  const gears = servos(spec.servos);
+  const rest = Float64Array.from(joints, (j) => j.restRad);
+  const min = Float64Array.from(joints, (j) => j.minRad);
+  const max = Float64Array.from(joints, (j) => j.maxRad);
+  const top = Float64Array.from(joints, (j) => j.speedRadS);
+  const wantedRad = Float64Array.from(rest);
+  const mixed = new Float64Array(n);
+  const clutchRad = new Float64Array(n);
+  const clipped = new Uint8Array(n);
+  const held = new Uint8Array(n);
+  const limits = new Uint8Array(n);
+  const frame: Frame = {
+    pulsesUs: new Float64Array(spec.servos.length),
+    sentUs: new Float64Array(spec.servos.length),
+    anglesRad: motion.x,
+    pulsing: 0,
+  };
+  const target = motion.target;
+
+  /** Writes what holds each joint back, as far as the wish tells, and lets the held ones brake. */
+  const noteLimits = (): void => {
+    for (let j = 0; j < n; j++) {
+      motion.braking[j] = held[j] as number;
+      const inDeadband = target[j] !== wantedRad[j] && clipped[j] === 0;
+      limits[j] =
+        (clipped[j] === 1 ? LIMITS.range : 0) | (inDeadband ? LIMITS.deadband : 0) | (held[j] === 1 ? LIMITS.sick : 0);
+    }
+  };
+
+  const check = (): void => {
+    for (let j = 0; j < n; j++) {
+      const x = motion.x[j] as number;
+      const inside = x >= (min[j] as number) - ROUNDING_RAD && x <= (max[j] as number) + ROUNDING_RAD;
+      if (!inside) throw new RangeError(`${spec.name}: joint ${joints[j]?.name} left its range`);
+    }
+  };
+
+  const self: Follower = {
+    spec,
+    governor: motion,
+    wantedRad,
+    targetRad: target,
+    limits,
+    held,
+    clutchRad,
+    frame,
+    place(poseRad) {
+      for (let j = 0; j < n; j++) {
+        motion.x[j] = Math.min(Math.max(poseRad[j] as number, min[j] as number), max[j] as number);
+        motion.v[j] = 0;
+      }
+      self.settleHere();
+    },
+    settleHere() {
+      target.set(motion.x);
+    },
+    want(leaderRad, clutched) {
+      map.mix(leaderRad, mixed);
+      for (let j = 0; j < n; j++) {
+        if (held[j] === 1) wantedRad[j] = target[j] as number;
+        else if (clutched) clutchRad[j] = (wantedRad[j] as number) - (mixed[j] as number);
+        else wantedRad[j] = (mixed[j] as number) + (clutchRad[j] as number);
+      }
+      map.settle(wantedRad, target, clipped);
+      motion.targetSpeed.fill(0);
+      noteLimits();
+    },
+    match(leaderRad, leaderRadS) {
+      map.mix(leaderRad, mixed);
+      map.mixSpeed(leaderRadS, motion.targetSpeed);
+      for (let j = 0; j < n; j++) {
+        const wish = held[j] === 1 ? (target[j] as number) : (mixed[j] as number) + (clutchRad[j] as number);
+        wantedRad[j] = wish;
+        target[j] = Math.min(Math.max(wish, min[j] as number), max[j] as number);
+        clipped[j] = target[j] === wish ? 0 : 1;
+        if (clipped[j] === 1) motion.targetSpeed[j] = 0;
+      }
+      noteLimits();
+    },
+    wantRest() {
+      wantedRad.set(rest);
+      target.set(rest);
+      motion.targetSpeed.fill(0);
+      limits.fill(0);
+      motion.braking.fill(0);
+    },
+    limitSpeed(share, together) {
+      const s = share[0] as number;
+      if (!together) {
+        for (let j = 0; j < n; j++) motion.speed[j] = s * (top[j] as number);
+        return;
+      }
+      let longestS = 0;
+      for (let j = 0; j < n; j++) {
+        const away = Math.abs((target[j] as number) - (motion.x[j] as number));
+        if (held[j] === 0) longestS = Math.max(longestS, away / (top[j] as number));
+      }
+      for (let j = 0; j < n; j++) {
+        const away = Math.abs((target[j] as number) - (motion.x[j] as number)) + CLOSE_RAD;
+        motion.speed[j] = s * (longestS > 0 ? Math.min(top[j] as number, away / longestS) : (top[j] as number));
+      }
+    },
+    step(dtS) {
+      motion.step(dtS);
+      check();
+      for (let j = 0; j < n; j++) {
+        const atLimit = motion.v[j] !== 0 && Math.abs(motion.v[j] as number) >= AT_LIMIT * (motion.speed[j] as number);
+        if (atLimit && motion.braking[j] === 0) limits[j] = (limits[j] as number) | LIMITS.speed;
+      }
+      gears.pulses(motion.x, frame.pulsesUs);
+    },
+    brake(dtS) {
+      motion.braking.fill(1);
+      self.step(dtS);
+    },
+    aim() {
+      gears.pulses(motion.x, frame.pulsesUs);
+    },
+    hold(health) {
+      let freed = false;
+      for (let j = 0; j < n; j++) {
+        const sick = (joints[j] as FollowerJointSpec).sources.some((s) => health[s.joint] !== 0);
+        if (held[j] === 1 && !sick) freed = true;
+        held[j] = sick ? 1 : 0;
+      }
+      return freed;
+    },
+    atRest() {
+      for (let j = 0; j < n; j++) {
+        if (Math.abs((motion.x[j] as number) - (rest[j] as number)) > ROUNDING_RAD) return false;
+      }
+      return true;
+    },
+    near(withinRad) {
+      for (let j = 0; j < n; j++) {
+        if (held[j] === 1) continue;
+        if (Math.abs((target[j] as number) - (motion.x[j] as number)) > withinRad) return false;
+      }
+      return true;
+    },
+  };
+  self.place(rest);
+  self.aim();
+  return self;
+}
