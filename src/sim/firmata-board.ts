@@ -1,170 +1,165 @@
 import { US_PER_MS } from '../clock/clock.ts';
+import {
+  ANALOG,
+  ANALOG_MAPPING,
+  ANALOG_MAPPING_QUERY,
+  DIGITAL,
+  EXTENDED_ANALOG,
+  FIRMWARE,
+  MODE_ANALOG,
+  MODE_OUTPUT,
+  NO_CHANNEL,
+  PIN_MODE,
+  PIN_STATE,
+  PIN_STATE_QUERY,
+  REPORT_ANALOG,
+  SAMPLING_INTERVAL,
+  SERVO_CONFIG,
+  SYSEX,
+  SYSEX_END,
+  VERSION,
+} from '../wire/firmata-messages.ts';
 import type { BoardPlan } from '../wire/types.ts';
-import { firmataParser, SYSEX_END, SYSEX_START } from './firmata-parser.ts';
+import { firmataParser } from './firmata-parser.ts';
 import type { Firmware, Pins } from './firmware.ts';
 import { MAX_PULSE_US, MIN_PULSE_US, servoSlots } from './servo-slots.ts';
 
 /**
- * The board's side of Firmata as StandardFirmata speaks it (protocol 2.8, protocol.md and servos.md; behaviour of
- * firmata/arduino 2.5, StandardFirmata.ino), on a board with the pins of an Arduino Mega. What the bridge never asks
- * for (capabilities, pin states, digital reports, I2C) is not answered.
+ * A board with the pins of an Arduino Mega that behaves as StandardFirmata does (firmata/arduino 2.5,
+ * StandardFirmata.ino), in what the bridge uses of it. A lost first position leaves a servo at its slot's last pulse,
+ * or at 1500 us, as it would on a real board.
  */
 const DIGITAL_PINS = 54;
 const ANALOG_INPUTS = 16;
 const PINS = DIGITAL_PINS + ANALOG_INPUTS;
 /** The first two pins are the serial port. */
 const FIRST_FREE_PIN = 2;
-
-const MODE_INPUT = 0;
-const MODE_OUTPUT = 1;
-const MODE_ANALOG = 2;
-const MODE_SERVO = 4;
-
-const VERSION = 0xf9;
-const RESET = 0xff;
-
-const NOT_ANALOG = 127;
 const SAMPLING_MS = 19;
 const PROTOCOL = [2, 5] as const;
+/** StandardFirmata.ino resets its pins on this message, protocol.md's system reset. */
+const RESET = 0xff;
+const MODE_SERVO = 0x04;
 
-interface PinUse {
-  readonly output: number;
-  /** Index of the servo; -1 where the pin switches the output's power. */
-  readonly servo: number;
-  readonly powerOn: boolean;
-}
+type PinUse =
+  | { readonly kind: 'servo'; readonly output: number; readonly servo: number }
+  | { readonly kind: 'power'; readonly output: number; readonly onLevel: number };
 
 export function firmataBoard(name: string, plan: BoardPlan, pins: Pins): Firmware {
   const uses = pinUses(plan);
   const inputs = plan.inputs?.channels ?? [];
   const modes = new Uint8Array(PINS);
-  const levels = new Uint8Array(PINS);
+  /** What was written to each pin last. */
+  const states = new Uint16Array(PINS);
   const reporting = new Uint8Array(ANALOG_INPUTS);
   let samplingUs = SAMPLING_MS * US_PER_MS;
 
   const slots = servoSlots((pin, pulseUs) => {
     const use = uses.get(pin);
-    if (use !== undefined && use.servo >= 0) pins.pulse(use.output, use.servo, pulseUs);
+    if (use?.kind === 'servo') pins.pulse(use.output, use.servo, pulseUs);
   });
 
-  /** A power pin switches while it drives; as an input it lets go, and the relay falls. */
+  const say = (...bytes: readonly number[]): void => pins.send(Uint8Array.from(bytes));
+
+  const sayVersion = (): void => say(VERSION, ...PROTOCOL);
+
+  const sayFirmware = (): void =>
+    say(SYSEX, FIRMWARE, ...PROTOCOL, ...[...new TextEncoder().encode(name)].flatMap(sevenBits), SYSEX_END);
+
+  const sayMapping = (): void => {
+    const channels = Array.from(modes, (_, pin) => (pin < DIGITAL_PINS ? NO_CHANNEL : pin - DIGITAL_PINS));
+    say(SYSEX, ANALOG_MAPPING, ...channels, SYSEX_END);
+  };
+
+  const sayPinState = (pin: number): void => {
+    if (pin < PINS) say(SYSEX, PIN_STATE, pin, modes[pin] as number, ...sevenBits(states[pin] as number), SYSEX_END);
+  };
+
   const setLevel = (pin: number, level: number): void => {
-    levels[pin] = level;
+    states[pin] = level;
     const use = uses.get(pin);
-    if (use !== undefined && use.servo < 0)
-      pins.power(use.output, modes[pin] === MODE_OUTPUT && (level === 1) === use.powerOn);
+    // A pin that does not drive lets its relay fall.
+    if (use?.kind === 'power') pins.power(use.output, modes[pin] === MODE_OUTPUT && level === use.onLevel);
   };
 
   const setMode = (pin: number, mode: number): void => {
     if (pin >= PINS) return;
     if (mode !== MODE_SERVO) slots.detach(pin);
-    if (pin >= DIGITAL_PINS) reportAnalog(pin - DIGITAL_PINS, mode === MODE_ANALOG);
+    if (pin >= DIGITAL_PINS) report(pin - DIGITAL_PINS, mode === MODE_ANALOG);
     modes[pin] = mode;
     if (mode === MODE_SERVO && pin >= FIRST_FREE_PIN) slots.attach(pin, MIN_PULSE_US, MAX_PULSE_US);
     setLevel(pin, 0);
   };
 
-  const reportAnalog = (channel: number, on: boolean): void => {
-    if (channel >= ANALOG_INPUTS) return;
-    reporting[channel] = on ? 1 : 0;
-    if (on) reportOne(channel, pins.read());
+  const configureServo = (pin: number, minUs: number, maxUs: number): void => {
+    if (pin < FIRST_FREE_PIN || pin >= PINS) return;
+    slots.detach(pin);
+    slots.attach(pin, minUs, maxUs);
+    setMode(pin, MODE_SERVO);
   };
 
-  const reportOne = (channel: number, counts: Float64Array): void => {
-    const index = inputs.indexOf(channel);
-    const value = index < 0 ? 0 : (counts[index] as number);
-    pins.send(Uint8Array.of(0xe0 | channel, value & 0x7f, (value >> 7) & 0x7f));
+  const report = (channel: number, on: boolean): void => {
+    if (channel >= ANALOG_INPUTS) return;
+    reporting[channel] = on ? 1 : 0;
+    if (on) sayAnalog(channel, pins.read());
+  };
+
+  const sayAnalog = (channel: number, counts: Float64Array): void => {
+    const input = inputs.indexOf(channel);
+    say(ANALOG | channel, ...sevenBits(input < 0 ? 0 : (counts[input] as number)));
   };
 
   const writeAnalog = (pin: number, value: number): void => {
-    if (pins.loses() || pin >= PINS) return;
-    if (modes[pin] === MODE_SERVO) slots.write(pin, value);
+    if (pin >= PINS || pins.loses() || modes[pin] !== MODE_SERVO) return;
+    states[pin] = value;
+    slots.write(pin, value);
   };
 
-  const writeDigitalPort = (port: number, mask: number): void => {
-    for (let bit = 0; bit < 8; bit++) writeDigital(port * 8 + bit, (mask >> bit) & 1);
-  };
-
-  const writeDigital = (pin: number, level: number): void => {
-    if (pin < PINS && (modes[pin] === MODE_OUTPUT || modes[pin] === MODE_INPUT)) setLevel(pin, level);
-  };
-
-  const greet = (): void => {
-    pins.send(Uint8Array.of(VERSION, ...PROTOCOL));
-    reportFirmware();
-  };
-
-  const reportFirmware = (): void => {
-    const letters = Array.from(name).flatMap((letter) => fourteenBits(letter.charCodeAt(0)));
-    pins.send(Uint8Array.of(SYSEX_START, 0x79, ...PROTOCOL, ...letters, SYSEX_END));
-  };
-
-  const answerAnalogMapping = (): void => {
-    const channels = Array.from({ length: PINS }, (_, pin) => (pin < DIGITAL_PINS ? NOT_ANALOG : pin - DIGITAL_PINS));
-    pins.send(Uint8Array.of(SYSEX_START, 0x6a, ...channels, SYSEX_END));
-  };
-
-  const sysex = (body: Uint8Array): void => {
-    const data = body.subarray(1);
-    const pin = data[0] ?? PINS;
-    switch (body[0]) {
-      case 0x69:
-        answerAnalogMapping();
-        break;
-      case 0x6f:
-        if (data.length > 1) writeAnalog(pin, joined(data, 1) + ((data[3] ?? 0) << 14));
-        break;
-      case 0x70:
-        if (data.length < 5 || pin >= PINS || pin < FIRST_FREE_PIN) break;
-        slots.detach(pin);
-        slots.attach(pin, joined(data, 1), joined(data, 3));
-        setMode(pin, MODE_SERVO);
-        break;
-      case 0x79:
-        reportFirmware();
-        break;
-      case 0x7a:
-        if (data.length >= 2) samplingUs = Math.max(1, joined(data, 0)) * US_PER_MS;
-        break;
-      default:
-        break;
+  const writePort = (port: number, bits: number): void => {
+    for (let bit = 0; bit < 8; bit++) {
+      const pin = port * 8 + bit;
+      if (modes[pin] === MODE_OUTPUT) setLevel(pin, (bits >> bit) & 1);
     }
   };
 
   const resetPins = (): void => {
-    for (let pin = 0; pin < PINS; pin++) {
-      slots.detach(pin);
-      modes[pin] = pin < DIGITAL_PINS ? MODE_OUTPUT : MODE_ANALOG;
-      setLevel(pin, 0);
-    }
+    // It drives every digital pin low as it starts: a relay that is on when low switches on, unasked.
+    for (let pin = 0; pin < DIGITAL_PINS; pin++) setMode(pin, MODE_OUTPUT);
+    modes.fill(MODE_ANALOG, DIGITAL_PINS);
     reporting.fill(0);
     samplingUs = SAMPLING_MS * US_PER_MS;
-  };
-
-  const message = (command: number, first: number, second: number): void => {
-    const nibble = command & 0x0f;
-    if (command === 0xf4) setMode(first, second);
-    else if (command === 0xf5) writeDigital(first, second);
-    else if (command >= 0xe0 && command < SYSEX_START) writeAnalog(nibble, first + (second << 7));
-    else if (command >= 0xc0 && command < 0xd0) reportAnalog(nibble, first !== 0);
-    else if (command >= 0x90 && command < 0xa0) writeDigitalPort(nibble, first + (second << 7));
-  };
-
-  const single = (command: number): void => {
-    if (command === VERSION) pins.send(Uint8Array.of(VERSION, ...PROTOCOL));
-    if (command === RESET) resetPins();
   };
 
   return {
     start() {
       resetPins();
-      greet();
+      sayVersion();
+      sayFirmware();
     },
-    receive: firmataParser({ message, single, sysex }),
+    receive: firmataParser({
+      single(command) {
+        if (command === VERSION) sayVersion();
+        if (command === RESET) resetPins();
+      },
+      message(command, first, second) {
+        const channel = command & 0x0f;
+        if (command === PIN_MODE) setMode(first, second);
+        else if ((command & 0xf0) === ANALOG) writeAnalog(channel, joined(first, second));
+        else if ((command & 0xf0) === REPORT_ANALOG) report(channel, first !== 0);
+        else if ((command & 0xf0) === DIGITAL) writePort(channel, joined(first, second));
+      },
+      sysex([feature, pin = PINS, a = 0, b = 0, c = 0, d = 0]) {
+        if (feature === FIRMWARE) sayFirmware();
+        else if (feature === ANALOG_MAPPING_QUERY) sayMapping();
+        else if (feature === PIN_STATE_QUERY) sayPinState(pin);
+        else if (feature === EXTENDED_ANALOG) writeAnalog(pin, joined(a, b));
+        else if (feature === SERVO_CONFIG) configureServo(pin, joined(a, b), joined(c, d));
+        else if (feature === SAMPLING_INTERVAL) samplingUs = Math.max(1, joined(pin, a)) * US_PER_MS;
+      },
+    }),
     sample() {
       const counts = pins.read();
       for (let channel = 0; channel < ANALOG_INPUTS; channel++) {
-        if (reporting[channel] === 1 && !pins.loses()) reportOne(channel, counts);
+        if (reporting[channel] === 1 && !pins.loses()) sayAnalog(channel, counts);
       }
     },
     get samplingUs() {
@@ -175,18 +170,17 @@ export function firmataBoard(name: string, plan: BoardPlan, pins: Pins): Firmwar
 
 function pinUses(plan: BoardPlan): Map<number, PinUse> {
   const uses = new Map<number, PinUse>();
-  plan.outputs.forEach((wiring, output) => {
-    wiring.servos.forEach(({ channel }, servo) => uses.set(channel, { output, servo, powerOn: false }));
-    if (wiring.power !== null)
-      uses.set(wiring.power.channel, { output, servo: -1, powerOn: wiring.power.on === 'high' });
+  plan.outputs.forEach(({ servos, power }, output) => {
+    servos.forEach(({ channel }, servo) => uses.set(channel, { kind: 'servo', output, servo }));
+    if (power !== null) uses.set(power.channel, { kind: 'power', output, onLevel: power.on === 'high' ? 1 : 0 });
   });
   return uses;
 }
 
-function fourteenBits(value: number): [number, number] {
+function sevenBits(value: number): [number, number] {
   return [value & 0x7f, (value >> 7) & 0x7f];
 }
 
-function joined(data: Uint8Array, at: number): number {
-  return (data[at] ?? 0) + ((data[at + 1] ?? 0) << 7);
+function joined(low: number, high: number): number {
+  return low + (high << 7);
 }

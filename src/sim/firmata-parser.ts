@@ -1,17 +1,20 @@
-export const SYSEX_START = 0xf0;
-export const SYSEX_END = 0xf7;
+import { ANALOG, DIGITAL, PIN_MODE, REPORT_ANALOG, SYSEX, SYSEX_END } from '../wire/firmata-messages.ts';
+
 /** MAX_DATA_BYTES of FirmataConstants.h: longer ones are cut off. */
 const SYSEX_BYTES_MAX = 64;
 
-/** Messages from the bridge, taken apart (protocol.md, Message Types). */
-export interface Heard {
+/** What a board does with each message from the bridge. */
+export interface FirmataHeard {
+  /** `second` has no meaning where a message has one data byte. */
   message(command: number, first: number, second: number): void;
+  /** A message without data. */
   single(command: number): void;
-  /** Command byte and data, without the frame. */
+  /** Feature byte and data, without the frame; valid until it returns. */
   sysex(body: Uint8Array): void;
 }
 
-export function firmataParser(heard: Heard): (bytes: Uint8Array) => void {
+/** Takes the bridge's bytes apart, in any portions, as a board's firmware does (protocol.md, Message Types). */
+export function firmataParser(heard: FirmataHeard): (bytes: Uint8Array) => void {
   const body = new Uint8Array(SYSEX_BYTES_MAX);
   let command = 0;
   let length = 0;
@@ -19,7 +22,7 @@ export function firmataParser(heard: Heard): (bytes: Uint8Array) => void {
 
   return (bytes) => {
     for (const byte of bytes) {
-      if (command === SYSEX_START) {
+      if (command === SYSEX) {
         if (byte === SYSEX_END) {
           command = 0;
           heard.sysex(body.subarray(0, length));
@@ -32,16 +35,15 @@ export function firmataParser(heard: Heard): (bytes: Uint8Array) => void {
         command = byte;
         length = 0;
         wanted = dataBytes(byte);
-        if (wanted === 0 && byte !== SYSEX_START) heard.single(byte);
+        if (wanted === 0 && byte !== SYSEX) heard.single(byte);
       }
     }
   };
 }
 
-/** How many data bytes follow a command (protocol.md, Message Types). */
 function dataBytes(command: number): number {
-  if (command >= SYSEX_START) return command === 0xf4 || command === 0xf5 ? 2 : 0;
+  if (command >= SYSEX) return command === PIN_MODE ? 2 : 0;
   const kind = command & 0xf0;
-  if (kind === 0xc0 || kind === 0xd0) return 1;
-  return kind === 0xe0 || kind === 0x90 ? 2 : 0;
+  if (kind === REPORT_ANALOG) return 1;
+  return kind === ANALOG || kind === DIGITAL ? 2 : 0;
 }
