@@ -49,9 +49,9 @@ export function line({ clock, chunkBytes, capacityBytes, deliver, emptied, ...fi
   let runStartUs = 0;
   let runBytes = 0;
 
-  const startRun = (atUs: number): void => {
+  const startRun = (atUs: number, bytes = 0): void => {
     runStartUs = atUs;
-    runBytes = 0;
+    runBytes = bytes;
     baud = nextBaud;
   };
 
@@ -100,7 +100,9 @@ export function line({ clock, chunkBytes, capacityBytes, deliver, emptied, ...fi
   return {
     send(bytes) {
       const taken = Math.min(bytes.length, capacityBytes - waiting);
-      if (waiting === 0) startRun(clock.nowUs());
+      // The line has been silent, though a late timer may not yet have delivered what was sent before the silence.
+      const nowUs = clock.nowUs();
+      if (nowUs >= runStartUs + lineTimeUs(runBytes + waiting, baud)) startRun(nowUs, -waiting);
       const tail = (head + waiting) % capacityBytes;
       const straight = Math.min(taken, capacityBytes - tail);
       ring.set(bytes.subarray(0, straight), tail);
