@@ -36,8 +36,6 @@ const PINS = DIGITAL_PINS + ANALOG_INPUTS;
 const FIRST_FREE_PIN = 2;
 const SAMPLING_MS = 19;
 const PROTOCOL = [2, 5] as const;
-/** StandardFirmata.ino resets its pins on this message, protocol.md's system reset. */
-const RESET = 0xff;
 const MODE_SERVO = 0x04;
 
 type PinUse =
@@ -121,24 +119,17 @@ export function firmataBoard(name: string, plan: BoardPlan, pins: Pins): Firmwar
     }
   };
 
-  const resetPins = (): void => {
-    // It drives every digital pin low as it starts: a relay that is on when low switches on, unasked.
-    for (let pin = 0; pin < DIGITAL_PINS; pin++) setMode(pin, MODE_OUTPUT);
-    modes.fill(MODE_ANALOG, DIGITAL_PINS);
-    reporting.fill(0);
-    samplingUs = SAMPLING_MS * US_PER_MS;
-  };
-
   return {
     start() {
-      resetPins();
+      // It drives every digital pin low as it starts: a relay that is on when low switches on, unasked.
+      for (let pin = 0; pin < DIGITAL_PINS; pin++) setMode(pin, MODE_OUTPUT);
+      modes.fill(MODE_ANALOG, DIGITAL_PINS);
       sayVersion();
       sayFirmware();
     },
     receive: firmataParser({
       single(command) {
         if (command === VERSION) sayVersion();
-        if (command === RESET) resetPins();
       },
       message(command, first, second) {
         const channel = command & 0x0f;

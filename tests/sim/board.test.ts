@@ -1,3 +1,4 @@
+import fc from 'fast-check';
 import { describe, expect, it } from 'vitest';
 import { simulatedHand } from '../../src/sim/hand.ts';
 import type { WireChoice } from '../../src/wire/choice.ts';
@@ -177,6 +178,96 @@ describe.each(NAMES)('a simulated board that speaks %s', (name) => {
     expect(on.board.lost).toBeGreaterThan(0);
     // It stays where it was, or on Firmata, where attaching alone starts pulses, runs to 1500 us.
     expect(Math.abs(angleDeg(on, 0) - -20)).toBeGreaterThan(15);
+  });
+});
+
+describe('a simulated board that hears noise', () => {
+  it.each(NAMES)('and speaks %s goes on, with its servos somewhere', (name) => {
+    const bytes = fc.uint8Array({ minLength: 1, maxLength: 80 });
+    const text = fc.stringMatching(/^[W0-9.,-]{0,30}\n$/).map((line) => new TextEncoder().encode(line));
+    const sysex = fc.array(fc.nat(127), { maxLength: 80 }).map((body) => Uint8Array.of(0xf0, ...body, 0xf7));
+    fc.assert(
+      fc.property(fc.array(fc.oneof(bytes, text, sysex), { maxLength: 12 }), (noise) => {
+        const on = woken(name);
+        for (const each of noise) {
+          on.send(each);
+          on.run(30 * MS);
+        }
+        expect(Number.isFinite(angleDeg(on, 0))).toBe(true);
+        expect(Math.abs(angleDeg(on, 0))).toBeLessThanOrEqual(91);
+      }),
+      { numRuns: 50 },
+    );
+  });
+});
+
+describe('a relay that is on when its pin is low', () => {
+  const [output] = PLAN.outputs as readonly [BoardPlan['outputs'][0]];
+  const plan: BoardPlan = { ...PLAN, outputs: [{ ...output, power: { channel: 8, on: 'low' } }] };
+
+  it.each(NAMES)('switches as it is told over %s', (name) => {
+    const on = stage(name, { plan });
+    on.run(S);
+    for (const wish of [true, false, true]) {
+      on.say((out) => on.session.power(0, wish, out));
+      on.run(100 * MS);
+      expect(on.board.arms[0]?.powered).toBe(wish);
+    }
+  });
+
+  it('switches on by itself when a Firmata board starts, which drives its pins low', () => {
+    // firmata/arduino, StandardFirmata.ino, systemResetCallback: every digital pin becomes an output, low.
+    const on = stage('firmata', { plan });
+    on.run(200 * MS);
+    expect(on.board.arms[0]?.powered).toBe(false);
+    on.run(S);
+    expect(on.board.arms[0]?.powered).toBe(true);
+  });
+});
+
+describe('an echo', () => {
+  it('comes back with its number, over frames with the time since the reset', () => {
+    const on = woken('frames');
+    const atUs = on.clock.nowUs();
+    on.say((out) => on.session.echo(7, out));
+    on.run(MS);
+    // The port opened, and the board was reset, at the very start.
+    expect(on.echoes).toEqual([{ id: 7, boardUs: atUs }]);
+  });
+
+  it('comes back with its number over firmata, as the state of a pin', () => {
+    const on = woken('firmata');
+    on.say((out) => on.session.echo(7, out));
+    on.run(MS);
+    expect(on.echoes.map((each) => each.id)).toEqual([7]);
+  });
+});
+
+describe('a sketch that prints', () => {
+  const lines = (WIRES.lines as Extract<WireChoice, { name: 'lines' }>).lines;
+
+  it('says nothing but numbers when it has no name', () => {
+    const on = stage('lines', { address: simAddress('sim:arm?seed=3') });
+    on.run(500 * MS);
+    expect(on.heard.filter((kind) => kind !== 'reading')).toEqual(['ready']);
+  });
+
+  it('only on change is silent while nothing changes', () => {
+    const wire: WireChoice = { name: 'lines', lines: { ...lines, sends: 'on_change', checksum: 'sum' } };
+    const on = stage(wire, { hand: { ...HAND, noiseCounts: 0 } });
+    on.run(990 * MS);
+    expect(on.readings.length).toBeLessThanOrEqual(1);
+    on.run(3 * S);
+    expect(on.readings.length).toBeGreaterThan(100);
+    expect(on.heard).not.toContain('garbled');
+  });
+
+  it('throws away what is no command of its own, up to the end of the line', () => {
+    const on = woken('lines');
+    on.send(new TextEncoder().encode('rubbish W1000,1'));
+    on.send(new TextEncoder().encode('000\nW1000,2000\n'));
+    on.run(100 * MS);
+    expect([pulseUs(on, 0), pulseUs(on, 1)]).toEqual([1000, 2000]);
   });
 });
 

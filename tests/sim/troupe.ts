@@ -13,7 +13,7 @@ export const S = 1_000_000;
 export const MS = 1_000;
 
 /** Servos of 180 degrees over 1856 us. */
-export const MAP = compileMap(
+const MAP = compileMap(
   [
     [-90 * DEG, 544],
     [90 * DEG, 2400],
@@ -28,7 +28,7 @@ export function simAddress(text: string): Extract<Address, { kind: 'sim' }> {
   return { kind: 'sim', text, what, options: new Map(new URLSearchParams(query)) };
 }
 
-export const JOINT: HandInput = {
+const JOINT: HandInput = {
   kind: 'joint',
   travelMin: 60,
   travelMax: 970,
@@ -87,12 +87,15 @@ export interface Stage {
   readonly session: WireSession;
   /** Every event's kind, in order. */
   readonly heard: WireEvent['kind'][];
+  readonly echoes: readonly { readonly id: number; readonly boardUs: number }[];
   readonly readings: { readonly atUs: number; readonly counts: readonly number[] }[];
   run(forUs: number): void;
   /** Sends one command to output 0 with all its pulses, and returns them as the wire rounded them. */
   command(anglesDeg: readonly number[]): readonly number[];
   /** Sends the bytes that `encode` writes. */
   say(encode: (out: Uint8Array) => number): void;
+  /** Sends any bytes. */
+  send(bytes: Uint8Array): void;
 }
 
 export function stage(wire: WireChoice['name'] | WireChoice, changes: Partial<SimulatedBoardOptions> = {}): Stage {
@@ -111,6 +114,7 @@ export function stage(wire: WireChoice['name'] | WireChoice, changes: Partial<Si
   const session = openSession(choice, plan);
   const heard: WireEvent['kind'][] = [];
   const readings: { atUs: number; counts: number[] }[] = [];
+  const echoes: { id: number; boardUs: number }[] = [];
   const queue: Uint8Array[] = [];
 
   const flush = (): void => {
@@ -120,6 +124,7 @@ export function stage(wire: WireChoice['name'] | WireChoice, changes: Partial<Si
   const emit = (event: WireEvent): void => {
     heard.push(event.kind);
     if (event.kind === 'send') queue.push(event.bytes.slice());
+    if (event.kind === 'echo') echoes.push({ id: event.id, boardUs: event.boardUs });
     if (event.kind === 'reading') readings.push({ atUs: clock.nowUs(), counts: [...event.counts] });
     flush();
   };
@@ -133,16 +138,20 @@ export function stage(wire: WireChoice['name'] | WireChoice, changes: Partial<Si
     closed() {},
   });
 
+  const send = (bytes: Uint8Array): void => {
+    queue.push(bytes);
+    flush();
+  };
   const say = (encode: (out: Uint8Array) => number): void => {
     const out = new Uint8Array(session.frameBytesMax(0));
-    queue.push(out.slice(0, encode(out)));
-    flush();
+    send(out.slice(0, encode(out)));
   };
   return {
     clock,
     board,
     session,
     heard,
+    echoes,
     readings,
     run: (forUs) => clock.runTo(clock.nowUs() + forUs),
     command(anglesDeg) {
@@ -156,5 +165,6 @@ export function stage(wire: WireChoice['name'] | WireChoice, changes: Partial<Si
       return [...frame.sentUs];
     },
     say,
+    send,
   };
 }
