@@ -51,6 +51,7 @@ export function authority(
   };
 
   const enter = (next: State, event: StateEvent): void => {
+    if (next === 'absent') leaveUnfinished();
     is.state = next;
     is.owed = true;
     common.following[index] = next === 'following' ? 1 : 0;
@@ -90,6 +91,12 @@ export function authority(
       case 'jogging':
         return;
     }
+  };
+
+  /** A port that comes back finishes nothing by itself: a parking arm holds, a jogged servo is not where its joint says. */
+  const leaveUnfinished = (): void => {
+    if (is.state === 'parking') is.blocks |= BLOCKS.held;
+    if (is.state === 'jogging') is.pulsed = false;
   };
 
   const standStill = (): void => {
@@ -190,7 +197,6 @@ export function authority(
         case 'ready': {
           const back = event.kept && is.pulsed && event.tUs - is.downUs <= BACK_US;
           is.present = true;
-          is.busy = false;
           is.pulsed = back;
           return raise(back ? 'back' : 'ready');
         }

@@ -1,0 +1,101 @@
+import { type Observable, Subject } from 'rxjs';
+import type { Cancel, Clock } from '../clock/clock.ts';
+import type { Drive } from '../drive/drive.ts';
+import type { DriveEvent, TickEvent } from '../drive/events.ts';
+
+/**
+ * The one serial stream of events. Whatever arrives is delivered after the ticks that were due before it, and before
+ * those due at its instant; a tick carries the instant it was due, so a timer that fires late changes nothing.
+ */
+export interface EventSource {
+  /** Everything delivered, ticks included: the same sequence folded again gives the same commands. */
+  readonly events$: Observable<DriveEvent>;
+  /**
+   * Delivers `event`, or, from inside a delivery, right after that one and at its instant: nothing is re-entrant.
+   * A stamp earlier than the last one is raised to it.
+   */
+  push(event: Stamped): void;
+  /** Delivers every tick due up to and including `untilUs`. */
+  runTo(untilUs: number): void;
+  close(): void;
+}
+
+/** An event is the source's from the moment it is pushed: its stamp may be raised. */
+export type Stamped = DriveEvent & { tUs: number };
+
+/** A drive that asks for more ticks than this without time passing is a bug of ours. */
+const TICKS_AT_ONCE_MAX = 10_000;
+
+/**
+ * @param clock wakes the drive at its due instants; null: only `push` and `runTo` move it, as in `trace`
+ * @param startUs nothing is delivered earlier
+ */
+export function eventSource(drive: Drive, clock: Clock | null, startUs: number): EventSource {
+  const subject = new Subject<DriveEvent>();
+  const caused: Stamped[] = [];
+  const tick: { -readonly [K in keyof TickEvent]: TickEvent[K] } = { kind: 'tick', tUs: startUs };
+  const last = { us: startUs, alarmUs: Number.POSITIVE_INFINITY };
+  let delivering = false;
+  let cancel: Cancel | null = null;
+
+  const deliver = (event: Stamped): void => {
+    if (event.tUs < last.us) event.tUs = last.us;
+    last.us = event.tUs;
+    delivering = true;
+    subject.next(event);
+    // What a command causes at once (a port that is now busy) is known before anything else happens.
+    while (caused.length > 0) {
+      const next = caused.shift() as Stamped;
+      next.tUs = last.us;
+      subject.next(next);
+    }
+    delivering = false;
+  };
+
+  const tickBefore = (endUs: number): void => {
+    let atOnce = 0;
+    for (let dueUs = drive.dueUs(); dueUs < endUs; dueUs = drive.dueUs()) {
+      atOnce = dueUs > last.us ? 0 : atOnce + 1;
+      if (atOnce > TICKS_AT_ONCE_MAX) throw new Error('the drive asks for ticks without end');
+      tick.tUs = dueUs;
+      deliver(tick);
+    }
+  };
+
+  const setAlarm = (): void => {
+    if (clock === null) return;
+    const dueUs = drive.dueUs();
+    if (dueUs === last.alarmUs) return;
+    cancel?.();
+    cancel = dueUs === Number.POSITIVE_INFINITY ? null : clock.at(dueUs, alarm);
+    last.alarmUs = dueUs;
+  };
+
+  const alarm = (): void => {
+    last.alarmUs = Number.POSITIVE_INFINITY;
+    tickBefore((clock as Clock).nowUs() + 1);
+    setAlarm();
+  };
+
+  return {
+    events$: subject.asObservable(),
+    push(event) {
+      if (delivering) {
+        caused.push(event);
+        return;
+      }
+      tickBefore(event.tUs);
+      deliver(event);
+      tickBefore(event.tUs + 1);
+      setAlarm();
+    },
+    runTo(untilUs) {
+      tickBefore(untilUs + 1);
+      setAlarm();
+    },
+    close() {
+      cancel?.();
+      subject.complete();
+    },
+  };
+}
