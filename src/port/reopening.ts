@@ -10,7 +10,7 @@ export interface Connection {
    */
   write(bytes: Uint8Array): number;
   /**
-   * Lets go of whatever was opened, at any time, and calls `ended` once when the system has. Called once.
+   * Lets go of whatever was opened, at any time, and calls `ended` when the system has. Called once.
    * @param gently what was written is still to arrive; otherwise it is stale and thrown away where that is possible.
    */
   end(gently: boolean, ended: () => void): void;
@@ -52,6 +52,7 @@ export const WRITE_BYTES_MAX = 16_384;
 interface Link {
   connection: Connection | null;
   openedUs: number;
+  hasEnded: boolean;
 }
 
 /**
@@ -82,7 +83,7 @@ export function reopening(clock: Clock, address: string, connect: Connect, optio
   let outgoingView = outgoing;
 
   const attempt = (): void => {
-    const mine: Link = { connection: null, openedUs: 0 };
+    const mine: Link = { connection: null, openedUs: 0, hasEnded: false };
     link = mine;
     cancelTimer = clock.at(clock.nowUs() + connectUs, () => fail(mine, 'PORT_REFUSED', 'no answer'));
     mine.connection = connect({
@@ -125,8 +126,8 @@ export function reopening(clock: Clock, address: string, connect: Connect, optio
     listener?.closed({ code, address, detail }, retryMs);
   };
 
-  const endLink = ({ connection }: Link, gently: boolean): void => {
-    if (connection === null) throw new Error(`${address}: a connection failed from inside connect`);
+  const endLink = (mine: Link, gently: boolean): void => {
+    if (mine.connection === null) throw new Error(`${address}: a connection failed from inside connect`);
     cancelTimer();
     cancelWatch?.();
     cancelWatch = null;
@@ -134,7 +135,9 @@ export function reopening(clock: Clock, address: string, connect: Connect, optio
     open = false;
     inFlight = false;
     ending = true;
-    connection.end(gently, () => {
+    mine.connection.end(gently, () => {
+      if (mine.hasEnded) return;
+      mine.hasEnded = true;
       ending = false;
       proceed();
     });
