@@ -100,14 +100,15 @@ export function simulatedBoard(options: SimulatedBoardOptions): SimulatedBoard {
     booted = firmware;
     firmware.start();
     nextSampleUs = clock.nowUs();
-    sampleNext(firmware);
+    // Without inputs, or without anybody to hear of them, there is nothing to wake up for.
+    if (plan.inputs !== null && far.isOpen) sampleNext(firmware);
   };
 
   // Samples keep to their grid however late a wake-up comes; those a late one has missed are not made up for.
   const sampleNext = (firmware: Firmware): void => {
     nextSampleUs += firmware.samplingUs * Math.max(1, Math.ceil((clock.nowUs() - nextSampleUs) / firmware.samplingUs));
     cancel = clock.at(nextSampleUs, () => {
-      if (plan.inputs !== null) firmware.sample();
+      firmware.sample();
       sampleNext(firmware);
     });
   };
@@ -124,7 +125,7 @@ export function simulatedBoard(options: SimulatedBoardOptions): SimulatedBoard {
   far.listen({
     opened: reset,
     data: (bytes) => booted?.receive(bytes),
-    // It keeps its pulses: only a fresh opening resets it. Nobody would hear its readings.
+    // It keeps its pulses: only a fresh opening resets it.
     closed: () => cancel(),
   });
 

@@ -138,6 +138,16 @@ describe.each(NAMES)('a simulated board that speaks %s', (name) => {
     expect(on.readings.length).toBeGreaterThan(before + 50);
   });
 
+  it('wakes up for nothing once its port is closed', async () => {
+    const on = woken(name);
+    const closed = on.board.port.close();
+    on.run(2 * S);
+    await closed;
+    on.board.reset();
+    on.run(2 * S);
+    expect(on.clock.nextUs()).toBe(Number.POSITIVE_INFINITY);
+  });
+
   it('does the same every time for the same seed', () => {
     const run = (seed: number): Stage => {
       const on = woken(name, { address: simAddress(`sim:arm?name=wren&seed=${seed}&drop=0.2`) });
