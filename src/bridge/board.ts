@@ -115,7 +115,7 @@ export function board(plan: CompiledBoard, port: Port, clock: Clock, listener: B
         listener.say({ kind: 'greeted', address, board: event.board });
         // The last word of the greeting may still be leaving: nobody may write over it.
         if (!port.canTake) tell('blocked', plan.followers);
-        tell('ready', parts, event.kept);
+        tell('ready', parts, event.kept === true);
         return;
       case 'reboot':
         is.ready = false;

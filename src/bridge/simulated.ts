@@ -26,7 +26,7 @@ function handOf(leader: LeaderSpec): NonNullable<SimulatedBoardOptions['hand']> 
         kind: 'joint' as const,
         travelMin: joint.travelMin,
         travelMax: joint.travelMax,
-        restCounts: joint.map.inverse(0),
+        restCounts: Math.min(Math.max(joint.map.inverse(0), joint.travelMin), joint.travelMax),
         countsPerRad: (joint.map.xMax - joint.map.xMin) / (joint.map.yMax - joint.map.yMin),
       })),
       ...leader.buttons.map((button) => ({
@@ -43,7 +43,7 @@ function armOf(spec: FollowerSpec): SimulatedBoardOptions['arms'][number] {
     name: spec.name,
     servos: spec.servos.map(({ map, turns }) => {
       const rest = turns.reduce((sum, t) => sum + t.weight * (spec.joints[t.joint]?.restRad ?? 0), 0);
-      return { map, turns, startRad: rest, sagRad: rest };
+      return { map, turns, startRad: rest, sagRad: rest, holdsLostPulse: spec.onLostPulse === 'hold' };
     }),
   };
 }

@@ -9,6 +9,8 @@ export interface Shares {
   begin(nowUs: Float64Array): void;
   /** The leader is met. */
   meet(nowUs: Float64Array): void;
+  /** Joining has taken so long that the share is rising. */
+  impatient(nowUs: Float64Array): boolean;
   /** share[0] = what holds now, times pace[0]. */
   joining(nowUs: Float64Array, pace: Float64Array, share: Float64Array): void;
   following(nowUs: Float64Array, pace: Float64Array, share: Float64Array): void;
@@ -26,10 +28,9 @@ export function shares(joinShare: number): Shares {
   const began = new Float64Array(1);
   const met = new Float64Array(1);
   const shareAtMeeting = new Float64Array(1);
-  const risen = (nowUs: Float64Array): number => {
-    const late = (nowUs[0] as number) - (began[0] as number) - PATIENCE_US;
-    return joinShare + (1 - joinShare) * Math.min(Math.max(late / RISE_US, 0), 1);
-  };
+  const lateUs = (nowUs: Float64Array): number => (nowUs[0] as number) - (began[0] as number) - PATIENCE_US;
+  const risen = (nowUs: Float64Array): number =>
+    joinShare + (1 - joinShare) * Math.min(Math.max(lateUs(nowUs) / RISE_US, 0), 1);
   return {
     begin(nowUs) {
       began[0] = nowUs[0] as number;
@@ -38,6 +39,7 @@ export function shares(joinShare: number): Shares {
       met[0] = nowUs[0] as number;
       shareAtMeeting[0] = risen(nowUs);
     },
+    impatient: (nowUs) => lateUs(nowUs) > 0,
     joining(nowUs, pace, share) {
       share[0] = risen(nowUs) * (pace[0] as number);
     },

@@ -40,7 +40,7 @@ export function steering(
 
   const join = (dtS: Float64Array): void => {
     wish();
-    is.meeting ||= arm.near(WAIT_RAD);
+    is.meeting ||= arm.near(WAIT_RAD, false);
     if (!is.meeting) {
       arm.brake(dtS);
       return;
@@ -48,7 +48,8 @@ export function steering(
     share.joining(now, common.pace, shareNow);
     arm.limitSpeed(shareNow, true);
     arm.step(dtS);
-    if (arm.near(MET_RAD)) raise('met');
+    // A leader that never stands is met once the arm, with patience gone, is as near as its limits let it follow.
+    if (arm.near(MET_RAD, share.impatient(now))) raise('met');
   };
 
   const settle = (): void => {

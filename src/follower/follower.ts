@@ -52,8 +52,11 @@ export interface Follower {
   hold(health: Uint8Array): boolean;
   /** True when it stands at its rest pose, up to rounding. */
   atRest(): boolean;
-  /** True when every joint that is free to move is within `withinRad` of its target. */
-  near(withinRad: number): boolean;
+  /**
+   * True when every joint that is free to move is within `withinRad` of its target; `lagging`: or as near as its
+   * limits let it follow a moving one, v^2 / 2A.
+   */
+  near(withinRad: number, lagging: boolean): boolean;
 }
 
 /** A command this far outside its range is a bug of ours, not rounding, radians. */
@@ -201,10 +204,12 @@ export function follower(spec: FollowerSpec): Follower {
       }
       return true;
     },
-    near(withinRad) {
+    near(withinRad, lagging) {
       for (let j = 0; j < n; j++) {
         if (held[j] === 1) continue;
-        if (Math.abs((target[j] as number) - (motion.x[j] as number)) > withinRad) return false;
+        const v = motion.v[j] as number;
+        const lag = lagging ? (0.5 * v * v) / (motion.accel[j] as number) : 0;
+        if (Math.abs((target[j] as number) - (motion.x[j] as number)) > withinRad + lag) return false;
       }
       return true;
     },

@@ -71,8 +71,11 @@ export type WireEvent =
    * time, going on past the wrap of its counter; NaN if the board has no clock.
    */
   | { readonly kind: 'reading'; readonly counts: Float64Array; readonly boardUs: number }
-  /** The greeting is over: readings will come, commands may go. */
-  | { readonly kind: 'ready'; readonly board: string | null }
+  /**
+   * The greeting is over: readings will come, commands may go. `kept`: the board says that it has been running since
+   * before this connection, so its servos still have their pulses; absent where a wire cannot tell.
+   */
+  | { readonly kind: 'ready'; readonly board: string | null; readonly kept?: boolean }
   /** The board has restarted since it was ready: its servos have no pulses; a new `ready` will follow. */
   | { readonly kind: 'reboot' }
   /** It says it is another board than the profile names. */
