@@ -30,7 +30,12 @@ async function memoryBench(options: MemoryPortOptions): Promise<Bench> {
   };
 }
 
-const asMissing = { lossCode: 'PORT_CLOSED', absenceCode: 'PORT_MISSING', noticesByWriting: false } as const;
+const asMissing = {
+  lossCode: 'PORT_CLOSED',
+  absenceCode: 'PORT_MISSING',
+  noticesByWriting: false,
+  missing: null,
+} as const;
 portContract({ name: 'memory', make: () => memoryBench({}), ...asMissing });
 portContract({ name: 'memory (115200 baud)', make: () => memoryBench({ baud: 115_200 }), ...asMissing });
 portContract({

@@ -48,4 +48,5 @@ portContract({
   lossCode: 'PORT_CLOSED',
   absenceCode: 'PORT_REFUSED',
   noticesByWriting: false,
+  missing: null,
 });

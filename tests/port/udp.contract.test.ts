@@ -49,4 +49,5 @@ portContract({
   lossCode: 'PORT_REFUSED',
   absenceCode: null,
   noticesByWriting: true,
+  missing: null,
 });
