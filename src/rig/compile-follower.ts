@@ -61,7 +61,7 @@ export function outputWiring(profile: Loose<FollowerProfile>): OutputWiring | nu
 }
 
 /** Which pose the first pulse assumes, where the file leaves it open. */
-function wakeOf({ wake, arm }: FollowerProfile): FollowerSpec['wake'] {
+export function wakeOf({ wake, arm }: FollowerProfile): FollowerSpec['wake'] {
   if (wake !== undefined) return wake;
   return arm !== undefined && reachMm(arm.links) < WAKE_REACH_MM ? 'rest' : 'ask';
 }
@@ -69,7 +69,8 @@ function wakeOf({ wake, arm }: FollowerProfile): FollowerSpec['wake'] {
 /** On lines the board's own texts switch the power, so that no channel needs naming. */
 function powerWiring({ power, wire }: Loose<FollowerProfile>): PowerWiring | null {
   if (power?.channel !== undefined && power.on !== undefined) return { channel: power.channel, on: power.on };
-  return commandsOf(wire)?.powerOn == null ? null : { channel: 0, on: 'high' };
+  const byText = commandsOf(wire)?.powerOn ?? null;
+  return byText === null ? null : { channel: 0, on: 'high' };
 }
 
 function compileJoint(joint: FollowerJoint, leader: LeaderSpec): FollowerJointSpec {

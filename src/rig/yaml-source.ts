@@ -75,7 +75,8 @@ function located(
     return { kind: 'map', place, entries };
   }
   const value: unknown = isScalar(node) ? node.value : null;
-  return { kind: 'scalar', place, value: isPlainScalar(value) ? value : String(value) };
+  // The core schema knows no other scalars; an absent one is empty.
+  return { kind: 'scalar', place, value: isPlainScalar(value) ? value : null };
 
   function addEntry(pair: Pair<Node | null, Node | null>, entries: Map<string, LocatedEntry>): void {
     const offset = pair.key?.range?.[0] ?? 0;
