@@ -105,7 +105,7 @@ const VIOLATIONS: readonly { rule: string; from: string; text: string; to: strin
     to: 'serialport',
   },
   {
-    rule: 'time-and-chance-are-injected',
+    rule: 'time-is-injected',
     from: 'src/bridge/sleep.ts',
     text: "import { setTimeout as sleep } from 'node:timers/promises';\nexport const wait = sleep;\n",
     to: 'timers/promises',

@@ -31,6 +31,11 @@ const PLANTED: readonly { rule: string; path: string; text: string }[] = [
     text: 'export const chance = Math.random();\n',
   },
   {
+    rule: 'eslint(no-restricted-imports)',
+    path: 'src/bridge/chance.ts',
+    text: "import { randomInt } from 'node:crypto';\nexport const chance = randomInt(6);\n",
+  },
+  {
     rule: 'vitest(expect-expect)',
     path: 'tests/map/empty.test.ts',
     text: "import { it } from 'vitest';\nit('asserts nothing', () => {});\n",
