@@ -118,6 +118,34 @@ describe('a port that opens and is lost again', () => {
   });
 });
 
+describe('a write', () => {
+  it('stays as it was handed over until it has left, whatever becomes of the buffer it came in', () => {
+    const { last, port, runMs } = opened();
+    const bytes = Buffer.from('first');
+    port.write(bytes);
+    bytes.fill('x');
+    expect(last().writes.map(String)).toEqual(['first']);
+    last().failed('PORT_CLOSED', 'unplugged');
+    const lost = last().writes[0];
+    runMs(100);
+    last().opened();
+    port.write(Buffer.from('other'));
+    // The system may still be reading from what the lost connection was given.
+    expect(String(lost)).toBe('first');
+  });
+
+  it('takes no memory of its own when it is as long as the one before', () => {
+    const { last, port } = opened();
+    for (const text of ['one', 'two', 'longer']) {
+      port.write(Buffer.from(text));
+      last().sent();
+    }
+    const [one, two, longer] = last().writes;
+    expect(two).toBe(one);
+    expect(longer).not.toBe(two);
+  });
+});
+
 describe('a write that does not leave', () => {
   it('stalls the port after half a second, which is then opened again', () => {
     const { last, runMs, told, port, connections } = opened();

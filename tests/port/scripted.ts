@@ -5,7 +5,8 @@ import type { Port } from '../../src/port/types.ts';
 /** One connection that says only what a test has it say. */
 export interface Scripted extends ConnectionHandlers {
   readonly startedAtUs: number;
-  readonly writes: string[];
+  /** What was handed over, as it is now. */
+  readonly writes: Uint8Array[];
   /** null until the port lets go of it; then whether it did so gently. */
   endedGently: boolean | null;
   /** The system has let go. */
@@ -49,7 +50,7 @@ export function scriptedPort(options: ReopeningOptions = {}, lineUs = 0, holdsOn
       connections.push(connection);
       return {
         write(bytes) {
-          connection.writes.push(Buffer.from(bytes).toString());
+          connection.writes.push(bytes);
           return lineUs;
         },
         end(gently, done) {

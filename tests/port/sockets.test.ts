@@ -62,28 +62,29 @@ const tcp = (number: number, writeMs = 500): Port => {
 describe('a tcp port', () => {
   it('whose peer stops reading stalls, and its stale commands are thrown away', async () => {
     const peers: Socket[] = [];
+    let late = 0;
     let written = 0;
     const number = await server((socket) => {
       // The second connection is read; the first one only after it has stalled.
-      if (peers.push(socket) === 1) socket.pause();
+      if (peers.push(socket) > 1) return;
+      socket.pause();
+      socket.on('data', (bytes) => {
+        late += bytes.length;
+      });
     });
-    const port = tcp(number, 100);
     const more = (): void => {
-      if (held.faults.length === 0 && port.write(new Uint8Array(16_384))) written += 16_384;
+      if (held.faults.length === 0 && held.port.write(new Uint8Array(16_384))) written += 16_384;
     };
-    const held = hold(port, more);
+    const held: Held = hold(tcp(number, 100), more);
     await untilReally('opened', () => held.opened === 1);
     more();
     await untilReally('the stall', () => held.faults.length === 1);
     expect(held.faults[0]?.code).toBe('PORT_STALLED');
-    let late = 0;
-    peers[0]?.on('data', (bytes) => {
-      late += bytes.length;
-    });
     peers[0]?.resume();
-    await untilReally('the reset', () => peers[0]?.destroyed === true);
-    // What this machine's system had not yet sent is gone; a closing without a reset would have delivered all of it.
-    expect(late).toBeLessThan(written);
+    await untilReally('the end', () => peers[0]?.destroyed === true);
+    // An orderly end would come after everything that this machine had accepted, all but the last write: a reset leaves
+    // what the far machine had accepted already. Tried by hand, of 3.9 MB it left 3.9 MB and 0.12 MB.
+    expect(late).toBeLessThan(written / 2);
   });
 
   it('that nobody listens at is refused', async () => {
