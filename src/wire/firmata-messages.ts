@@ -4,13 +4,10 @@
 export const ANALOG = 0xe0;
 export const DIGITAL = 0x90;
 export const REPORT_ANALOG = 0xc0;
-export const REPORT_DIGITAL = 0xd0;
 export const SYSEX = 0xf0;
 export const PIN_MODE = 0xf4;
-export const PIN_VALUE = 0xf5;
 export const SYSEX_END = 0xf7;
 export const VERSION = 0xf9;
-export const RESET = 0xff;
 
 export const ANALOG_MAPPING_QUERY = 0x69;
 export const ANALOG_MAPPING = 0x6a;
@@ -24,7 +21,6 @@ export const SAMPLING_INTERVAL = 0x7a;
 export const MODE_OUTPUT = 0x01;
 /** protocol.md names 0x03 in one place; its own list of modes, and every firmware, has 0x02. */
 export const MODE_ANALOG = 0x02;
-export const MODE_SERVO = 0x04;
 /** In an analog mapping: this pin has no channel. */
 export const NO_CHANNEL = 0x7f;
 

@@ -1,21 +1,18 @@
-import {
-  ANALOG,
-  DIGITAL,
-  PIN_MODE,
-  PIN_VALUE,
-  REPORT_ANALOG,
-  REPORT_DIGITAL,
-  RESET,
-  SYSEX,
-  SYSEX_END,
-  VERSION,
-} from './firmata-messages.ts';
+import { ANALOG, DIGITAL, SYSEX, SYSEX_END, VERSION } from './firmata-messages.ts';
 import type { Garble } from './types.ts';
 
 /** Longest sysex that is read: an analog mapping of 128 pins, or a firmware name of 126 characters. */
 export const SYSEX_BYTES_MAX = 256;
 
-/** Finds Firmata messages in a stream of bytes, on either side. */
+const UNKNOWN = 0xffff;
+const ENDLESS = 0xfffe;
+/** Data bytes that follow each status byte of a board. */
+const NEEDS = new Uint16Array(256).fill(UNKNOWN);
+for (const command of [ANALOG, DIGITAL]) NEEDS.fill(2, command, command + 16);
+NEEDS[VERSION] = 2;
+NEEDS[SYSEX] = ENDLESS;
+
+/** Finds the messages in what a Firmata board sends. */
 export interface FirmataReader {
   /** Reads on from `at` until one message ended or the bytes did; returns where. Then look at `found`. */
   read(bytes: Uint8Array, at: number): number;
@@ -34,14 +31,12 @@ export interface FirmataReader {
   reset(): void;
 }
 
-/** @param from whose bytes are read: a board's version message carries two numbers, the host's is bare. */
-export function firmataReader(from: 'board' | 'host'): FirmataReader {
+export function firmataReader(): FirmataReader {
   const data = new Uint8Array(SYSEX_BYTES_MAX);
   /** Status byte of the message in progress, 0 between messages. */
   let status = 0;
   let dropping = false;
   let orphans = 0;
-  const needs = dataBytes(from);
 
   const garble = (bytes: number, why: Garble): void => {
     reader.found = 'garbled';
@@ -72,13 +67,9 @@ export function firmataReader(from: 'board' | 'host'): FirmataReader {
   const begin = (byte: number): void => {
     status = byte;
     reader.length = 0;
-    const need = needs[byte] as number;
-    if (need === UNKNOWN) {
-      status = 0;
-      orphans = 1;
-    } else if (need === 0) {
-      finish();
-    }
+    if (NEEDS[byte] !== UNKNOWN) return;
+    status = 0;
+    orphans = 1;
   };
 
   const take = (byte: number): void => {
@@ -92,7 +83,7 @@ export function firmataReader(from: 'board' | 'host'): FirmataReader {
       dropping = true;
     }
     data[reader.length++] = byte;
-    if (reader.length === needs[status]) finish();
+    if (reader.length === NEEDS[status]) finish();
   };
 
   const reader: FirmataReader = {
@@ -131,19 +122,4 @@ export function firmataReader(from: 'board' | 'host'): FirmataReader {
     },
   };
   return reader;
-}
-
-const UNKNOWN = 0xffff;
-const ENDLESS = 0xfffe;
-
-/** Data bytes that follow each status byte. */
-function dataBytes(from: 'board' | 'host'): Uint16Array {
-  const needs = new Uint16Array(256).fill(UNKNOWN);
-  for (const command of [ANALOG, DIGITAL]) needs.fill(2, command, command + 16);
-  for (const command of [REPORT_ANALOG, REPORT_DIGITAL]) needs.fill(1, command, command + 16);
-  needs[PIN_MODE] = needs[PIN_VALUE] = 2;
-  needs[VERSION] = from === 'board' ? 2 : 0;
-  needs[RESET] = 0;
-  needs[SYSEX] = ENDLESS;
-  return needs;
 }

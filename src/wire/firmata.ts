@@ -36,7 +36,7 @@ export function firmataSession(plan: BoardPlan): WireSession {
   const { inputs, boardName: wanted } = plan;
   const rounds = analogRounds(inputs?.channels ?? []);
   const outputs = firmataOutputs(plan.outputs);
-  const reader = firmataReader('board');
+  const reader = firmataReader();
   const garbled = { kind: 'garbled' as const, bytes: 0, why: 'cut' as Garble };
 
   let stage: 'greeting' | 'mapping' | 'ready' = 'greeting';
@@ -110,19 +110,14 @@ export function firmataSession(plan: BoardPlan): WireSession {
   };
 
   const sysex = (data: Uint8Array, length: number, emit: Emit): void => {
-    switch (data[0]) {
-      case FIRMWARE:
-        return firmwareReported(data, length, emit);
-      case ANALOG_MAPPING:
-        return mapped(data, length, emit);
-      case PIN_STATE:
-        if (length > 1 && stage === 'ready') emit({ kind: 'echo', id: data[1] as number, boardUs: Number.NaN });
-        return;
-      case EXTENDED_ANALOG:
-        if (length > 3 && stage === 'ready') {
-          rounds.take(data[1] as number, (data[2] as number) | ((data[3] as number) << 7), emit);
-        }
-        return;
+    const feature = data[0] as number;
+    if (feature === FIRMWARE) firmwareReported(data, length, emit);
+    else if (feature === ANALOG_MAPPING) mapped(data, length, emit);
+    else if (stage !== 'ready') return;
+    else if (feature === PIN_STATE && length > 1) {
+      emit({ kind: 'echo', id: data[1] as number, boardUs: Number.NaN });
+    } else if (feature === EXTENDED_ANALOG && length > 3) {
+      rounds.take(data[1] as number, (data[2] as number) | ((data[3] as number) << 7), emit);
     }
   };
 

@@ -22,8 +22,8 @@ export function linesWriter(common: LinesCommands, output: OutputWiring): LinesW
   const template = templateOf(common, output);
   if (template?.kind === 'mistake') throw new Error(`template of ${output.follower}: ${template.wrong}`);
   const limp = utf8(texts.limp);
-  const powerOn = utf8(output.power === null ? null : texts.powerOn);
-  const powerOff = utf8(output.power === null ? null : texts.powerOff);
+  const powerOn = utf8(texts.powerOn);
+  const powerOff = utf8(texts.powerOff);
   return {
     bytesMax: Math.max(template?.bytesMax ?? 0, limp.length, powerOn.length, powerOff.length),
     encode: (frame, out) => template?.write(frame, out) ?? 0,

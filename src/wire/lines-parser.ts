@@ -120,7 +120,7 @@ export function lineParser(
         continue;
       }
       const colon = colonOf(line, at, end);
-      if (column > 0 && named !== colon >= 0) return false;
+      if (colon === at || (column > 0 && named !== colon >= 0)) return false;
       named = colon >= 0;
       const input = named ? inputNamed(line, at, colon) : column < inputOfColumn.length ? inputOfColumn[column] : -1;
       const past = number(line, named ? skipSoft(line, colon + 1, end) : at, end, input as number);
