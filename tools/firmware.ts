@@ -78,6 +78,11 @@ function sha256(bytes: Uint8Array): string {
 }
 
 if (process.argv[1] !== undefined && fileURLToPath(import.meta.url) === process.argv[1]) {
-  await firmwareHex();
-  process.stdout.write(`${KEPT}\n`);
+  try {
+    await firmwareHex();
+    process.stdout.write(`${KEPT}\n`);
+  } catch (fault) {
+    process.stderr.write(`${fault instanceof Error ? fault.message : String(fault)}\n`);
+    process.exitCode = 1;
+  }
 }

@@ -1,9 +1,8 @@
 import { virtualClock } from '../../src/clock/virtual.ts';
 import type { VirtualClock } from '../../src/clock/virtual.ts';
-import { firmwareHex } from '../../tools/firmware.ts';
-import { flashImage } from './hex.ts';
 import { unoBoard } from './uno.ts';
 import type { UnoBoard } from './uno.ts';
+import { standardFirmata } from './wired.ts';
 
 /** One board on a clock of its own, spoken to byte by byte. */
 export interface Solo {
@@ -17,8 +16,6 @@ export interface Solo {
   /** Widths of the pulses on `pin` that began at `sinceUs` or later. */
   widthsSince(pin: number, sinceUs: number): number[];
 }
-
-const flash = flashImage(await firmwareHex());
 
 /** The firmware's greeting is over well before this (it blinks its version on the LED for 1.88 s first). */
 export const BOOT_US = 2_000_000;
@@ -34,7 +31,7 @@ export function solo(bootUs: number = BOOT_US): Solo {
       heardAtUs.push(clock.nowUs());
     }
   };
-  const board = unoBoard({ clock, flash, send });
+  const board = unoBoard({ clock, flash: standardFirmata, send });
   board.reset();
   clock.runTo(bootUs);
   return {

@@ -1,8 +1,11 @@
 import { describe, expect, it } from 'vitest';
+import { virtualClock } from '../../src/clock/virtual.ts';
 import { ANALOG_MAPPING_QUERY, CAPABILITY_QUERY, position, reportAnalog, servoConfig } from './messages.ts';
 import { flashImage } from './hex.ts';
 import { pinRecorder } from './pins.ts';
 import { BOOT_US, solo } from './solo.ts';
+import { unoBoard } from './uno.ts';
+import { wiredBoard } from './wired.ts';
 
 /** 10 bits at 57600 baud (8N1): 173.6 us. */
 const BYTE_US = 10e6 / 57_600;
@@ -80,6 +83,27 @@ describe('the emulated board', () => {
     }
   });
 
+  it('keeps a received byte while the firmware starts to send', () => {
+    const clock = virtualClock();
+    const sent: number[] = [];
+    // Opcodes by hand from the AVR instruction set manual; register addresses from the ATmega328P datasheet.
+    const program = [
+      [0xe130, 0x9330, 0x00c4], // ldi r19,16; sts UBRR0L,r19: 58823 baud
+      [0xe108, 0x9300, 0x00c1], // ldi r16,RXEN|TXEN; sts UCSR0B,r16
+      [0x9110, 0x00c0, 0xff17, 0xcffc], // wait: lds r17,UCSR0A; sbrs r17,RXC; rjmp wait
+      [0x9300, 0x00c1], // sts UCSR0B,r16, with the byte still unread
+      [0x9110, 0x00c0, 0xff17, 0xcffc], // again: lds r17,UCSR0A; sbrs r17,RXC; rjmp again
+      [0x9120, 0x00c6, 0x9320, 0x00c6, 0xcfff], // lds r18,UDR0; sts UDR0,r18; end: rjmp end
+    ];
+    const flash = Uint16Array.from(program.flat());
+    const board = unoBoard({ clock, flash, send: ([byte = -1]) => sent.push(byte) });
+    board.reset();
+    clock.runTo(1_000);
+    board.receive(Uint8Array.of(0x5a));
+    clock.runTo(2_000);
+    expect(sent).toEqual([0x5a]);
+  });
+
   it('lets go of every pin at a reset, loses what was under way and greets again', () => {
     const { clock, board, heard, say, wait, widthsSince } = solo();
     say(servoConfig(9), position(9, 2000));
@@ -88,10 +112,9 @@ describe('the emulated board', () => {
     say(ANALOG_MAPPING_QUERY);
     board.reset();
     const resetUs = clock.nowUs();
-    wait(200);
     expect(board.level(9)).toBe('open');
     wait(BOOT_US);
-    expect(widthsSince(9, resetUs + 200)).toEqual([]);
+    expect(widthsSince(9, resetUs)).toEqual([]);
     expect(heard.slice(before, before + 3)).toEqual([0xf9, 2, 4]);
   });
 
@@ -107,5 +130,39 @@ describe('the emulated board', () => {
     expect(board.powered).toBe(false);
     expect([heard.length, board.pulses(9).length]).toEqual([bytes, pulses]);
     expect(board.level(9)).toBe('open');
+  });
+});
+
+describe('a board behind a port', () => {
+  it('starts when the port opens, takes what is written and is off while its cable is out', () => {
+    const clock = virtualClock();
+    const { port, board, unplug, replug } = wiredBoard(clock, 'serial:uno');
+    const heard: string[] = [];
+    port.start({
+      opened: () => heard.push('opened'),
+      data: (bytes) => heard.push(...Array.from(bytes, (byte) => byte.toString(16))),
+      idle: () => heard.push('idle'),
+      closed: ({ code }) => heard.push(code),
+    });
+    expect(board.powered).toBe(false);
+    clock.runTo(BOOT_US);
+    expect(heard.slice(0, 4)).toEqual(['opened', 'f9', '2', '4']);
+
+    expect(port.write(Uint8Array.from([servoConfig(9), position(9, 1700)].flat()))).toBe(true);
+    clock.runTo(BOOT_US + 100_000);
+    expect(heard.at(-1)).toBe('idle');
+    expect(board.pulses(9).length).toBeGreaterThan(1);
+
+    heard.length = 0;
+    unplug();
+    clock.runTo(clock.nowUs() + 1_000_000);
+    expect(heard[0]).toBe('PORT_CLOSED');
+    expect(heard.slice(1).every((what) => what === 'PORT_MISSING')).toBe(true);
+    expect([board.powered, board.level(9)]).toEqual([false, 'open']);
+
+    heard.length = 0;
+    replug();
+    clock.runTo(clock.nowUs() + 1_000_000 + BOOT_US);
+    expect(heard.slice(heard.indexOf('opened'), heard.indexOf('opened') + 4)).toEqual(['opened', 'f9', '2', '4']);
   });
 });
