@@ -1,5 +1,3 @@
-import { relative } from 'node:path';
-
 /** What one step of the test command found; `failed` and `skipped` name the tests. */
 export interface Tally {
   readonly passed: number;
@@ -7,39 +5,42 @@ export interface Tally {
   readonly skipped: readonly string[];
 }
 
-/** The part of vitest's JSON report that the count rests on. */
-export interface VitestReport {
-  readonly testResults: readonly {
+/** One run of vitest, as `run-record.ts` writes it down. */
+export interface RunRecord {
+  readonly tests: readonly {
     readonly name: string;
-    readonly status: string;
-    readonly assertionResults: readonly { readonly fullName: string; readonly status: string }[];
+    readonly state: 'passed' | 'failed' | 'skipped' | 'pending';
+    /** Why it was skipped, or empty. */
+    readonly note: string;
   }[];
+  /** Files that did not load. */
+  readonly brokenFiles: readonly string[];
+  /** Groups of tests whose set-up or clearing-up failed. */
+  readonly brokenSuites: readonly string[];
+  /** What was thrown outside every test. */
+  readonly strayErrors: readonly string[];
 }
 
 /**
- * Counts a run of vitest so that nothing broken can look green: a file that does not load, an error outside any test,
- * a run without a report and a run without a test each count as one failure.
- * @param report null when the run left none
+ * Counts a run of vitest so that nothing broken can look green: a file that does not load, a set-up that fails, an
+ * error outside any test, a run without a record and a run without a test each count as one failure.
+ * @param record null when the run left none
  * @param exitCode of vitest
  */
-export function tallyOfReport(step: string, report: VitestReport | null, exitCode: number, root: string): Tally {
-  if (report === null) return failure(`${step}: ended without a report (exit status ${exitCode})`);
-  let passed = 0;
-  const failed: string[] = [];
-  const skipped: string[] = [];
-  for (const file of report.testResults) {
-    const path = relative(root, file.name);
-    const failedBefore = failed.length;
-    for (const test of file.assertionResults) {
-      if (test.status === 'passed') passed++;
-      else if (test.status === 'failed') failed.push(`${path}: ${test.fullName}`);
-      else skipped.push(`${path}: ${test.fullName}`);
-    }
-    if (file.status === 'failed' && failed.length === failedBefore) failed.push(`${path}: the file itself failed`);
-  }
-  if (failed.length === 0 && exitCode !== 0)
-    failed.push(`${step}: an error outside its tests (exit status ${exitCode})`);
+export function tallyOfRun(step: string, record: RunRecord | null, exitCode: number): Tally {
+  if (record === null) return failure(`${step}: ended without a record (exit status ${exitCode})`);
+  const named = (state: string) => record.tests.filter((test) => test.state === state);
+  const failed = [
+    ...named('failed').map(({ name }) => name),
+    ...named('pending').map(({ name }) => `${name}: never ended`),
+    ...record.brokenFiles.map((name) => `${name}: did not load`),
+    ...record.brokenSuites.map((name) => `${name}: set-up or clearing-up failed`),
+    ...record.strayErrors.map((message) => `${step}: outside every test: ${message}`),
+  ];
+  const passed = named('passed').length;
+  if (failed.length === 0 && exitCode !== 0) failed.push(`${step}: exit status ${exitCode}`);
   if (failed.length === 0 && passed === 0) failed.push(`${step}: ran no test`);
+  const skipped = named('skipped').map(({ name, note }) => (note === '' ? name : `${name} (${note})`));
   return { passed, failed, skipped };
 }
 

@@ -6,10 +6,11 @@ import { spawn } from 'node:child_process';
 import { existsSync, mkdirSync, readdirSync, readFileSync, rmSync } from 'node:fs';
 import { join, resolve } from 'node:path';
 import { provide, type SystemPackage } from './system-packages.ts';
-import { closingLine, sum, type Tally, tallyOfCheck, tallyOfReport, type VitestReport } from './tally.ts';
+import { closingLine, type RunRecord, sum, type Tally, tallyOfCheck, tallyOfRun } from './tally.ts';
 
 const ROOT = resolve(import.meta.dirname, '..');
-const REPORTS = join(ROOT, '.cache', 'test');
+const RECORDS = join(ROOT, '.cache', 'test');
+const RECORDER = './tools/run-record.ts';
 
 /** A step that hangs is ended: a test command must always come to its last line. */
 const STEP_LIMIT_MS = 20 * 60_000;
@@ -31,8 +32,8 @@ const CHECKS = ['types', 'lint', 'format:check', 'boundaries', 'unused', 'packag
 const tallies: Tally[] = [];
 
 async function main(): Promise<void> {
-  rmSync(REPORTS, { recursive: true, force: true });
-  mkdirSync(REPORTS, { recursive: true });
+  rmSync(RECORDS, { recursive: true, force: true });
+  mkdirSync(RECORDS, { recursive: true });
   const missing = provide(SYSTEM_PACKAGES);
   sayMissing(missing);
   for (const name of CHECKS) await step(name, () => check(name));
@@ -66,21 +67,14 @@ async function check(name: string): Promise<Tally> {
 }
 
 async function vitest(name: string, args: readonly string[], env: NodeJS.ProcessEnv): Promise<Tally> {
-  const reportPath = join(REPORTS, `${name.replaceAll(' ', '-')}.json`);
+  const recordPath = join(RECORDS, `${name.replaceAll(' ', '-')}.json`);
   const exitCode = await ended(
     process.execPath,
-    [
-      join('node_modules', 'vitest', 'vitest.mjs'),
-      'run',
-      ...args,
-      '--reporter=default',
-      '--reporter=json',
-      `--outputFile.json=${reportPath}`,
-    ],
-    env,
+    [join('node_modules', 'vitest', 'vitest.mjs'), 'run', ...args, '--reporter=default', `--reporter=${RECORDER}`],
+    { ...env, EIDOGRAPH_RECORD: recordPath },
   );
-  const report = existsSync(reportPath) ? (JSON.parse(readFileSync(reportPath, 'utf8')) as VitestReport) : null;
-  return tallyOfReport(name, report, exitCode, ROOT);
+  const record = existsSync(recordPath) ? (JSON.parse(readFileSync(recordPath, 'utf8')) as RunRecord) : null;
+  return tallyOfRun(name, record, exitCode);
 }
 
 async function freshLaws(folders: readonly string[]): Promise<Tally> {

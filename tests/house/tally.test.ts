@@ -1,76 +1,47 @@
 import { describe, expect, it } from 'vitest';
-import { closingLine, sum, tallyOfCheck, tallyOfReport, type VitestReport } from '../../tools/tally.ts';
+import { closingLine, type RunRecord, sum, tallyOfCheck, tallyOfRun } from '../../tools/tally.ts';
 
-function report(...files: [name: string, status: string, tests: [name: string, status: string][]][]): VitestReport {
-  return {
-    testResults: files.map(([name, status, tests]) => ({
-      name: `/root/${name}`,
-      status,
-      assertionResults: tests.map(([fullName, testStatus]) => ({ fullName, status: testStatus })),
-    })),
-  };
-}
+const EMPTY: RunRecord = { tests: [], brokenFiles: [], brokenSuites: [], strayErrors: [] };
+const GREEN: RunRecord = { ...EMPTY, tests: [{ name: 'a: one', state: 'passed', note: '' }] };
 
 describe('the count of the test command', () => {
-  it('counts tests by their status and names those that did not pass', () => {
-    const mixed = report(
-      [
-        'a.test.ts',
-        'failed',
-        [
-          ['one', 'passed'],
-          ['two', 'failed'],
-          ['three', 'skipped'],
-        ],
+  it('counts tests by their state and names those that did not pass, with the reason of a skip', () => {
+    const mixed: RunRecord = {
+      ...EMPTY,
+      tests: [
+        { name: 'a: one', state: 'passed', note: '' },
+        { name: 'a: two', state: 'failed', note: '' },
+        { name: 'b: three', state: 'skipped', note: 'no socat' },
+        { name: 'b: four', state: 'skipped', note: '' },
+        { name: 'b: five', state: 'passed', note: '' },
       ],
-      [
-        'b.test.ts',
-        'passed',
-        [
-          ['four', 'passed'],
-          ['five', 'todo'],
-        ],
-      ],
-    );
-    expect(tallyOfReport('rooms', mixed, 1, '/root')).toEqual({
+    };
+    expect(tallyOfRun('rooms', mixed, 1)).toEqual({
       passed: 2,
-      failed: ['a.test.ts: two'],
-      skipped: ['a.test.ts: three', 'b.test.ts: five'],
+      failed: ['a: two'],
+      skipped: ['b: three (no socat)', 'b: four'],
     });
   });
 
-  it('counts a file that did not load as one failure', () => {
-    const broken = report(['a.test.ts', 'failed', []], ['b.test.ts', 'passed', [['one', 'passed']]]);
-    expect(tallyOfReport('rooms', broken, 1, '/root').failed).toEqual(['a.test.ts: the file itself failed']);
+  it('is green for a run in which all passed', () => {
+    expect(tallyOfRun('rooms', GREEN, 0)).toEqual({ passed: 1, failed: [], skipped: [] });
   });
 
-  it('counts an error outside all tests as one failure', () => {
-    const green = report(['a.test.ts', 'passed', [['one', 'passed']]]);
-    expect(tallyOfReport('rooms', green, 0, '/root').failed).toEqual([]);
-    expect(tallyOfReport('rooms', green, 1, '/root').failed).toHaveLength(1);
-  });
-
-  it('counts a run that left no report, or ran no test, as one failure', () => {
-    expect(tallyOfReport('rooms', null, 0, '/root').failed).toHaveLength(1);
-    expect(tallyOfReport('rooms', report(), 0, '/root').failed).toEqual(['rooms: ran no test']);
-    const allSkipped = report(['a.test.ts', 'passed', [['one', 'skipped']]]);
-    expect(tallyOfReport('smoke', allSkipped, 0, '/root').failed).toEqual(['smoke: ran no test']);
+  it.each<[string, RunRecord | null, number]>([
+    ['a file that did not load', { ...GREEN, brokenFiles: ['b.test.ts'] }, 1],
+    ['a set-up that failed', { ...GREEN, brokenSuites: ['b.test.ts: group'] }, 1],
+    ['an error outside every test', { ...GREEN, strayErrors: ['lost promise'] }, 1],
+    ['a test that never ended', { ...GREEN, tests: [{ name: 'a: one', state: 'pending', note: '' }] }, 1],
+    ['a failing exit status that nothing explains', GREEN, 1],
+    ['a run that left no record', null, 0],
+    ['a run without a test', EMPTY, 0],
+    ['a run of skipped tests only', { ...EMPTY, tests: [{ name: 'a: one', state: 'skipped', note: '' }] }, 0],
+  ])('counts %s as one failure', (_what, record, exitCode) => {
+    expect(tallyOfRun('rooms', record, exitCode).failed).toHaveLength(1);
   });
 
   it('adds steps up to one closing line', () => {
-    const green = tallyOfReport(
-      'rooms',
-      report([
-        'a.test.ts',
-        'passed',
-        [
-          ['one', 'passed'],
-          ['two', 'passed'],
-        ],
-      ]),
-      0,
-      '/root',
-    );
-    expect(closingLine(sum([tallyOfCheck('types', 0), tallyOfCheck('lint', 2), green]))).toBe('3 passed, 1 failed');
+    const steps = [tallyOfCheck('types', 0), tallyOfCheck('lint', 2), tallyOfRun('rooms', GREEN, 0)];
+    expect(closingLine(sum(steps))).toBe('2 passed, 1 failed');
   });
 });
