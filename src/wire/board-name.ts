@@ -1,5 +1,5 @@
 /** Longest board name that is kept, in bytes as received. */
-export const BOARD_NAME_BYTES_MAX = 64;
+const BOARD_NAME_BYTES_MAX = 64;
 
 const text = new TextDecoder();
 

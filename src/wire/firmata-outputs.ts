@@ -19,15 +19,30 @@ export interface FirmataOutputs {
   encode(output: number, frame: Frame, out: Uint8Array): number;
   limp(output: number, out: Uint8Array): number;
   power(output: number, on: boolean, out: Uint8Array): number;
-  /** The board has restarted: it has been told nothing. */
+  /** The board has restarted: it has been told nothing, and nothing is known of it. */
   forget(): void;
+  /** What the board has told: how many pins, and which of them serve as inputs. */
+  learn(pins: number, inputs: readonly number[]): void;
 }
+
+/**
+ * The pin whose servo slot is set before a servo takes it over. Attaching a servo starts pulses at whatever its slot
+ * last had (1500 us at first) until its position has come, half a millisecond later at 57600 baud: one blow in forty.
+ * StandardFirmata gives the next servo the slot freed last, so the position is put there first, on a pin that carries
+ * nothing: 13 has the board's light, which the firmware itself blinks at each start.
+ */
+const SPARE_PIN = 13;
+const PRIMING_BYTES = SERVO_CONFIG_BYTES + analogBytes(SPARE_PIN) + PIN_MODE_BYTES;
 
 export function firmataOutputs(outputs: readonly OutputWiring[]): FirmataOutputs {
   const grids = outputs.map((output) => pulseGrid(output.servos, 1));
   const limits = outputs.map((output) => output.servos.map(configuredLimits));
   const attached = outputs.map((output) => new Uint8Array(output.servos.length));
   const powerSet = new Uint8Array(outputs.length);
+  const spareIsOurs = outputs.some(
+    ({ servos, power }) => power?.channel === SPARE_PIN || servos.some(({ channel }) => channel === SPARE_PIN),
+  );
+  let canPrime = false;
   /** Levels of each eight-pin port. A digital message sets all eight, so power outputs must be known to stay as they are. */
   const levels = new Uint8Array(16);
 
@@ -37,7 +52,18 @@ export function firmataOutputs(outputs: readonly OutputWiring[]): FirmataOutputs
     levels[port] = high ? (levels[port] as number) | bit : (levels[port] as number) & ~bit;
   };
 
+  const attach = (pin: number, { minUs, maxUs }: Limits, us: number, out: Uint8Array, from: number): number => {
+    let at = from;
+    if (canPrime) {
+      at = putServoConfig(SPARE_PIN, minUs, maxUs, out, at);
+      at = putAnalog(SPARE_PIN, us, out, at);
+      at = putPinMode(SPARE_PIN, MODE_OUTPUT, out, at);
+    }
+    return putServoConfig(pin, minUs, maxUs, out, at);
+  };
+
   const forget = (): void => {
+    canPrime = false;
     for (const servos of attached) servos.fill(0);
     powerSet.fill(0);
     levels.fill(0);
@@ -47,9 +73,13 @@ export function firmataOutputs(outputs: readonly OutputWiring[]): FirmataOutputs
 
   return {
     forget,
+    learn(pins, inputs) {
+      canPrime = pins > SPARE_PIN && !spareIsOurs && !inputs.includes(SPARE_PIN);
+    },
     bytesMax(output) {
       const { servos } = outputs[output] as OutputWiring;
-      const command = servos.reduce((sum, servo) => sum + SERVO_CONFIG_BYTES + analogBytes(servo.channel), 0);
+      const attaching = PRIMING_BYTES + SERVO_CONFIG_BYTES;
+      const command = servos.reduce((sum, servo) => sum + attaching + analogBytes(servo.channel), 0);
       return Math.max(command, PIN_MODE_BYTES + DIGITAL_BYTES, PIN_STATE_QUERY_BYTES);
     },
     encode(output, frame, out) {
@@ -63,10 +93,7 @@ export function firmataOutputs(outputs: readonly OutputWiring[]): FirmataOutputs
         if (servo >= frame.pulsing) continue;
         const pin = (servos[servo] as ServoWiring).channel;
         if (isAttached[servo] === 0) {
-          // Attaching starts pulses at whatever the board's servo slot last had, 1500 us at first: its position
-          // follows in the same write, about half a millisecond later at 57600 baud.
-          const limit = limits[output]?.[servo] as Limits;
-          at = putServoConfig(pin, limit.minUs, limit.maxUs, out, at);
+          at = attach(pin, limits[output]?.[servo] as Limits, us, out, at);
           isAttached[servo] = 1;
         }
         at = putAnalog(pin, us, out, at);
@@ -77,8 +104,7 @@ export function firmataOutputs(outputs: readonly OutputWiring[]): FirmataOutputs
       const { servos } = outputs[output] as OutputWiring;
       let at = 0;
       let ports = 0;
-      // In the reverse order of attaching: StandardFirmata gives a servo that is attached again the slot detached
-      // last, with the pulse that slot last had. This way each servo gets its own slot back.
+      // In the reverse order of attaching: where no spare pin is free, each servo then gets its own slot back.
       for (let servo = servos.length - 1; servo >= 0; servo--) {
         const pin = (servos[servo] as ServoWiring).channel;
         at = putPinMode(pin, MODE_OUTPUT, out, at);

@@ -102,6 +102,7 @@ export function firmataSession(plan: BoardPlan): WireSession {
       emit({ kind: 'send', bytes: samplingRequest(rounds.pins, rounds.channels, inputs.samplingMs) });
     }
     const pins = length - 1;
+    outputs.learn(pins, rounds.pins);
     for (const { servos, power } of plan.outputs) {
       for (const { channel } of servos) if (channel >= pins) emit({ kind: 'lacks', what: 'output', channel });
       if (power !== null && power.channel >= pins) emit({ kind: 'lacks', what: 'output', channel: power.channel });

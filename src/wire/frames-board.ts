@@ -5,6 +5,8 @@ import {
   FRAMES_VERSION,
   HELLO_HEAD,
   HELLO_NAME_MAX,
+  HELLO_PULSING,
+  HELLO_STARTED,
   HOST_HEAD,
   NO_COUNT,
   PAYLOAD_BYTES_MAX,
@@ -26,6 +28,8 @@ export type FromBoard =
       readonly kind: 'hello';
       /** True when the board has just started, false when it was asked. */
       readonly started: boolean;
+      /** Whether a servo has pulses; absent: no. */
+      readonly pulsing?: boolean;
       readonly inputs: number;
       readonly outputs: number;
       /** At most 32 bytes of UTF-8. */
@@ -57,7 +61,8 @@ export function encodeFromBoard(message: FromBoard, sequence: number, timeUs: nu
   let length = BOARD_HEAD;
   if (message.kind === 'hello') {
     const name = new TextEncoder().encode(message.name).subarray(0, HELLO_NAME_MAX);
-    payload.set([FRAMES_VERSION, message.started ? 1 : 0, message.inputs, message.outputs], BOARD_HEAD);
+    const flags = (message.started ? HELLO_STARTED : 0) | (message.pulsing === true ? HELLO_PULSING : 0);
+    payload.set([FRAMES_VERSION, flags, message.inputs, message.outputs], BOARD_HEAD);
     payload.set(name, HELLO_HEAD);
     length = HELLO_HEAD + name.length;
   } else if (message.kind === 'readings') {

@@ -21,9 +21,13 @@ const CRC_BYTES = 2;
 export const HOST_HEAD = 2;
 /** Type, sequence number, board time. */
 export const BOARD_HEAD = 6;
-/** Version, started, inputs, outputs; the name follows. */
+/** Version, flags, inputs, outputs; the name follows. */
 export const HELLO_HEAD = BOARD_HEAD + 4;
 export const HELLO_NAME_MAX = 32;
+/** Flag: said unasked, because the board has just started. */
+export const HELLO_STARTED = 0x01;
+/** Flag: at least one servo has pulses. */
+export const HELLO_PULSING = 0x02;
 /** First channel; the counts follow. */
 export const READINGS_HEAD = BOARD_HEAD + 1;
 /** A count that says "no value". */

@@ -7,6 +7,8 @@ import {
   FROM_HOST,
   frameReader,
   HELLO_HEAD,
+  HELLO_PULSING,
+  HELLO_STARTED,
   HOST_HEAD,
   NO_COUNT,
   PAYLOAD_BYTES_MAX,
@@ -113,17 +115,19 @@ export function framesSession(plan: BoardPlan): WireSession {
 
   const hello = (payload: Uint8Array, length: number, emit: Emit): void => {
     if (length < HELLO_HEAD || payload[BOARD_HEAD] !== FRAMES_VERSION) return garble(length, 'syntax', emit);
-    const started = payload[BOARD_HEAD + 1] !== 0;
-    if (ready && !started) return count(payload[1] as number, emit);
+    const flags = payload[BOARD_HEAD + 1] as number;
+    const started = (flags & HELLO_STARTED) !== 0;
+    const rawUs = u32(payload, 2);
+    if (ready && !started && !jumpedBack(rawUs)) return count(payload[1] as number, emit);
     if (ready) restarted(emit);
     const board = boardName(payload, HELLO_HEAD, length);
     if (plan.boardName !== null && plan.boardName !== board) return emit({ kind: 'stranger', board });
-    time[RAW] = time[UNWRAPPED] = u32(payload, 2);
+    time[RAW] = time[UNWRAPPED] = rawUs;
     expected = -1;
     count(payload[1] as number, emit);
     lacks(payload[BOARD_HEAD + 2] as number, payload[BOARD_HEAD + 3] as number, emit);
     ready = true;
-    emit({ kind: 'ready', board });
+    emit({ kind: 'ready', board, kept: !started && (flags & HELLO_PULSING) !== 0 });
   };
 
   const readings = (payload: Uint8Array, length: number, emit: Emit): void => {

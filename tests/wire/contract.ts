@@ -26,7 +26,7 @@ export function keepsTheContract(name: string, fixture: WireFixture): void {
   describe(`the ${name} wire`, () => {
     it('is ready once its board has greeted, and tells the board its name', () => {
       const events = connected(open(), fixture.board());
-      expect(events.filter(({ kind }) => kind === 'ready')).toEqual([{ kind: 'ready', board: 'handstick' }]);
+      expect(events.filter(({ kind }) => kind === 'ready')).toMatchObject([{ board: 'handstick' }]);
       expect(kinds(events)).not.toContain('garbled');
     });
 

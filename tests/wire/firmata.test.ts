@@ -215,21 +215,41 @@ describe('servos on Firmata', () => {
     Array.of(0xf0, 0x70, pin, min & 0x7f, min >> 7, max & 0x7f, max >> 7, 0xf7);
   const position = (pin: number, us: number): number[] =>
     pin > 15 ? [0xf0, 0x6f, pin, us & 0x7f, us >> 7, 0xf7] : analog(pin, us);
+  /** Puts the position into the slot that the next servo gets, on pin 13, which then lets go of it. */
+  const primed = (min: number, max: number, us: number): number[] => [
+    ...config(13, min, max),
+    ...position(13, us),
+    ...hex('f4 0d 01'),
+  ];
   const encode = (session: WireSession, pulsing: number): number[] =>
     written(session, 0, (out) => session.encode(0, frameOf([1_500.4, 900.6, 2_000], [], pulsing), out));
 
   it('are configured and placed in one write, one after another while the arm wakes', () => {
     const session = greeted(FOLLOWERS);
     expect(encode(session, 0)).toEqual([]);
-    expect(encode(session, 1)).toEqual([...config(5, 560, 2_440), ...position(5, 1_500)]);
+    expect(encode(session, 1)).toEqual([...primed(560, 2_440, 1_500), ...config(5, 560, 2_440), ...position(5, 1_500)]);
     expect(encode(session, 3)).toEqual([
       ...position(5, 1_500),
+      ...primed(600, 2_400, 901),
       ...config(6, 600, 2_400),
       ...position(6, 901),
+      ...primed(1_000, 2_000, 2_000),
       ...config(17, 1_000, 2_000),
       ...position(17, 2_000),
     ]);
     expect(encode(session, 3)).toEqual([...position(5, 1_500), ...position(6, 901), ...position(17, 2_000)]);
+  });
+
+  it('are not primed where pin 13 is in use, or unknown', () => {
+    const onSpare: OutputWiring = { ...WREN, servos: [{ channel: 13, minUs: 600, maxUs: 2_400, joint: 'shoulder' }] };
+    const powered: OutputWiring = { ...WREN, power: { channel: 13, on: 'high' } };
+    const plain = [...config(5, 560, 2_440), ...position(5, 1_500)];
+    expect(encode(greeted({ ...FOLLOWERS, outputs: [powered] }), 1)).toEqual(plain);
+    expect(encode(greeted({ ...FOLLOWERS, outputs: [WREN, onSpare] }), 1)).toEqual(plain);
+    const unmapped = opened(FOLLOWERS);
+    pushed(unmapped, [...VERSION, ...FIRMWARE]);
+    nudged(unmapped);
+    expect(encode(unmapped, 1)).toEqual(plain);
   });
 
   it('are detached in the reverse order, left low, and configured again at the next command', () => {
@@ -255,7 +275,7 @@ describe('servos on Firmata', () => {
       const output: OutputWiring = { ...WREN, servos: [{ channel: 9, minUs, maxUs, joint: 'shoulder' }] };
       const session = greeted({ ...FOLLOWERS, outputs: [output] });
       const bytes = written(session, 0, (out) => session.encode(0, frameOf([1_500]), out));
-      expect(bytes).toEqual([...config(9, configuredMin, configuredMax), ...position(9, 1_500)]);
+      expect(bytes.slice(-11)).toEqual([...config(9, configuredMin, configuredMax), ...position(9, 1_500)]);
       for (const held of [(544 - configuredMin) / 4, (2_400 - configuredMax) / 4]) {
         expect(held).toBe(Math.trunc(held));
         expect(Math.abs(held)).toBeLessThanOrEqual(128);
@@ -265,7 +285,8 @@ describe('servos on Firmata', () => {
 
   it('are never sent in a sysex that firmware cuts off, nor with a byte over 127 inside', () => {
     const servos = Array.from({ length: 48 }, (_, index) => ({
-      channel: 2 + index,
+      // All but 13, on which each is primed.
+      channel: index < 11 ? 2 + index : 3 + index,
       minUs: 544,
       maxUs: 2_912,
       joint: 'shoulder',
@@ -276,7 +297,7 @@ describe('servos on Firmata', () => {
       Buffer.from(bytes)
         .toString('latin1')
         .match(/\xf0[^\xf7]*\xf7/g) ?? [];
-    expect(sysexes.length).toBe(48 + 34);
+    expect(sysexes.length).toBe(2 * 48 + 35);
     for (const sysex of sysexes) {
       // MAX_DATA_BYTES of FirmataConstants.h.
       expect(sysex.length).toBeLessThanOrEqual(64);

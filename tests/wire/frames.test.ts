@@ -1,3 +1,4 @@
+import { readFileSync } from 'node:fs';
 import { describe, expect, it } from 'vitest';
 import { decodeFromHost, encodeFromBoard, type FromBoard, type FromHost } from '../../src/wire/frames-board.ts';
 import { FRAME_BYTES_MAX, frameReader, READINGS_MAX, SERVOS_MAX, seal } from '../../src/wire/frames-layout.ts';
@@ -43,7 +44,7 @@ const FROM_BOARD: readonly BoardVector[] = [
     sequence: 0,
     timeUs: 1_000,
     message: { kind: 'hello', started: true, inputs: 6, outputs: 12, name: 'wren' },
-    event: { kind: 'ready', board: 'wren' },
+    event: { kind: 'ready', board: 'wren', kept: false },
   },
   {
     what: 'readings from channel 1 on, one of them without a value',
@@ -226,6 +227,16 @@ describe('a frame to the board', () => {
   });
 });
 
+describe('the frames that README.md shows', () => {
+  it('are the ones this suite writes and reads', () => {
+    const text = readFileSync(new URL('../../src/wire/README.md', import.meta.url), 'utf8');
+    const shown = [...text.matchAll(/ ((?:[0-9a-f]{2} ){4,}00)$/gm)].map((match) => match[1] as string);
+    const known = [...FROM_BOARD, ...FROM_HOST].map(({ bytes }) => bytes.replace(/^00 /, ''));
+    expect(shown).toHaveLength(5);
+    expect(known).toEqual(expect.arrayContaining(shown));
+  });
+});
+
 describe('a frames session', () => {
   it('drops what the board said before its hello', () => {
     const session = openSession({ name: 'frames' }, WREN);
@@ -316,6 +327,26 @@ describe('a frames session', () => {
     expect(kinds(pushed(session, row(1, 2, 20)))).toEqual(['reading']);
   });
 
+  it('sees a restart in an answer whose time lies far back', () => {
+    const session = greeted();
+    pushed(session, row(1, 1, 90_000_000));
+    expect(kinds(pushed(session, hello(false, 0, 20_000)))).toEqual(['reboot', 'ready']);
+  });
+
+  it('knows that the servos of a board that kept running still have their pulses', () => {
+    const session = greeted();
+    session.open(() => {});
+    const running = { kind: 'hello', inputs: 6, outputs: 12, name: 'wren' } as const;
+    expect(pushed(session, said({ ...running, started: false, pulsing: true }, 9, 10_000))).toEqual([
+      { kind: 'ready', board: 'wren', kept: true },
+    ]);
+    session.open(() => {});
+    // Asked, but it has started since: no servo has pulses.
+    expect(pushed(session, said({ ...running, started: false, pulsing: false }, 9, 10_000))).toEqual([
+      { kind: 'ready', board: 'wren', kept: false },
+    ]);
+  });
+
   it('drops a reading that was overtaken by a later one', () => {
     const session = greeted();
     pushed(session, row(1, 1, 500_000));
@@ -350,7 +381,7 @@ describe('a frames session', () => {
       { kind: 'lacks', what: 'input', channel: 4 },
       { kind: 'lacks', what: 'output', channel: 7 },
       { kind: 'lacks', what: 'output', channel: 7 },
-      { kind: 'ready', board: 'wren' },
+      { kind: 'ready', board: 'wren', kept: false },
     ]);
   });
 
@@ -361,7 +392,7 @@ describe('a frames session', () => {
       session,
       said({ kind: 'hello', started: true, inputs: 6, outputs: 12, name: '\u001b[2Jwren' }, 0, 0),
     );
-    expect(events).toEqual([{ kind: 'ready', board: '?[2Jwren' }]);
+    expect(events).toEqual([{ kind: 'ready', board: '?[2Jwren', kept: false }]);
   });
 
   it('reads as many channels as are announced from one frame', () => {

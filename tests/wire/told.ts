@@ -2,7 +2,7 @@ import type { Frame, WireEvent, WireSession } from '../../src/wire/types.ts';
 import type { TestBoard } from './boards.ts';
 
 /** An event that may be kept: a wire reuses its objects. */
-export function kept(event: WireEvent): WireEvent {
+function kept(event: WireEvent): WireEvent {
   if (event.kind === 'reading') return { ...event, counts: event.counts.slice() };
   return event.kind === 'send' ? { ...event, bytes: event.bytes.slice() } : { ...event };
 }
