@@ -1,6 +1,7 @@
 import { dirname, isAbsolute, join, normalize } from 'node:path';
 import type { FileText, ReadFile } from './file-reader.ts';
 import { FILE_BYTES_MAX } from './file-reader.ts';
+import { isRefused } from './located.ts';
 import type { LocatedMap, LocatedNode } from './located.ts';
 import { mergePatch } from './merge-patch.ts';
 import type { MistakeList, Place } from './mistake.ts';
@@ -43,6 +44,7 @@ export function libraryOf(readFile: ReadFile, mistakes: MistakeList): Library {
   };
 
   const fromFile = (node: LocatedNode, kind: FileKind, chain: readonly string[]): LocatedNode | null => {
+    if (isRefused(node)) return null;
     if (node.kind !== 'scalar' || typeof node.value !== 'string' || node.value === '') {
       mistakes.add('RIG_VALUE_TYPE', node.place, `this is ${valueText(node)}`, `give the path of a ${kind} file`);
       return null;

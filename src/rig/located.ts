@@ -24,6 +24,8 @@ export interface LocatedScalar {
   readonly kind: 'scalar';
   readonly place: Place;
   readonly value: string | number | boolean | null;
+  /** The reader has refused what stands here, and has said so: no more needs to be said about it. */
+  readonly refused?: true;
 }
 
 /** Keys and list indices from a node down to another. */
@@ -64,6 +66,10 @@ function childOf(node: LocatedNode, step: PropertyKey): LocatedNode | null {
   if (node.kind === 'map') return node.entries.get(String(step))?.value ?? null;
   if (node.kind === 'list' && typeof step === 'number') return node.items[step] ?? null;
   return null;
+}
+
+export function isRefused(node: LocatedNode | null): boolean {
+  return node?.kind === 'scalar' && node.refused === true;
 }
 
 /** `joints` and `1` and `range_deg` as `joints[1].range_deg`. */

@@ -27,7 +27,7 @@ export const MISTAKE_CODES = {
     remedy: 'write the values into one file of the circle',
   },
   RIG_KEY_UNKNOWN: { means: 'a key that means nothing here', remedy: 'take the key that is offered, or remove it' },
-  RIG_KEY_MISSING: { means: 'a key that must be there is not', remedy: 'add it' },
+  RIG_KEY_MISSING: { means: 'a key that must be there is not', remedy: 'add the key; the line says what its value is' },
   RIG_VALUE_TYPE: { means: 'a value of the wrong type', remedy: 'give the type that is named' },
   RIG_VALUE_BOUNDS: { means: 'a number outside its bounds', remedy: 'stay inside the bounds that are named' },
   RIG_VALUE_CHOICE: { means: 'a word that is none of the choices', remedy: 'take one of the choices' },

@@ -23,6 +23,8 @@ type Words = Pick<Finding, 'code' | 'wrong' | 'right'>;
 interface Located {
   readonly issue: Issue;
   readonly path: Path;
+  /** The complaint is about the key at the path's end, not about its value. */
+  readonly ofKey?: true;
 }
 
 /** The schema's complaints in words, with places; what is right is taken from the schema's descriptions. */
@@ -42,7 +44,7 @@ export function findingsOf(issues: readonly Issue[], root: LocatedNode, json: Js
 function flatten(issue: Issue, base: Path, root: LocatedNode): readonly Located[] {
   const path = [...base, ...issue.path];
   if (issue.code === 'unrecognized_keys') return issue.keys.map((key) => ({ issue, path: [...path, key] }));
-  if (issue.code === 'invalid_key') return issue.issues.map((inner) => ({ issue: inner, path }));
+  if (issue.code === 'invalid_key') return issue.issues.map((inner) => ({ issue: inner, path, ofKey: true }));
   if (issue.code !== 'invalid_union') return [{ issue, path }];
   const node = nodeAt(root, path);
   const branches = issue.errors.filter((branch) => !branch.some((inner) => isOtherType(inner, node)));
@@ -65,23 +67,30 @@ function unknownKey(path: Path, root: LocatedNode, json: JsonSchema): Finding & 
   const absent = known.filter((name) => map?.kind !== 'map' || !map.entries.has(name));
   const near = nearest(key, absent) ?? nearest(key, known);
   const right = near === null ? `known keys are ${listed(known)}` : `did you mean ${near}?`;
-  const place = map?.kind === 'map' ? map.entries.get(key)?.keyPlace : undefined;
   return {
     code: 'RIG_KEY_UNKNOWN',
     path,
-    place: place ?? placeAt(root, path),
+    place: keyAt(root, path)?.place ?? placeAt(root, path),
     wrong: `${JSON.stringify(key)} is not a key here`,
     right,
     meantPath: near === null ? null : textOf([...around, near]),
   };
 }
 
-function finding({ issue, path }: Located, root: LocatedNode, json: JsonSchema): Finding {
-  const node = nodeAt(root, path);
+function finding({ issue, path, ofKey }: Located, root: LocatedNode, json: JsonSchema): Finding {
+  const node = ofKey === true ? keyAt(root, path) : nodeAt(root, path);
   const what = descriptionAt(json, root, path);
   const name = subject(path);
   const words = node === null ? missing(name, what) : wordsOf(issue, name, node, what);
-  return { ...words, path, place: placeAt(root, path) };
+  return { ...words, path, place: node?.place ?? placeAt(root, path) };
+}
+
+/** A key as a value of its own. */
+function keyAt(root: LocatedNode, path: Path): LocatedNode | null {
+  const key = String(path.at(-1));
+  const map = nodeAt(root, path.slice(0, -1));
+  const entry = map?.kind === 'map' ? map.entries.get(key) : undefined;
+  return entry === undefined ? null : { kind: 'scalar', place: entry.keyPlace, value: key };
 }
 
 function missing(name: string, what: string): Words {
@@ -109,7 +118,7 @@ function wordsOf(issue: Issue, name: string, node: LocatedNode, what: string): W
     }
     case 'invalid_format': {
       const right = 'use a lower-case name of a-z, 0-9, _ and - that begins with a letter';
-      return { code: 'RIG_NAME_SHAPE', wrong: `${nameText(name, node)} cannot be a name`, right };
+      return { code: 'RIG_NAME_SHAPE', wrong: `${quoted(node)} cannot be a name`, right };
     }
     default:
       return { code: 'RIG_VALUE_TYPE', wrong, right: `give ${what}` };
@@ -134,12 +143,12 @@ function boundText(issue: z.core.$ZodIssueTooSmall | z.core.$ZodIssueTooBig): st
 
 function lengthText(node: LocatedNode): string {
   if (node.kind === 'scalar') return `${String(node.value).length} letters`;
-  return `${node.kind === 'list' ? node.items.length : node.entries.size} entries`;
+  const count = node.kind === 'list' ? node.items.length : node.entries.size;
+  return count === 1 ? '1 entry' : `${count} entries`;
 }
 
-/** A name may be a value, or itself a key (then the value is something else). */
-function nameText(name: string, node: LocatedNode): string {
-  return node.kind === 'scalar' && typeof node.value === 'string' ? JSON.stringify(node.value) : JSON.stringify(name);
+function quoted(node: LocatedNode): string {
+  return JSON.stringify(node.kind === 'scalar' ? node.value : null);
 }
 
 /** A value as a person would say it. */

@@ -1,5 +1,5 @@
 import type { z } from 'zod';
-import { emptyObject, nodeAt, plain } from './located.ts';
+import { emptyObject, isRefused, nodeAt, plain } from './located.ts';
 import type { LocatedMap, LocatedNode } from './located.ts';
 import type { MistakeList } from './mistake.ts';
 import type { JsonSchema } from './schema/json-schema.ts';
@@ -32,8 +32,8 @@ export function shapeOf<T>(schema: z.ZodType<T>): Shape<T> {
     if (result.success) return { whole: result.data, loose: result.data as Loose<T>, node };
     const bad = new Set<LocatedNode>();
     for (const { code, place, path, wrong, right } of findingsOf(result.error.issues, node, json)) {
-      mistakes.add(code, place, wrong, right);
       const at = nodeAt(node, path);
+      if (!isRefused(at)) mistakes.add(code, place, wrong, right);
       if (at !== null) bad.add(at);
     }
     const loose = bad.has(node) || node.kind !== 'map' ? emptyObject() : wellFormedMap(node, json, bad);

@@ -47,27 +47,21 @@ function addSyntax(fault: YAMLError, place: Place, mistakes: MistakeList): void 
 
 type PlaceOf = (offset: number, path: string) => Place;
 
-function located(
-  node: Node | null,
-  path: string,
-  depth: number,
-  placeOf: PlaceOf,
-  mistakes: MistakeList,
-): LocatedNode | null {
+function located(node: Node | null, path: string, depth: number, placeOf: PlaceOf, mistakes: MistakeList): LocatedNode {
   const place = placeOf(node?.range?.[0] ?? 0, path);
   if (depth > DEPTH_MAX) {
     mistakes.add('RIG_YAML_SYNTAX', place, `it is nested more than ${DEPTH_MAX} deep`, 'no rig needs that; flatten it');
-    return null;
+    return refusedAt(place);
   }
   if (isAlias(node)) {
     // Aliases multiply: a few lines of them can stand for gigabytes.
     const right = 'write the value out, or build on another profile with like:';
     mistakes.add('RIG_YAML_ALIAS', place, `*${node.source} is an alias`, right);
-    return null;
+    return refusedAt(place);
   }
   if (isSeq(node)) {
     const items = node.items.map((item, i) => located(item as Node, pathText(path, i), depth + 1, placeOf, mistakes));
-    return items.every((item) => item !== null) ? { kind: 'list', place, items } : null;
+    return { kind: 'list', place, items };
   }
   if (isMap(node)) {
     const entries = new Map<string, LocatedEntry>();
@@ -93,8 +87,12 @@ function located(
     }
     const value =
       pair.value === null ? emptyAt(keyPlace) : located(pair.value, keyPlace.path, depth + 1, placeOf, mistakes);
-    if (value !== null) entries.set(key, { keyPlace, value });
+    entries.set(key, { keyPlace, value });
   }
+}
+
+function refusedAt(place: Place): LocatedNode {
+  return { kind: 'scalar', place, value: null, refused: true };
 }
 
 function emptyAt(place: Place): LocatedNode {

@@ -52,7 +52,7 @@ export function sharedRateRule(followers: readonly Loose<FollowerProfile>[], not
 
 function rateRemedy(baud: number, bytes: number): string {
   const fits = Math.floor(baud / (bytes * BITS_PER_BYTE));
-  const raise = 'raise the baud, on the board and here';
+  const raise = 'raise the baud on the board and here';
   return fits < 1 ? raise : `lower rate_hz to ${fits} or less, or ${raise}`;
 }
 
