@@ -5,6 +5,7 @@
 import { spawn } from 'node:child_process';
 import { existsSync, mkdirSync, readdirSync, readFileSync, rmSync } from 'node:fs';
 import { join, resolve } from 'node:path';
+import { lawTests } from './law-tests.ts';
 import { provide, type SystemPackage } from './system-packages.ts';
 import { closingLine, type RunRecord, sum, type Tally, tallyOfCheck, tallyOfRun } from './tally.ts';
 
@@ -37,9 +38,8 @@ async function main(): Promise<void> {
   const missing = provide(SYSTEM_PACKAGES);
   sayMissing(missing);
   for (const name of CHECKS) await step(name, () => check(name));
-  if (hasTests('')) await step('rooms', () => vitest('rooms', ['--project', 'rooms'], { EIDOGRAPH_SEED: FIXED_SEED }));
-  const lawful = foldersWithLaws();
-  if (lawful.length > 0) await step('laws on a fresh seed', () => freshLaws(lawful));
+  await step('rooms', () => vitest('rooms', ['--project', 'rooms'], { EIDOGRAPH_SEED: FIXED_SEED }));
+  await step('laws on a fresh seed', freshLaws);
   for (const project of ['boards', 'smoke']) {
     if (hasTests(project)) {
       await step(project, () => vitest(project, ['--project', project], { EIDOGRAPH_SEED: FIXED_SEED }));
@@ -77,33 +77,22 @@ async function vitest(name: string, args: readonly string[], env: NodeJS.Process
   return tallyOfRun(name, record, exitCode);
 }
 
-async function freshLaws(folders: readonly string[]): Promise<Tally> {
+async function freshLaws(): Promise<Tally> {
   const name = 'laws on a fresh seed';
-  const { failed } = await vitest(name, ['--project', 'rooms', ...folders], {});
+  const files = lawTests(join(ROOT, 'tests')).map((path) => `tests/${path}`);
+  const { failed } = await vitest(name, ['--project', 'rooms', ...files], {});
   return failed.length === 0
     ? tallyOfCheck(name, 0)
     : { passed: 0, failed: [`${name}: ${failed.join('; ')}`], skipped: [] };
 }
 
-/** Folders of `tests/` in which a law is stated, whether in a test or in a file beside it. */
-function foldersWithLaws(): readonly string[] {
-  return readdirSync(join(ROOT, 'tests'), { withFileTypes: true })
-    .filter((entry) => entry.isDirectory() && entry.name !== 'boards' && entry.name !== 'smoke')
-    .map((entry) => join('tests', entry.name))
-    .filter((folder) => sourcesIn(folder).some((path) => /^import .*'fast-check'/m.test(readFileSync(path, 'utf8'))))
-    .map((folder) => `${folder}/`);
+function hasTests(project: string): boolean {
+  const folder = join(ROOT, 'tests', project);
+  return existsSync(folder) && readdirSync(folder, { recursive: true, encoding: 'utf8' }).some(isTest);
 }
 
-function hasTests(folder: string): boolean {
-  return sourcesIn(join('tests', folder)).some((path) => path.endsWith('.test.ts'));
-}
-
-function sourcesIn(folder: string): readonly string[] {
-  const path = join(ROOT, folder);
-  if (!existsSync(path)) return [];
-  return readdirSync(path, { recursive: true, encoding: 'utf8' })
-    .filter((name) => name.endsWith('.ts'))
-    .map((name) => join(path, name));
+function isTest(name: string): boolean {
+  return name.endsWith('.test.ts');
 }
 
 /** Runs a program with its output shown as it comes; resolves with its exit status, 1 when it was ended by a signal. */
