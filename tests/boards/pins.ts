@@ -26,7 +26,7 @@ export interface PinRecorder extends Pins {
   letGo(atUs: number): void;
 }
 
-export const PINS = 20;
+const PINS = 20;
 
 /** A minute of fifty pulses a second is 6,000 changes; a test that plays longer than this has run away. */
 const CHANGES_MAX = 200_000;
