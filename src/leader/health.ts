@@ -16,6 +16,8 @@ const LASTING_US = 100_000;
 const JUMP_RAD_S = (1000 * Math.PI) / 180;
 const JUMPS = 3;
 const JUMPS_WITHIN_US = 1_000_000;
+/** Stamps are no better than the port: readings of one burst may seem closer than they were taken, and faster. */
+const JUMP_DT_MIN_US = 5_000;
 /** How far past its travel a joint may read, as a share of the travel. */
 const BEYOND_SHARE = 0.05;
 /** A sick joint is sound again after this long without any symptom, so that it does not flap. */
@@ -58,9 +60,9 @@ export function potHealth(spec: LeaderSpec): PotHealth {
   const travelHigh = Float64Array.from(spec.joints, (j) => j.travelMax + slack(j));
 
   const countJump = (j: number, tUs: number, angle: number): void => {
-    const dtUs = tUs - (lastUs[j] as number);
+    const dtUs = Math.max(tUs - (lastUs[j] as number), JUMP_DT_MIN_US);
     const step = Math.abs(angle - (lastAngle[j] as number));
-    if (dtUs > 0 && step > JUMP_RAD_S * dtUs * 1e-6) {
+    if (step > JUMP_RAD_S * dtUs * 1e-6) {
       jumpUs[j * JUMPS + (jumpNext[j] as number)] = tUs;
       jumpNext[j] = ((jumpNext[j] as number) + 1) % JUMPS;
     }

@@ -24,6 +24,7 @@ export function leader(spec: LeaderSpec): Leader {
   const n = joints.length;
   const poseRad = new Float64Array(n).fill(Number.NaN);
   const countsNow = new Float64Array(n).fill(Number.NaN);
+  const read = new Float64Array(n);
   const clean = new Float64Array(n);
   const angle = new Float64Array(n);
   const pressed = new Float64Array(spec.buttons.length);
@@ -43,13 +44,17 @@ export function leader(spec: LeaderSpec): Leader {
       for (let j = 0; j < n; j++) {
         const joint = joints[j] as (typeof joints)[number];
         const raw = counts[joint.input] as number;
-        countsNow[j] = raw;
+        const came = !Number.isNaN(raw);
+        read[j] = raw;
         clean[j] = raw;
-        if (!Number.isNaN(raw)) {
-          median.push(j, countsNow, clean);
+        if (came) {
+          countsNow[j] = raw;
+          median.push(j, read, clean);
           joint.map.apply(clean, j, angle, j);
         }
         health.judge(j, tUs, clean, angle);
+        // A reading that leaves the joint out says nothing against it.
+        if (!came) continue;
         // What a suspect pot says must neither move an arm nor stay in the filter's memory.
         if (health.suspect[j] === 1) smooth.reset(j);
         else if (health.state[j] === 0) smooth.push(j, tUs, angle, poseRad);
@@ -57,7 +62,7 @@ export function leader(spec: LeaderSpec): Leader {
       for (let b = 0; b < pressed.length; b++)
         pressed[b] = counts[(spec.buttons[b] as (typeof spec.buttons)[number]).input] as number;
       pads.push(pressed);
-      notice.push(tUs, countsNow);
+      notice.push(tUs, read);
     },
   };
 }
