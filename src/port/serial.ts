@@ -77,7 +77,7 @@ function connectSerial(
   let cancelSent: Cancel | null = null;
   let cancelPresence: Cancel | null = null;
   let onceEnded: (() => void) | null = null;
-  let isDiscarded = false;
+  let isEmpty = false;
   let isLeaving = false;
 
   const begin = (opened: SerialDevice): void => {
@@ -113,14 +113,14 @@ function connectSerial(
     if (onceEnded === null || isLeaving || isLoading || device?.opening || device?.closing) return;
     isLeaving = true;
     if (device === null || !device.isOpen) return onceEnded();
-    if (isDiscarded) return device.close(onceEnded);
+    if (isEmpty) return device.close(onceEnded);
     const leaving = device;
     within(
       clock,
       FLUSH_US,
       (done) => leaving.flush(done),
       () => {
-        isDiscarded = true;
+        isEmpty = true;
         isLeaving = false;
         leave();
       },
@@ -151,22 +151,36 @@ function connectSerial(
       cancelPresence?.();
       onceEnded = ended;
       if (!gently || !device?.isOpen) return leave();
-      // The last command, which may be the one that ends the pulses, is still to arrive.
+      // The last command, which may be the one that ends the pulses, is still to arrive; once it has, nothing is left to
+      // throw away. (On a pseudo-terminal that would even take what the other side has not read yet.)
       const { drain } = device;
-      within(clock, DRAIN_US, (done) => drain.call(device, done), leave);
+      within(
+        clock,
+        DRAIN_US,
+        (done) => drain.call(device, done),
+        (inTime) => {
+          isEmpty = inTime;
+          leave();
+        },
+      );
     },
   };
 }
 
-/** Goes on once `step` is done or its time is over. */
-function within(clock: Clock, limitUs: number, step: (done: () => void) => void, next: () => void): void {
+/** Goes on once `step` is done or its time is over, and says which. */
+function within(
+  clock: Clock,
+  limitUs: number,
+  step: (done: () => void) => void,
+  next: (inTime: boolean) => void,
+): void {
   let over = false;
-  const goOn = (): void => {
+  const goOn = (inTime: boolean): void => {
     if (over) return;
     over = true;
     cancel();
-    next();
+    next(inTime);
   };
-  const cancel = clock.at(clock.nowUs() + limitUs, goOn);
-  step(goOn);
+  const cancel = clock.at(clock.nowUs() + limitUs, () => goOn(false));
+  step(() => goOn(true));
 }

@@ -156,7 +156,7 @@ export function portContract(kind: Kind): void {
         expect(heard.events, 'nothing is told from inside write').toEqual(['opened']);
         expect(port.canTake).toBe(false);
         expect(port.write(Buffer.from('two'))).toBe(false);
-        await bench.until('idle', () => heard.events.includes('idle'));
+        await bench.until('idle and arrived', () => heard.events.includes('idle') && bench.received().length >= 3);
         await bench.settle();
         expect(heard.events).toEqual(['opened', 'idle']);
         expect(couldTakeWhenIdle).toBe(true);
