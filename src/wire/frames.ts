@@ -92,7 +92,7 @@ export function framesSession(plan: BoardPlan): WireSession {
   const count = (arrived: number, emit: Emit): void => {
     const gap = expected < 0 ? 0 : (arrived - expected) & 0xff;
     expected = (arrived + 1) & 0xff;
-    if (gap === 0 || !ready) return;
+    if (gap === 0) return;
     lost.frames = gap;
     emit(lost);
   };

@@ -156,6 +156,22 @@ describe('a round of analog messages', () => {
     expect(readings(pushed(session, analog(3, 3)))).toEqual([[2, 1, 3]]);
   });
 
+  it('is dropped too when a middle channel is missing, until a first one was whole', () => {
+    const session = greeted();
+    expect(readings(pushed(session, [...analog(0, 1), ...analog(3, 3)]))).toEqual([]);
+    expect(readings(pushed(session, [...analog(0, 1), ...analog(1, 2), ...analog(3, 3)]))).toEqual([[2, 1, 3]]);
+  });
+
+  it('goes by the mapping of the board that is there now', () => {
+    const session = greeted();
+    const fewer = [0xf0, 0x6a, ...Array<number>(14).fill(0x7f), 0, 1, 0xf7];
+    pushed(session, [...VERSION, ...FIRMWARE]);
+    expect(pushed(session, fewer)).toContainEqual({ kind: 'lacks', what: 'input', channel: 3 });
+    expect(readings(pushed(session, [...analog(3, 3), ...analog(0, 1), ...analog(1, 2)]))).toEqual([
+      [2, 1, Number.NaN],
+    ]);
+  });
+
   it('follows the order of the pins, which need not be that of the channels', () => {
     const session = opened({ ...PLAN, inputs: { channels: [0, 6], names: ['a', 'b'], samplingMs: 19 }, outputs: [] });
     pushed(session, [...VERSION, ...FIRMWARE]);

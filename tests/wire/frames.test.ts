@@ -274,6 +274,16 @@ describe('a frames session', () => {
     expect(pushed(session, cut)).toEqual([{ kind: 'garbled', bytes: 15, why: 'cut' }]);
   });
 
+  it('tells an endless frame, up to its end, and reads the next', () => {
+    const session = greeted();
+    const events = pushed(session, Uint8Array.from([...new Uint8Array(300).fill(7), 0, ...row(1, 1, 10)]));
+    expect(events.slice(0, 2)).toEqual([
+      { kind: 'garbled', bytes: FRAME_BYTES_MAX - 1, why: 'oversize' },
+      { kind: 'garbled', bytes: 301 - (FRAME_BYTES_MAX - 1), why: 'oversize' },
+    ]);
+    expect(kinds(events.slice(2))).toEqual(['reading']);
+  });
+
   it('tells a frame of the wrong length', () => {
     const session = greeted();
     const out = new Uint8Array(FRAME_BYTES_MAX);
