@@ -114,7 +114,7 @@ const WAKES = {
 } as const;
 
 /** The report as lines for people. */
-export function checkLines({ file, leader, followers }: CheckReport): readonly string[] {
+function checkLines({ file, leader, followers }: CheckReport): readonly string[] {
   return [
     `${file}: no mistakes`,
     ...(leader === null ? [] : [leaderLine(leader)]),

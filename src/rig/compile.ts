@@ -32,7 +32,7 @@ export function compileRig(frame: RigFrame, profiles: RigProfiles): CompiledRig 
 }
 
 /** One board a port, the leader's first. */
-export function compileBoards({ leader, followers }: RigProfiles): readonly CompiledBoard[] {
+function compileBoards({ leader, followers }: RigProfiles): readonly CompiledBoard[] {
   const profiles = [leader, ...followers];
   return groupByPort(profiles.map(({ port }) => port)).map((group) => {
     const leads = group[0] === 0;

@@ -159,7 +159,7 @@ export function valueText(node: LocatedNode): string {
   return typeof node.value === 'string' ? `the text ${JSON.stringify(node.value.slice(0, 60))}` : String(node.value);
 }
 
-export function listed(words: readonly string[]): string {
+function listed(words: readonly string[]): string {
   return words.join(', ');
 }
 

@@ -1,5 +1,5 @@
 import { describe, expect, it } from 'vitest';
-import { loadProfile } from '../../src/rig/load.ts';
+import { loadProfile, loadRig } from '../../src/rig/load.ts';
 import { edited, fromMemory, linesIn, mistakesIn, RIG, rigIn, STORK } from './memory.ts';
 
 const RIGS = edited(RIG, ['  - stork.yaml', '  - ../followers/stork.yaml']);
@@ -44,6 +44,16 @@ describe('profiles in files of their own', () => {
       ['r/yard.yaml', 1],
       ['r/yard.yaml', 12],
     ]);
+  });
+});
+
+describe('a file of another kind', () => {
+  it.each([
+    ['a follower', STORK, 'this is a follower file'],
+    ['a list', '- 1\n', 'this is neither a rig nor a profile'],
+  ])('is refused where a rig is asked for: %s', (_what, text, wrong) => {
+    const loaded = loadRig('a.yaml', fromMemory({ 'a.yaml': text }));
+    expect(loaded).toMatchObject({ mistakes: [{ code: 'RIG_KIND', file: 'a.yaml', wrong }] });
   });
 });
 

@@ -52,7 +52,7 @@ describe.each(Object.entries(GROUPS))('%s', (_group, cases) => {
 describe('the table of codes', () => {
   it('lists exactly the codes that the cases above provoke', () => {
     const provoked = Object.values(GROUPS).flatMap((cases) => cases.flatMap(said).map((line) => line.split(' ')[0]));
-    expect([...new Set(provoked)].sort()).toEqual(Object.keys(MISTAKE_CODES).sort());
+    expect(new Set(provoked)).toEqual(new Set(Object.keys(MISTAKE_CODES)));
   });
 
   it('says in one line each what was found and what mends it', () => {

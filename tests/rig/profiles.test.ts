@@ -21,8 +21,13 @@ describe('the profiles that come with the program', () => {
   it('hold a starter for each wire, and one for a board with both ends', () => {
     const boards = profileFiles()
       .filter((file) => file.startsWith('starters'))
-      .map((file) => loaded(file).rig.boards.map(({ wire }) => wire.name));
-    expect(boards.sort()).toEqual([['firmata'], ['firmata', 'firmata'], ['frames', 'frames'], ['lines', 'lines']]);
+      .map((file) => [file, loaded(file).rig.boards.map(({ wire }) => wire.name)]);
+    expect(Object.fromEntries(boards)).toEqual({
+      [join('starters', 'firmata-one-board.yaml')]: ['firmata'],
+      [join('starters', 'firmata-two-boards.yaml')]: ['firmata', 'firmata'],
+      [join('starters', 'frames-two-boards.yaml')]: ['frames', 'frames'],
+      [join('starters', 'lines-two-boards.yaml')]: ['lines', 'lines'],
+    });
   });
 
   it('start slowly and ask before they move, and mark what must be changed', () => {

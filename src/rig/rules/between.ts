@@ -1,6 +1,5 @@
 import { nearest } from '../../port/nearest.ts';
-import type { Place } from '../mistake.ts';
-import type { MistakeList } from '../mistake.ts';
+import type { MistakeList, Place } from '../mistake.ts';
 import { addressOf, baudOf, groupByPort } from '../boards.ts';
 import type { LocatedNode } from '../located.ts';
 import type { FollowerProfile } from '../schema/follower.ts';

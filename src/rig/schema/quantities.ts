@@ -1,7 +1,7 @@
 import { z } from 'zod';
 
 /** Names stand in commands, in line templates and as columns of CSV: one shape serves all. */
-export const NAME_SHAPE = /^[a-z][a-z0-9_-]*$/;
+const NAME_SHAPE = /^[a-z][a-z0-9_-]*$/;
 const NAME_LETTERS_MAX = 32;
 
 /** Ten turns: more than any joint or winch makes; bounds keep every sum of degrees finite. */
@@ -24,10 +24,10 @@ export const degreesAmount = () => z.number().min(0).max(ANGLE_DEG_MAX);
 export const degreesPerSecond = () => z.number().gt(0).max(SPEED_DEG_S_MAX);
 export const degreesPerSecondSquared = () => z.number().gt(0).max(ACCEL_DEG_S2_MAX);
 export const counts = () => z.number().min(-COUNTS_MAX).max(COUNTS_MAX);
-export const microseconds = () => z.number().min(-PULSE_US_MAX).max(PULSE_US_MAX);
+const microseconds = () => z.number().min(-PULSE_US_MAX).max(PULSE_US_MAX);
 export const channel = () => z.int().min(0).max(CHANNEL_MAX);
 export const factor = () => z.number().gt(0).max(FACTOR_MAX);
-export const weight = () => z.number().min(-FACTOR_MAX).max(FACTOR_MAX);
+const weight = () => z.number().min(-FACTOR_MAX).max(FACTOR_MAX);
 export const millimetres = () => z.number().min(-LENGTH_MM_MAX).max(LENGTH_MM_MAX);
 export const grams = () => z.number().min(0).max(MASS_G_MAX);
 export const positive = (max: number) => z.number().gt(0).max(max);
