@@ -198,6 +198,8 @@ export function authority(
           const back = event.kept && is.pulsed && event.tUs - is.downUs <= BACK_US;
           is.present = true;
           is.pulsed = back;
+          // A board may start with its outputs low, and a relay that is on when low is then on by itself.
+          if (!back && spec.hasPower) pending.ask('power_off');
           return raise(back ? 'back' : 'ready');
         }
         case 'down':
