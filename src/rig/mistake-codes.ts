@@ -48,7 +48,7 @@ export const MISTAKE_CODES = {
     remedy: 'widen counts (12 bits: [0, 4095]), or mend the number',
   },
   RIG_BUTTON_NEVER: {
-    means: 'a button that could never be pressed, or always is',
+    means: 'a button that could never be pressed',
     remedy: 'put its threshold between released and pressed',
   },
   RIG_DESPIKE_EVEN: { means: 'a median over an even number of readings', remedy: 'use 1 (off), 3, 5 or 7' },
@@ -84,7 +84,7 @@ export const MISTAKE_CODES = {
   },
   RIG_SERVO_LIMITS: {
     means: 'on firmata, outer points that the AVR servo library cannot hold as limits',
-    remedy: 'lowest point at most 1059 us, highest 1889 to 2915 us; or use another wire',
+    remedy: 'lowest point at most 1059 us, highest at least 1889 us; or use another wire',
   },
   RIG_POWER_MISSING: {
     means: 'a stop category that removes power, without a power switch',
@@ -100,7 +100,7 @@ export const MISTAKE_CODES = {
     remedy: 'sim:hand leads, sim:arm follows',
   },
   RIG_PORT_DIFFERS: {
-    means: 'two profiles on one port that disagree about its wire, baud, board name or line options',
+    means: 'two profiles on one port that disagree about its wire, baud or board name',
     remedy: 'one port is one board: say the same in both, or use another port',
   },
   RIG_TEMPLATE_MISSING: {
@@ -115,6 +115,10 @@ export const MISTAKE_CODES = {
   RIG_SAMPLING_TOO_FAST: {
     means: 'readings asked for faster than the baud rate carries them (10 bits a byte)',
     remedy: 'raise sampling_ms to the time that is named, or raise the baud on the board and here',
+  },
+  RIG_TIMEOUT_SHORT: {
+    means: 'readings asked for so seldom that each is too old before the next',
+    remedy: 'give sampling_ms well under timeout_ms',
   },
   RIG_ARM: {
     means: 'an arm that cannot be: no reach, or a spring whose ends meet',

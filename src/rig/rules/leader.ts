@@ -17,6 +17,14 @@ export function leaderRules(leader: LooseLeader, note: Note): void {
   for (const [i, joint] of (leader.joints ?? []).entries()) jointRules(joint, counts, ['joints', i], note);
   for (const [i, button] of (leader.buttons ?? []).entries()) buttonRules(button, counts, ['buttons', i], note);
   nameRules(leader, note);
+  timeoutRule(leader, note);
+}
+
+/** Only firmata is told how often to read; of other boards nobody can know. */
+function timeoutRule({ wire, sampling_ms: sampling, timeout_ms: timeout }: LooseLeader, note: Note): void {
+  if (wire !== 'firmata' || sampling === undefined || timeout === undefined || sampling < timeout) return;
+  const wrong = `a reading every ${sampling} ms is always older than timeout_ms, ${timeout}, before the next`;
+  note('RIG_TIMEOUT_SHORT', ['sampling_ms'], wrong, 'give sampling_ms well under timeout_ms, such as 10');
 }
 
 /** Joints and buttons share the names of a line's `name:value`. */

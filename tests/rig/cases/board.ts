@@ -242,4 +242,14 @@ export const BOARD_CASES: readonly MistakeCase[] = [
       'RIG_SAMPLING_TOO_FAST rig.yaml:3:3: leader: 90 bits every 10 ms do not fit 2400 baud; give sampling_ms 38 or more, or raise the baud',
     ],
   },
+  {
+    title: 'readings that are too old before the next',
+    rig: [
+      ['wire: lines', 'wire: firmata'],
+      ['timeout_ms: 250', 'timeout_ms: 250\n  sampling_ms: 250'],
+    ],
+    says: [
+      'RIG_TIMEOUT_SHORT rig.yaml:8:16: leader.sampling_ms: a reading every 250 ms is always older than timeout_ms, 250, before the next; give sampling_ms well under timeout_ms, such as 10',
+    ],
+  },
 ];
