@@ -13,8 +13,8 @@ import { random } from './random.ts';
 import { type ArmOptions, type ServoArm, servoArm } from './servo-arm.ts';
 
 /**
- * A board behind a `sim:` address, with the hand and the arms that hang on it. It resets when its port opens, as many
- * boards do, and then its servos have no pulses until it is told some.
+ * A board behind a `sim:` address, with the hand and the arms that hang on it. Unless told otherwise it resets when its port
+ * opens, as many boards do, and then its servos have no pulses until it is told some.
  */
 export interface SimulatedBoard {
   /** Where the bridge talks to it. */
@@ -40,6 +40,8 @@ export interface SimulatedBoardOptions {
   readonly hand: Omit<HandOptions, 'seed'> | null;
   /** Parallel to `plan.outputs`, servos parallel to theirs. */
   readonly arms: readonly ArmOptions[];
+  /** Whether opening its port resets it, as DTR does on many boards; true when absent. A network board runs on. */
+  readonly resets?: boolean;
   /** From reset to the firmware's first word; 0.3 s when absent. */
   readonly bootUs?: number;
   /** Speed and portions of the line; none when absent. */
@@ -99,6 +101,10 @@ export function simulatedBoard(options: SimulatedBoardOptions): SimulatedBoard {
     const firmware = load(options, pins);
     booted = firmware;
     firmware.start();
+    resume(firmware);
+  };
+
+  const resume = (firmware: Firmware): void => {
     nextSampleUs = clock.nowUs();
     // Without inputs, or without anybody to hear of them, there is nothing to wake up for.
     if (plan.inputs !== null && far.isOpen) sampleNext(firmware);
@@ -123,7 +129,10 @@ export function simulatedBoard(options: SimulatedBoardOptions): SimulatedBoard {
 
   cutPins();
   far.listen({
-    opened: reset,
+    opened() {
+      if (booted === null || options.resets !== false) reset();
+      else resume(booted);
+    },
     data: (bytes) => booted?.receive(bytes),
     // It keeps its pulses: only a fresh opening resets it.
     closed: () => cancel(),

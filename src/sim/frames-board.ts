@@ -23,6 +23,7 @@ export function framesBoard(name: string, plan: BoardPlan, pins: Pins): Firmware
   const firstChannel = Math.min(...channels);
   const row = new Float64Array(channels.length === 0 ? 0 : Math.max(...channels) - firstChannel + 1);
   let sequence = 0;
+  let pulsing = false;
 
   /** A lost frame has used up its number: that is how its loss is noticed. */
   const say = (message: FromBoard, lost: boolean): void => {
@@ -35,7 +36,7 @@ export function framesBoard(name: string, plan: BoardPlan, pins: Pins): Firmware
     plan.outputs.flatMap(({ servos, power }) => [...servos.map((servo) => servo.channel), power?.channel ?? -1]),
   );
   const hello = (started: boolean): void =>
-    say({ kind: 'hello', started, inputs: extent(channels), outputs, name }, false);
+    say({ kind: 'hello', started, pulsing, inputs: extent(channels), outputs, name }, false);
 
   const drive = (channel: number, pulseUs: number): void => {
     const use = servoAt.get(channel);
@@ -50,9 +51,11 @@ export function framesBoard(name: string, plan: BoardPlan, pins: Pins): Firmware
       case 'command':
         if (pins.loses()) break;
         heard.channels.forEach((channel, i) => drive(channel, heard.pulsesUs[i] as number));
+        pulsing = true;
         break;
       case 'limp':
         for (const channel of heard.channels) drive(channel, Number.NaN);
+        pulsing = false;
         break;
       case 'power':
         plan.outputs.forEach(({ power }, output) => {
