@@ -122,6 +122,8 @@ export function follower(spec: FollowerSpec): Follower {
         motion.x[j] = Math.min(Math.max(poseRad[j] as number, min[j] as number), max[j] as number);
         motion.v[j] = 0;
       }
+      // With the clutch out from the start the wish stays what it is: where the arm stands.
+      wantedRad.set(motion.x);
       self.settleHere();
     },
     settleHere() {

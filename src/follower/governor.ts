@@ -62,7 +62,9 @@ export function governor(limits: readonly JointLimits[]): Governor {
     const dt = dtS[0] as number;
     const A = accel[j] as number;
     const r = target[j] as number;
-    const vt = vtOf[j] as number;
+    // A target faster than the joint may be is followed at the limit.
+    const top = speed[j] as number;
+    const vt = Math.min(Math.max(vtOf[j] as number, -top), top);
     const x0 = x[j] as number;
     const e = r - vt * dt - x0;
     const u0 = (v[j] as number) - vt;
@@ -71,7 +73,7 @@ export function governor(limits: readonly JointLimits[]): Governor {
     const s = past > 0 ? 1 : past < 0 ? -1 : u0 < 0 ? -1 : 1;
     const D = s * e;
     const u = s * u0;
-    const W = Math.max(0, (speed[j] as number) - s * vt);
+    const W = Math.max(0, top - s * vt);
     const peak = u > W ? W : Math.max(u, Math.min(W, Math.sqrt(Math.max(0, A * D + 0.5 * u * u))));
     const a = peak > u ? A : peak < u ? -A : 0;
     const t1 = Math.abs(peak - u) / A;
