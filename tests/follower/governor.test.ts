@@ -93,8 +93,8 @@ describe('the law "finite, in range, within rate"', () => {
   });
 });
 
-describe('whatever a joint is asked for', () => {
-  it('it stays finite, in range and within rate, through new targets, brakes and braking targets of its own', () => {
+describe('a joint, whatever it is asked for,', () => {
+  it('stays finite, in range and within rate, through new targets, brakes and braking targets of its own', () => {
     const order = fc.record({
       forSteps: fc.integer({ min: 1, max: 12 }),
       target: fc.double({ min: -2, max: 2, noNaN: true }),
@@ -125,7 +125,7 @@ describe('whatever a joint is asked for', () => {
     );
   });
 
-  it('it brakes down to a speed limit that was lowered, at its acceleration limit', () => {
+  it('brakes down to a speed limit that was lowered, at its acceleration limit', () => {
     const mover = governed({ ...LIMITS, minRad: -100, maxRad: 100 });
     for (let i = 0; i < 50; i++) mover.step(50, 0.02);
     expect(mover.v).toBe(1);
@@ -137,7 +137,7 @@ describe('whatever a joint is asked for', () => {
     expect(mover.v).toBeCloseTo(0.5, 12);
   });
 
-  it('it comes to a stand as soon as it can when it is to brake, and stays', () => {
+  it('comes to a stand as soon as it can when it is to brake, and stays', () => {
     const mover = governed(LIMITS);
     for (let i = 0; i < 20; i++) mover.step(2, 0.02);
     const { x, v } = mover;
