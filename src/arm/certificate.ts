@@ -22,9 +22,17 @@ export interface Certificate {
   /**
    * Judges a step from standing or moving at `x0` to position `x` and speed `v` after dtS[0] seconds.
    * @param endSpeedMS cap in force for this step, m/s; Infinity: none
+   * @param weigh whether loads count: parking and braking only warn
    * @returns bits of `BREAKS`, 0 when the step may be taken
    */
-  judge(x0: Float64Array, x: Float64Array, v: Float64Array, dtS: Float64Array, endSpeedMS: Float64Array): number;
+  judge(
+    x0: Float64Array,
+    x: Float64Array,
+    v: Float64Array,
+    dtS: Float64Array,
+    endSpeedMS: Float64Array,
+    weigh: boolean,
+  ): number;
 }
 
 /** Torque of every joint against what its motor may hold: > 1 is over. Filled for the chain's pose by `arm/load`. */
@@ -200,11 +208,11 @@ export function certificate(
   };
 
   return {
-    judge(x0, x, v, dtS, endSpeedMS) {
+    judge(x0, x, v, dtS, endSpeedMS, weigh) {
       const cap = endSpeedMS[0] as number;
       if (cap !== Number.POSITIVE_INFINITY && speedBroken(x0, x, v, dtS[0] as number, cap)) return BREAKS.endSpeed;
       if (places.some && enters(x0, x, v)) return BREAKS.keepOut;
-      if (loads !== null && overloads(x0, x, v, loads)) return BREAKS.load;
+      if (weigh && loads !== null && overloads(x0, x, v, loads)) return BREAKS.load;
       return 0;
     },
   };

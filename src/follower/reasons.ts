@@ -26,4 +26,10 @@ export const LIMITS = {
   deadband: 4,
   /** A pot that feeds it is sick. */
   sick: 8,
+  /** A link end of the arm moves at its cap. */
+  end_speed: 16,
+  /** A link would enter a keep-out. */
+  keep_out: 32,
+  /** A joint would carry more than its motor may. */
+  load: 64,
 } as const;
