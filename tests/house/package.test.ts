@@ -27,6 +27,9 @@ describe('the published package', { timeout: LIMIT_MS }, () => {
   }, LIMIT_MS);
   afterAll(() => rmSync(consumer, { recursive: true }));
 
+  const eidograph = (...args: string[]) =>
+    run(process.execPath, ['node_modules/eidograph/dist/cli/main.js', ...args], consumer);
+
   it('holds the program, the profiles and the papers, and nothing else', () => {
     const papers = ['package.json', 'README.md', 'LICENSE'];
     const profiles = readdirSync(join(ROOT, 'profiles'), { recursive: true, encoding: 'utf8' })
@@ -42,9 +45,17 @@ describe('the published package', { timeout: LIMIT_MS }, () => {
   });
 
   it('runs as a command', () => {
-    expect(run(process.execPath, ['node_modules/eidograph/dist/cli/main.js', '--help'], consumer)).toContain(
-      'eidograph',
-    );
+    expect(eidograph('--help')).toContain('eidograph');
+  });
+
+  it('finds the rig of its demo where it was installed', () => {
+    expect(eidograph('demo', '--for', '1s', '--json')).toContain('wren');
+  });
+
+  it('accepts every rig that it brings along', () => {
+    const rigs = files.filter((path) => /^profiles\/(rigs|starters)\/.+\.yaml$/.test(path));
+    expect(rigs.length).toBeGreaterThan(0);
+    for (const rig of rigs) expect(eidograph('check', join('node_modules', 'eidograph', rig))).toContain('no mistakes');
   });
 
   it('is found and understood by a program that depends on it', () => {
