@@ -64,7 +64,7 @@ export function certificate(
   const jacobian = new Float64Array(3 * chain.links);
   const at = new Float64Array(joints);
   const speed = new Float64Array(joints);
-  const margin = new Float64Array(1);
+  const gap = new Float64Array(1);
   const sharesFrom = new Float64Array(joints);
   const shares = new Float64Array(joints);
   const time = new Float64Array(1);
@@ -154,44 +154,38 @@ export function certificate(
     return false;
   };
 
+  const clearanceAt = (pose: Float64Array): number => {
+    chain.pose(pose);
+    places.clearance(chain, gap);
+    return gap[0] as number;
+  };
+
+  /**
+   * Every look along the way is clear by half the way to its neighbours, so that everything between two looks is clear
+   * too; or it is no nearer than the arm was: one that stands close, or inside already, must be able to leave.
+   */
   const enters = (x0: Float64Array, x: Float64Array, v: Float64Array): boolean => {
     time[0] = Number.POSITIVE_INFINITY;
     braked(x, v);
+    const way = travelBound(x, at) + travelBound(x0, x);
+    const now = clearanceAt(x);
     // Cheap first: clear by more than the arm can move on its way to a stand.
-    margin[0] = travelBound(x, at) + travelBound(x0, x);
-    chain.pose(x);
-    if (places.clear(chain, margin)) return false;
-    chain.pose(x0);
-    const deep = places.depth(chain);
-    // An arm that is inside already may move, but not deeper.
-    if (deep > 0) {
-      chain.pose(at);
-      return places.depth(chain) > deep + ROUNDING;
-    }
-    return !pathClear(x0, x, v);
-  };
-
-  /** Every look is clear by half the way to its neighbours: then everything between two looks is clear too. */
-  const pathClear = (x0: Float64Array, x: Float64Array, v: Float64Array): boolean => {
-    margin[0] = 0.5 * travelBound(x0, x);
-    chain.pose(x);
-    if (!places.clear(chain, margin)) return false;
+    if (now >= way) return false;
+    const from = clearanceAt(x0) - ROUNDING;
+    if (now < 0.5 * travelBound(x0, x) && now < from) return true;
     const stopS = stoppingS(v);
     for (let s = 1; s <= SAMPLES; s++) {
       time[0] = (stopS * (s - 1)) / SAMPLES;
       braked(x, v);
-      const step = stepBound(stopS / SAMPLES);
+      // Joint speeds only fall: the next stretch is no longer than this.
+      const stretch = (boundMS(speed) * stopS) / SAMPLES;
       time[0] = (stopS * s) / SAMPLES;
       braked(x, v);
-      chain.pose(at);
-      margin[0] = 0.5 * step;
-      if (!places.clear(chain, margin)) return false;
+      const there = clearanceAt(at);
+      if (there < 0.5 * stretch && there < from) return true;
     }
-    return true;
+    return false;
   };
-
-  /** Most any link end moves in `forS` from the present joint speeds on, which only fall. */
-  const stepBound = (forS: number): number => boundMS(speed) * forS;
 
   const overloads = (x0: Float64Array, x: Float64Array, v: Float64Array, load: LoadShares): boolean => {
     load(x0, sharesFrom);

@@ -7,67 +7,110 @@ import type { KeepOut } from './spec.ts';
  */
 export interface KeepOuts {
   readonly some: boolean;
-  /** True when every link of the chain's present pose is at least `marginM[0]` metres clear (a negative margin: that deep). */
-  clear(chain: Chain, marginM: Float64Array): boolean;
-  /** How far the deepest link is inside, metres; 0 when all are clear. */
-  depth(chain: Chain): number;
+  /**
+   * out[0] = distance from the chain's present pose to the nearest keep-out, metres; where a link is inside one, minus
+   * the depth by which all keep-outs would have to shrink to free it.
+   */
+  clearance(chain: Chain, out: Float64Array): void;
 }
 
-/** Depth is told to this many halvings of `DEEPEST_M`: 0.2 mm. */
+type Box = Extract<KeepOut, { kind: 'box' }>;
+
+/** Depth is told to this many halvings of `DEEPEST_M`: a quarter of a millimetre. */
 const DEPTH_STEPS = 14;
 const DEEPEST_M = 4;
+/** The nearest place of a link is found to 1/4096 of its length; the distance there is flat, so its error is far smaller. */
+const NEAREST_STEPS = 12;
 
 /** @param places in the base's level frame, metres */
 export function keepOuts(places: readonly KeepOut[]): KeepOuts {
-  const margin = new Float64Array(1);
-  const clear = (chain: Chain, marginM: Float64Array): boolean => {
+  const near = new Float64Array(1);
+
+  const inside = (chain: Chain, shrinkM: number): boolean => {
     for (const place of places) {
       for (let i = 0; i < chain.links; i++) {
-        if (place.kind === 'below' ? under(chain.at, i, place.zM, marginM) : enters(chain.at, i, place, marginM))
-          return false;
+        if (place.kind === 'below' ? lowest(chain.at, i) < place.zM - shrinkM : enters(chain.at, i, place, shrinkM))
+          return true;
       }
     }
-    return true;
+    return false;
   };
+
+  const depth = (chain: Chain): number => {
+    let low = 0;
+    let high = DEEPEST_M;
+    for (let step = 0; step < DEPTH_STEPS; step++) {
+      const middle = 0.5 * (low + high);
+      if (inside(chain, middle)) low = middle;
+      else high = middle;
+    }
+    return high;
+  };
+
   return {
     some: places.length > 0,
-    clear,
-    depth(chain) {
-      margin[0] = 0;
-      if (clear(chain, margin)) return 0;
-      let low = 0;
-      let high = DEEPEST_M;
-      for (let step = 0; step < DEPTH_STEPS; step++) {
-        const middle = 0.5 * (low + high);
-        margin[0] = -middle;
-        if (clear(chain, margin)) high = middle;
-        else low = middle;
+    clearance(chain, out) {
+      if (inside(chain, 0)) {
+        out[0] = -depth(chain);
+        return;
       }
-      return high;
+      let nearest = Number.POSITIVE_INFINITY;
+      for (const place of places) {
+        for (let i = 0; i < chain.links; i++) {
+          if (place.kind === 'below') near[0] = lowest(chain.at, i) - place.zM;
+          else distance(chain.at, i, place, near);
+          nearest = Math.min(nearest, near[0] as number);
+        }
+      }
+      out[0] = nearest;
     },
   };
 }
 
-function under(at: Float64Array, link: number, zM: number, marginM: Float64Array): boolean {
-  const lowest = Math.min(at[3 * link + 2] as number, at[3 * link + 5] as number);
-  return lowest < zM + (marginM[0] as number);
+function lowest(at: Float64Array, link: number): number {
+  return Math.min(at[3 * link + 2] as number, at[3 * link + 5] as number);
 }
 
-/** Slab test of a link against the box grown by the margin on every side. */
-function enters(
-  at: Float64Array,
-  link: number,
-  box: Extract<KeepOut, { kind: 'box' }>,
-  marginM: Float64Array,
-): boolean {
-  const margin = marginM[0] as number;
+/** out[0] = distance from a link to a box it is outside of: convex along the link, so its slope is bisected. */
+function distance(at: Float64Array, link: number, box: Box, out: Float64Array): void {
+  let low = 0;
+  let high = 1;
+  for (let step = 0; step < NEAREST_STEPS; step++) {
+    const middle = 0.5 * (low + high);
+    let slope = 0;
+    for (let k = 0; k < 3; k++) {
+      const along = (at[3 * link + 3 + k] as number) - (at[3 * link + k] as number);
+      slope += along * beyond((at[3 * link + k] as number) + middle * along, box, k);
+    }
+    if (slope > 0) high = middle;
+    else low = middle;
+  }
+  const t = 0.5 * (low + high);
+  let square = 0;
+  for (let k = 0; k < 3; k++) {
+    const along = (at[3 * link + 3 + k] as number) - (at[3 * link + k] as number);
+    const gap = beyond((at[3 * link + k] as number) + t * along, box, k);
+    square += gap * gap;
+  }
+  out[0] = Math.sqrt(square);
+}
+
+/** How far a coordinate is past the box's side, with its sign; 0 between the sides. */
+function beyond(value: number, box: Box, k: number): number {
+  const low = box.minM[k] as number;
+  const high = box.maxM[k] as number;
+  return value < low ? value - low : value > high ? value - high : 0;
+}
+
+/** Slab test of a link against the box shrunk on every side. */
+function enters(at: Float64Array, link: number, box: Box, shrinkM: number): boolean {
   let enter = 0;
   let leave = 1;
   for (let k = 0; k < 3; k++) {
     const from = at[3 * link + k] as number;
     const along = (at[3 * link + 3 + k] as number) - from;
-    const low = (box.minM[k] as number) - margin - from;
-    const high = (box.maxM[k] as number) + margin - from;
+    const low = (box.minM[k] as number) + shrinkM - from;
+    const high = (box.maxM[k] as number) - shrinkM - from;
     if (low >= high) return false;
     if (along === 0) {
       if (low >= 0 || high <= 0) return false;

@@ -4,6 +4,7 @@ import { LIMITS } from './reasons.ts';
 import { remap } from './remap.ts';
 import { servos } from './servos.ts';
 import type { FollowerJointSpec, FollowerSpec } from './spec.ts';
+import { wholeArm } from './whole-arm.ts';
 
 /**
  * The follower kernel: a pose in, a command out. It keeps what the arm was last told, for the follower's whole life;
@@ -57,6 +58,8 @@ export interface Follower {
    * limits let it follow a moving one, v^2 / 2A.
    */
   near(withinRad: number, lagging: boolean): boolean;
+  /** The same of the joints that the leader moves: the others nobody can bring near. */
+  passed(withinRad: number): boolean;
 }
 
 /** A command this far outside its range is a bug of ours, not rounding, radians. */
@@ -72,6 +75,7 @@ export function follower(spec: FollowerSpec): Follower {
   const motion = governor(joints);
   const map = remap(spec);
   const gears = servos(spec.servos);
+  const whole = spec.whole === undefined ? null : wholeArm(spec.whole, motion, null);
   const rest = Float64Array.from(joints, (j) => j.restRad);
   const min = Float64Array.from(joints, (j) => j.minRad);
   const max = Float64Array.from(joints, (j) => j.maxRad);
@@ -89,6 +93,10 @@ export function follower(spec: FollowerSpec): Follower {
     pulsing: 0,
   };
   const target = motion.target;
+  /** Nobody leads the motion (joining, parking): link ends keep to a gentle speed. */
+  let gentle = false;
+  /** The motion is a wish, and may be refused for its load; going home may not. */
+  let wishing = false;
 
   /** Writes what holds each joint back, as far as the wish tells, and lets the held ones brake. */
   const noteLimits = (): void => {
@@ -138,6 +146,7 @@ export function follower(spec: FollowerSpec): Follower {
       }
       map.settle(wantedRad, target, clipped);
       motion.targetSpeed.fill(0);
+      wishing = true;
       noteLimits();
     },
     match(leaderRad, leaderRadS) {
@@ -150,17 +159,20 @@ export function follower(spec: FollowerSpec): Follower {
         clipped[j] = target[j] === wish ? 0 : 1;
         if (clipped[j] === 1) motion.targetSpeed[j] = 0;
       }
+      wishing = true;
       noteLimits();
     },
     wantRest() {
       wantedRad.set(rest);
       target.set(rest);
       motion.targetSpeed.fill(0);
+      wishing = false;
       limits.fill(0);
       motion.braking.fill(0);
     },
     limitSpeed(share, together) {
       const s = share[0] as number;
+      gentle = together;
       if (!together) {
         for (let j = 0; j < n; j++) motion.speed[j] = s * (top[j] as number);
         return;
@@ -176,17 +188,23 @@ export function follower(spec: FollowerSpec): Follower {
       }
     },
     step(dtS) {
-      motion.step(dtS);
+      let reason = 0;
+      if (whole === null) motion.step(dtS);
+      else reason = whole.step(dtS, gentle, wishing);
       check();
       for (let j = 0; j < n; j++) {
+        if (reason !== 0 && motion.x[j] !== target[j]) limits[j] = (limits[j] as number) | reason;
         const atLimit = motion.v[j] !== 0 && Math.abs(motion.v[j] as number) >= AT_LIMIT * (motion.speed[j] as number);
         if (atLimit && motion.braking[j] === 0) limits[j] = (limits[j] as number) | LIMITS.speed;
       }
       gears.pulses(motion.x, frame.pulsesUs);
     },
     brake(dtS) {
+      // Braking needs no certificate: each step was taken because the arm can brake from it.
       motion.braking.fill(1);
-      self.step(dtS);
+      motion.step(dtS);
+      check();
+      gears.pulses(motion.x, frame.pulsesUs);
     },
     aim() {
       gears.pulses(motion.x, frame.pulsesUs);
@@ -212,6 +230,13 @@ export function follower(spec: FollowerSpec): Follower {
         const v = motion.v[j] as number;
         const lag = lagging ? (0.5 * v * v) / (motion.accel[j] as number) : 0;
         if (Math.abs((target[j] as number) - (motion.x[j] as number)) > withinRad + lag) return false;
+      }
+      return true;
+    },
+    passed(withinRad) {
+      for (let j = 0; j < n; j++) {
+        if (held[j] === 1 || (joints[j] as FollowerJointSpec).sources.length === 0) continue;
+        if (Math.abs((target[j] as number) - (motion.x[j] as number)) > withinRad) return false;
       }
       return true;
     },

@@ -18,6 +18,8 @@ export interface WholeArm {
 const GENTLE_MS = 0.25;
 /** A refused step is found again to 1/64 of itself. */
 const HALVINGS = 6;
+/** When less than this is left of a step, joints are tried one by one: the base may turn while the floor stops the shoulder. */
+const FREEING_SHARE = 0.25;
 
 const REASON: Readonly<Record<number, number>> = {
   [BREAKS.endSpeed]: LIMITS.end_speed,
@@ -51,6 +53,18 @@ export function wholeArm(spec: WholeArmSpec, motion: Governor, loads: LoadShares
     }
   };
 
+  const freeOthers = (dtS: Float64Array, weigh: boolean): void => {
+    for (let j = 0; j < n; j++) {
+      const x = motion.x[j] as number;
+      const v = motion.v[j] as number;
+      motion.x[j] = far.x[j] as number;
+      motion.v[j] = far.v[j] as number;
+      if (judge(x0, motion.x, motion.v, dtS, cap, weigh) === 0) continue;
+      motion.x[j] = x;
+      motion.v[j] = v;
+    }
+  };
+
   const brake = (dtS: Float64Array): void => {
     motion.x.set(x0);
     motion.v.set(v0);
@@ -81,6 +95,7 @@ export function wholeArm(spec: WholeArmSpec, motion: Governor, loads: LoadShares
       }
       share[0] = low;
       mix();
+      if (low < FREEING_SHARE) freeOthers(dtS, weigh);
       return REASON[broken] as number;
     },
   };
