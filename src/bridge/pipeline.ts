@@ -34,15 +34,15 @@ export function pipeline(events$: Observable<DriveEvent>, drive: Drive, send: Se
   return all;
 }
 
-/** The leader's stage sees each event first; what its buttons stand for follows as keys. */
+/** The leader's stage sees each event first; what its buttons stand for goes on before it: a stop waits for no step. */
 function conditioned(leader: LeaderStage): OperatorFunction<DriveEvent, DriveEvent> {
   return (events$) =>
     new Observable((out) =>
       events$.subscribe({
         next(event) {
           leader.take(event);
-          out.next(event);
           for (let k = 0; k < leader.pressedCount; k++) out.next(leader.pressed[k] as DriveEvent);
+          out.next(event);
         },
         error: (bug) => out.error(bug),
         complete: () => out.complete(),

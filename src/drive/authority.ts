@@ -51,7 +51,7 @@ export function authority(
   };
 
   const enter = (next: State, event: StateEvent): void => {
-    if (next === 'absent') leaveUnfinished();
+    leaveUnfinished(next);
     is.state = next;
     is.owed = true;
     common.following[index] = next === 'following' ? 1 : 0;
@@ -86,17 +86,24 @@ export function authority(
         return;
       case 'stopped':
         letClutchIn();
-        if (spec.stopCategory === 0) cutPower();
+        // An arm without its pulses, in the midst of waking, has nothing to brake first.
+        if (spec.stopCategory === 0 || (spec.stopCategory === 1 && !is.pulsed)) cutPower();
         return;
       case 'jogging':
         return;
     }
   };
 
-  /** A port that comes back finishes nothing by itself: a parking arm holds, a jogged servo is not where its joint says. */
-  const leaveUnfinished = (): void => {
-    if (is.state === 'parking') is.blocks |= BLOCKS.held;
-    if (is.state === 'jogging') is.pulsed = false;
+  /**
+   * What was broken off is not finished by itself: an arm that was parking holds, and a servo that was being jogged does
+   * not stand where its joint says, so the arm has to be woken again.
+   */
+  const leaveUnfinished = (next: State): void => {
+    if (is.state === 'parking' && (next === 'absent' || next === 'holding')) is.blocks |= BLOCKS.held;
+    if (is.state !== 'jogging' || next === 'holding') return;
+    jogging.forget();
+    is.pulsed = false;
+    standStill();
   };
 
   const standStill = (): void => {
@@ -129,7 +136,7 @@ export function authority(
   };
 
   const go = (): void => {
-    is.blocks &= ~BLOCKS.held;
+    is.blocks &= ~(BLOCKS.held | BLOCKS.contact);
     if (is.state === 'waking' && !is.going) startWaking();
     else raise(is.state === 'limp' ? 'go' : 'join');
   };
@@ -161,10 +168,11 @@ export function authority(
         case 'go':
           return go();
         case 'join':
-          is.blocks &= ~BLOCKS.held;
+          is.blocks &= ~(BLOCKS.held | BLOCKS.contact);
           return raise('join');
         case 'hold':
           is.blocks |= BLOCKS.held;
+          if (is.state === 'jogging') jogging.stay();
           return;
         case 'park':
           return park(false);
@@ -198,6 +206,7 @@ export function authority(
           const back = event.kept && is.pulsed && event.tUs - is.downUs <= BACK_US;
           is.present = true;
           is.pulsed = back;
+          if (!back) standStill();
           // A board may start with its outputs low, and a relay that is on when low is then on by itself.
           if (!back && spec.hasPower) pending.ask('power_off');
           return raise(back ? 'back' : 'ready');
@@ -212,6 +221,7 @@ export function authority(
       }
     },
     jog(event) {
+      if (!(event.servo in spec.servos)) return;
       if (is.state === 'holding' && !is.moving && !Number.isNaN(event.pulseUs)) raise('jog');
       if (is.state !== 'jogging') return;
       jogging.ask(event.servo, event.pulseUs);

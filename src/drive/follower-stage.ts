@@ -82,7 +82,8 @@ export function followerStage(
     if (!is.going || (now[0] as number) < is.nextPulseUs) return false;
     arm.frame.pulsing++;
     arm.aim();
-    is.nextPulseUs += STAGGER_US;
+    // From this pulse, not from when it was due: a port that was blocked must not let two servos start at once.
+    is.nextPulseUs = (now[0] as number) + STAGGER_US;
     is.lastUs = now[0] as number;
     if (arm.frame.pulsing === spec.servos.length) {
       is.pulsed = true;
@@ -97,7 +98,8 @@ export function followerStage(
     if (!is.owed && !is.moving && sinceUs < KEEP_ALIVE_US) return false;
     is.owed = false;
     const gap = sinceUs > PERIODS_MAX * spec.periodUs;
-    if (gap && is.moving) {
+    // A jogged servo creeps: it neither needs braking nor is where its joint says.
+    if (gap && is.moving && is.state !== 'jogging') {
       // It was on its way when its port stopped taking commands. Braking all the while is the one motion that is
       // short, keeps the acceleration limit over the gap, and needs no leap afterwards.
       if (sinceUs > lead.kernel.spec.timeoutUs) is.blocks |= BLOCKS.contact;

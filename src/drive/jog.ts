@@ -11,6 +11,10 @@ export interface Jog {
   ask(servo: number, pulseUs: number): void;
   /** Overrides the servo's pulse, moving it by at most dtS[0] seconds' worth; false when the jog has ended. */
   step(dtS: Float64Array, pulsesUs: Float64Array): boolean;
+  /** Asks it to stay where it is. */
+  stay(): void;
+  /** The servo is lost sight of: its pulses have ended, or nobody brings it home. */
+  forget(): void;
 }
 
 /** About 10 degrees a second on a usual hobby servo (common practice, no source): a hand can be pulled away. */
@@ -43,6 +47,14 @@ export function jog(servos: number): Jog {
       at[k] = Number.NaN;
       self.servo = -1;
       return false;
+    },
+    stay() {
+      ask[0] = at[self.servo] as number;
+    },
+    forget() {
+      at.fill(Number.NaN);
+      self.servo = -1;
+      self.moving = false;
     },
   };
   return self;

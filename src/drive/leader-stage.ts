@@ -109,7 +109,8 @@ export function leaderStage(plan: Plan, common: Shared): LeaderStage {
         self.lastUs = event.tUs;
         noteHealth();
       } else if (event.kind === 'key' && event.key === 'pace') {
-        common.pace[0] = event.value;
+        // A share, whoever sends it: never over the profile's limits, and never what is no number.
+        if (!Number.isNaN(event.value)) common.pace[0] = Math.min(Math.max(event.value, 0), 1);
       } else if (event.kind === 'down' && event.follower === LEADER) {
         self.lastUs = Number.NEGATIVE_INFINITY;
       }

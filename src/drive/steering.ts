@@ -40,7 +40,7 @@ export function steering(
 
   const join = (dtS: Float64Array): void => {
     wish();
-    is.meeting ||= arm.near(WAIT_RAD, false);
+    is.meeting ||= arm.passed(WAIT_RAD);
     if (!is.meeting) {
       arm.brake(dtS);
       return;

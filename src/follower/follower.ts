@@ -26,7 +26,7 @@ export interface Follower {
   readonly frame: Frame;
   /** Puts the arm, standing, at a pose (clamped to its ranges): what the first pulse will say. */
   place(poseRad: Float64Array): void;
-  /** Starts the deadband anew from where the arm is. */
+  /** Wishes for where the arm is, and starts the deadband anew from there. */
   settleHere(): void;
   /** Takes the leader's pose as the wish; `clutched`: the wish stays, and the offset takes up the difference. */
   want(leaderRad: Float64Array, clutched: boolean): void;
@@ -130,12 +130,12 @@ export function follower(spec: FollowerSpec): Follower {
         motion.x[j] = Math.min(Math.max(poseRad[j] as number, min[j] as number), max[j] as number);
         motion.v[j] = 0;
       }
-      // With the clutch out from the start the wish stays what it is: where the arm stands.
-      wantedRad.set(motion.x);
       self.settleHere();
     },
     settleHere() {
       target.set(motion.x);
+      // With the clutch out the wish stays what it is.
+      wantedRad.set(motion.x);
     },
     want(leaderRad, clutched) {
       map.mix(leaderRad, mixed);
