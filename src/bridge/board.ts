@@ -4,7 +4,7 @@ import type { FollowerStage } from '../drive/follower-stage.ts';
 import type { Port, PortFault } from '../port/types.ts';
 import type { CompiledBoard } from '../rig/compiled.ts';
 import { openSession } from '../wire/session.ts';
-import type { Emit, WireEvent } from '../wire/types.ts';
+import type { Emit, Garble, WireEvent } from '../wire/types.ts';
 import type { Stamped } from './source.ts';
 import { stamps } from './stamps.ts';
 
@@ -42,7 +42,7 @@ export type Word =
   | { readonly kind: 'greeted'; readonly address: string; readonly board: string | null }
   | { readonly kind: 'stranger'; readonly address: string; readonly board: string; readonly wanted: string }
   | { readonly kind: 'lacks'; readonly address: string; readonly what: 'input' | 'output'; readonly channel: number }
-  | { readonly kind: 'garbled'; readonly address: string; readonly why: string; readonly total: number };
+  | { readonly kind: 'garbled'; readonly address: string; readonly why: Garble; readonly total: number };
 
 export interface BoardListener {
   event(event: Stamped): void;

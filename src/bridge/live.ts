@@ -4,7 +4,7 @@ import { drive as makeDrive, type Drive } from '../drive/drive.ts';
 import { ALL, type DriveEvent, type Key } from '../drive/events.ts';
 import type { FollowerStage, Start } from '../drive/follower-stage.ts';
 import { driveStatus, type DriveStatus } from '../drive/status.ts';
-import type { Port } from '../port/types.ts';
+import type { Port, PortFaultCode } from '../port/types.ts';
 import type { CompiledBoard, CompiledRig } from '../rig/compiled.ts';
 import { board as makeBoard, type Board, type Word } from './board.ts';
 import { pipeline } from './pipeline.ts';
@@ -52,7 +52,7 @@ export interface BoardStatus {
   readonly open: boolean;
   readonly ready: boolean;
   readonly board: string | null;
-  readonly fault: string | null;
+  readonly fault: PortFaultCode | null;
   readonly readings: number;
   readonly commands: number;
   readonly garbled: number;

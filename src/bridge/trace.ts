@@ -11,6 +11,8 @@ export type OnCommand = (command: FollowerStage, tUs: number) => void;
 /** How a trace is pushed through: readings in, commands out, on no clock but the readings' own stamps. */
 export interface Trace {
   push(event: Stamped): void;
+  /** Goes on to `untilUs` although nothing comes: a long pause between two readings need not be taken at one go. */
+  runTo(untilUs: number): void;
   /** No more readings: the arms go on until contact is lost, as they would live, and brake to a stand. */
   end(): void;
 }
@@ -57,6 +59,10 @@ export function trace(
   return {
     push(event) {
       source.push(event);
+      orThrow();
+    },
+    runTo(untilUs) {
+      source.runTo(untilUs);
       orThrow();
     },
     end() {

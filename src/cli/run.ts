@@ -1,0 +1,111 @@
+import { resolve } from 'node:path';
+import { Command, Option } from '@commander-js/extra-typings';
+import type { CommandUnknownOpts } from '@commander-js/extra-typings';
+import { LOG_LEVELS, type LogLevel } from '../bridge/log.ts';
+import { withFollowers } from '../bridge/selection.ts';
+import { wakeMemory, wakeMemoryFile } from '../bridge/wake-memory.ts';
+import { CAUTIONS } from '../bridge/words.ts';
+import type { CompiledRig } from '../rig/compiled.ts';
+import { driving } from './driving.ts';
+import { rigOrMistakes } from './load.ts';
+import { chosenFollowers, durationOption, logLevelOption, namesOption, paceOption } from './options.ts';
+import { portOf } from './port-of.ts';
+import { realWorld, type World } from './world.ts';
+
+export interface RunOptions {
+  readonly join: boolean;
+  readonly pace: number | undefined;
+  readonly only: readonly string[] | undefined;
+  readonly without: readonly string[] | undefined;
+  readonly dry: boolean;
+  readonly for: number | undefined;
+  readonly json: boolean;
+  readonly log: LogLevel;
+  readonly logFile: string | undefined;
+}
+
+const NEEDS_JOIN = 'there is no terminal to ask for the go; say --join to let the arms start without asking, or --dry';
+
+/** Drives the rig of a file; resolves with the exit status. */
+export async function run(file: string, options: RunOptions, world: World): Promise<number> {
+  const { err, clock, env, terminal } = world;
+  const loaded = rigOrMistakes(file, err.write);
+  if (loaded === null) return 2;
+  const chosen = chosenRig(loaded.rig, options);
+  if ('mistakes' in chosen) {
+    err.write(chosen.mistakes.map((text) => `error: ${text}\n`).join(''));
+    return 2;
+  }
+  const attended = terminal !== null && !options.json;
+  if (!attended && !options.join && !options.dry) {
+    err.write(`error: ${NEEDS_JOIN}\n`);
+    return 2;
+  }
+  const { rig } = chosen;
+  return driving(
+    {
+      rig,
+      openPort: (board) => portOf(rig, board, clock),
+      memory: (onFault) => wakeMemory(wakeMemoryFile(resolve(file), env), onFault),
+      unasked: options.join,
+      dry: options.dry,
+      real: true,
+      forUs: options.for ?? null,
+      json: options.json,
+      logLevel: options.log,
+      logFile: options.logFile ?? null,
+    },
+    world,
+  );
+}
+
+function chosenRig(
+  rig: CompiledRig,
+  { only, without, pace }: RunOptions,
+): { readonly rig: CompiledRig } | { readonly mistakes: readonly string[] } {
+  const chosen = chosenFollowers(
+    rig.plan.followers.map(({ name }) => name),
+    only,
+    without,
+  );
+  if ('mistakes' in chosen) return chosen;
+  const kept = withFollowers(rig, chosen.keep);
+  return { rig: pace === undefined ? kept : { ...kept, plan: { ...kept.plan, pace } } };
+}
+
+const EXPLAINED = `
+The arms wake in the pose that is shown, and start when you let them go (key g). Keys are on the
+screen; ? explains them. Ctrl-C makes every follower brake and hold, and offers to park; again, it
+leaves. SIGTERM brakes, holds and leaves.
+
+${CAUTIONS.join('\n')}
+
+Exit status: 0 done, 1 the run failed or an arm could not be parked, 2 the input was wrong,
+130 interrupted.`;
+
+/** `eidograph run RIG` */
+export function runCommand(world: () => World = realWorld): CommandUnknownOpts {
+  return new Command('run')
+    .description('drive the followers of a rig by its leader (arms move: see the cautions in its help)')
+    .argument('<rig>', 'the rig file')
+    .option('--join', 'let the arms start without asking (needed where there is no terminal)', false)
+    .option('--pace <percent>', "share of every speed limit, 1% to 100%, in place of the rig's own", paceOption)
+    .option('--only <followers>', 'only these followers; several with commas', namesOption)
+    .option('--without <followers>', 'all but these followers; several with commas', namesOption)
+    .option('--dry', 'open the leader only: compute and show everything, send nothing', false)
+    .option('--for <time>', 'after this time (500ms, 10s, 2min) park every follower and leave', durationOption)
+    .option('--json', 'print the status as JSON, ten lines a second', false)
+    .addOption(logOption())
+    .option('--log-file <file>', 'write the log there rather than to standard error')
+    .addHelpText('after', EXPLAINED)
+    .action(async (file, { pace, only, without, for: forUs, logFile, ...rest }) => {
+      process.exitCode = await run(file, { pace, only, without, for: forUs, logFile, ...rest }, world());
+    });
+}
+
+export function logOption(): Option<'--log <level>', undefined, 'warn', LogLevel> {
+  return new Option('--log <level>', `how much is logged: ${LOG_LEVELS.join(', ')}`)
+    .env('EIDOGRAPH_LOG')
+    .default('warn' as const)
+    .argParser(logLevelOption);
+}

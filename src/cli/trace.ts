@@ -1,0 +1,144 @@
+import { createReadStream, createWriteStream } from 'node:fs';
+import type { Readable, Writable } from 'node:stream';
+import { pipeline } from 'node:stream/promises';
+import { Command } from '@commander-js/extra-typings';
+import type { CommandUnknownOpts } from '@commander-js/extra-typings';
+import { type Trace, trace } from '../bridge/trace.ts';
+import { US_PER_S } from '../clock/clock.ts';
+import type { CompiledRig } from '../rig/compiled.ts';
+import { commandsCsv } from './commands-csv.ts';
+import { csvMistakeLine } from './csv-mistake.ts';
+import { rigOrMistakes } from './load.ts';
+import { MISTAKES_MAX, readingsCsv, type ReadingsCsv } from './readings-csv.ts';
+import { startPoses } from './start-poses.ts';
+
+/** Where a trace reads and writes. */
+export interface TraceStreams {
+  /** Text. */
+  readonly input: AsyncIterable<string>;
+  readonly output: Writable;
+  /** Whether the output is closed at the end: standard output is not ours to close. */
+  readonly ownsOutput: boolean;
+}
+
+export interface TraceWorld {
+  /** Standard input, or null where somebody's keyboard is. */
+  readonly stdin: Readable | null;
+  readonly stdout: Writable;
+  say(text: string): void;
+}
+
+export interface TraceOptions {
+  readonly in: string | undefined;
+  readonly out: string | undefined;
+  readonly from: string | undefined;
+}
+
+const PORTION_CHARACTERS = 65_536;
+/** A pause between readings is taken in steps, so that what it makes the arms do can leave. */
+const STEP_US = 10 * US_PER_S;
+
+/**
+ * Readings in, commands out, in portions that wait until the last one has left.
+ * @param csv afterwards it holds the mistakes, if there are any
+ */
+export async function* tracing(
+  rig: CompiledRig,
+  from: readonly (Float64Array | null)[],
+  input: AsyncIterable<string>,
+  csv: ReadingsCsv,
+): AsyncGenerator<string> {
+  const commands = commandsCsv(rig);
+  let run: Trace | null = null;
+  let nowUs = 0;
+  const pieces = async function* (): AsyncGenerator<Iterable<{ tUs: number; counts: Float64Array }>> {
+    for await (const text of input) {
+      yield csv.push(text);
+      if (csv.hopeless) return;
+    }
+    yield csv.end();
+  };
+  for await (const readings of pieces()) {
+    for (const { tUs, counts } of readings) {
+      if (run === null) nowUs = tUs;
+      run ??= trace(rig, from, tUs, commands.take);
+      for (; tUs - nowUs > STEP_US; nowUs += STEP_US) {
+        run.runTo(nowUs);
+        if (commands.length > PORTION_CHARACTERS) yield commands.rows();
+      }
+      nowUs = tUs;
+      run.push({ kind: 'reading', tUs, counts });
+      if (commands.length > PORTION_CHARACTERS) yield commands.rows();
+    }
+  }
+  if (csv.mistakes.length === 0) run?.end();
+  yield commands.rows();
+}
+
+/** Runs recorded readings through a rig's maps; resolves with the exit status. */
+export async function traceFiles(file: string, options: TraceOptions, world: TraceWorld): Promise<number> {
+  const loaded = rigOrMistakes(file, world.say);
+  if (loaded === null) return 2;
+  const { rig } = loaded;
+  const poses = options.from === undefined ? { from: [] } : startPoses(rig, options.from);
+  if ('mistakes' in poses) return refused(world, poses.mistakes);
+  if (options.in === undefined && world.stdin === null)
+    return refused(world, ['nothing to read; name a file with --in, or pipe readings in']);
+  const named = options.in ?? '(standard input)';
+  const input = options.in === undefined ? (world.stdin as Readable) : createReadStream(options.in);
+  input.setEncoding('utf8');
+  const output = options.out === undefined ? world.stdout : createWriteStream(options.out);
+  const inputs = rig.boards.find(({ leads }) => leads)?.plan.inputs?.channels.length ?? 0;
+  const csv = readingsCsv(rig.plan.leader, inputs);
+  try {
+    await pipeline(tracing(rig, poses.from, input, csv), output, { end: options.out !== undefined });
+  } catch (fault) {
+    return failed(fault as NodeJS.ErrnoException, world);
+  }
+  if (csv.mistakes.length === 0) return 0;
+  const more = csv.mistakes.length >= MISTAKES_MAX ? ['and perhaps more; mend these first'] : [];
+  return refused(world, [...csv.mistakes.map((mistake) => csvMistakeLine(named, mistake)), ...more]);
+}
+
+function refused({ say }: TraceWorld, lines: readonly string[]): 2 {
+  say(lines.map((line) => `${line}\n`).join(''));
+  return 2;
+}
+
+function failed(fault: NodeJS.ErrnoException, { say }: TraceWorld): number {
+  // Whoever read the commands has seen enough.
+  if (fault.code === 'EPIPE' || fault.code === 'ERR_STREAM_PREMATURE_CLOSE') return 0;
+  if (fault.code === undefined) throw fault;
+  say(`error: ${fault.message}\n`);
+  return fault.syscall === 'open' ? 2 : 1;
+}
+
+const EXPLAINED = `
+Readings are CSV with a header: t_ms, a column for each joint of the leader (and, if wanted, for its
+buttons) in counts; an empty cell where no value came. An enable button without a column counts as
+held down. Commands are CSV: t_ms,follower,state,joint,target_deg,angle_deg,pulse_us.
+
+Nothing is opened and nothing moves. Followers start at rest and join at once. --from names a pose
+of the profiles, or gives angles in degrees: shoulder=40,stork.elbow=-10.`;
+
+/** `eidograph trace RIG` */
+export function traceCommand(world: () => TraceWorld = realTraceWorld): CommandUnknownOpts {
+  return new Command('trace')
+    .description('push recorded readings through the maps of a rig, offline: CSV in, CSV out')
+    .argument('<rig>', 'the rig file')
+    .option('--in <file>', 'readings; standard input when left out')
+    .option('--out <file>', 'commands; standard output when left out')
+    .option('--from <pose>', 'where followers start: a named pose, or joint=degrees with commas')
+    .addHelpText('after', EXPLAINED)
+    .action(async (file, { in: input, out, from }) => {
+      process.exitCode = await traceFiles(file, { in: input, out, from }, world());
+    });
+}
+
+function realTraceWorld(): TraceWorld {
+  return {
+    stdin: process.stdin.isTTY ? null : process.stdin,
+    stdout: process.stdout,
+    say: (text) => process.stderr.write(text),
+  };
+}
