@@ -62,7 +62,9 @@ const TELL_WAITING_US = 300 * US_PER_MS;
 export function board(plan: CompiledBoard, port: Port, clock: Clock, listener: BoardListener): Board {
   const session = openSession(plan.wire, plan.plan);
   const address = plan.address.text;
-  const parts = plan.leads ? [LEADER, ...plan.followers] : plan.followers;
+  // One follower stands for all on the board. The leader's part comes last: with the port gone, nobody may answer to it.
+  const outputs = plan.followers.slice(0, 1);
+  const parts = plan.leads ? [...outputs, LEADER] : outputs;
   const questions: Uint8Array[] = [];
   const readings = stamps(plan.plan.inputs?.channels.length ?? 0, listener.event);
   const buffers = plan.followers.map((_, output) => new Uint8Array(session.frameBytesMax(output)));
@@ -88,6 +90,10 @@ export function board(plan: CompiledBoard, port: Port, clock: Clock, listener: B
     for (const follower of to) listener.event({ kind, tUs, follower, kept });
   };
 
+  const tellIfBusy = (): void => {
+    if (!port.canTake) tell('blocked', outputs);
+  };
+
   const nudgeAt = (afterUs: number): void => {
     cancelNudge();
     cancelNudge = clock.at(clock.nowUs() + afterUs, () => {
@@ -97,7 +103,10 @@ export function board(plan: CompiledBoard, port: Port, clock: Clock, listener: B
   };
 
   const ask = (bytes: Uint8Array): void => {
-    if (questions.length === 0 && port.write(bytes)) return;
+    if (questions.length === 0 && port.write(bytes)) {
+      if (is.ready) tellIfBusy();
+      return;
+    }
     if (questions.length < QUESTIONS_MAX) questions.push(Uint8Array.from(bytes));
   };
 
@@ -114,7 +123,7 @@ export function board(plan: CompiledBoard, port: Port, clock: Clock, listener: B
         is.name = event.board;
         listener.say({ kind: 'greeted', address, board: event.board });
         // The last word of the greeting may still be leaving: nobody may write over it.
-        if (!port.canTake) tell('blocked', plan.followers);
+        tellIfBusy();
         tell('ready', parts, event.kept === true);
         return;
       case 'reboot':
@@ -166,7 +175,7 @@ export function board(plan: CompiledBoard, port: Port, clock: Clock, listener: B
         if (port.write(next)) questions.shift();
         return;
       }
-      if (is.ready) tell('free', plan.followers);
+      if (is.ready) tell('free', outputs);
     },
     closed(fault, retryMs) {
       const wasReady = is.ready;
@@ -207,7 +216,7 @@ export function board(plan: CompiledBoard, port: Port, clock: Clock, listener: B
       const view = (cached[length] ??= out.subarray(0, length));
       is.commands++;
       port.write(view);
-      if (!port.canTake) tell('blocked', plan.followers);
+      tellIfBusy();
     },
     async close() {
       cancelNudge();

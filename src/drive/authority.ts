@@ -42,6 +42,7 @@ export function authority(
   const spec = arm.spec;
   const motion = arm.governor;
   const now = common.nowUs;
+  const board = common.boardOf[index] as number;
   const wakesByItself = parts.unasked || spec.wake !== 'ask';
   let healthSeen = -1;
 
@@ -196,11 +197,11 @@ export function authority(
     board(event) {
       switch (event.kind) {
         case 'blocked':
-          if (!is.busy) is.busySinceUs = event.tUs;
-          is.busy = true;
+          if (common.busy[board] === 0) common.busySinceUs[board] = event.tUs;
+          common.busy[board] = 1;
           return;
         case 'free':
-          is.busy = false;
+          common.busy[board] = 0;
           return;
         case 'ready': {
           const back = event.kept && is.pulsed && event.tUs - is.downUs <= BACK_US;
@@ -214,7 +215,7 @@ export function authority(
         case 'down':
         case 'reboot':
           is.present = false;
-          is.busy = false;
+          common.busy[board] = 0;
           if (event.kind === 'reboot') is.pulsed = false;
           pending.forget();
           return raise('down');

@@ -21,10 +21,13 @@ export interface Drive {
  * @param startUs instant at which the drive begins, integer microseconds
  */
 export function drive(plan: Plan, starts: readonly Start[], startUs: number): Drive {
-  const boards = 1 + Math.max(-1, ...starts.map((s) => s.board));
-  const common = shared(startUs, plan.followers.length, boards, plan.pace);
+  const common = shared(
+    startUs,
+    starts.map((s) => s.board),
+    plan.pace,
+  );
   const leader = leaderStage(plan, common);
-  const onBoard = Array.from({ length: boards }, (): FollowerStage[] => []);
+  const onBoard = Array.from(common.busy, (): FollowerStage[] => []);
   const followers = plan.followers.map((spec, f) => {
     const start = starts[f] as Start;
     return followerStage(spec, f, leader, common, start, onBoard[start.board] as FollowerStage[]);

@@ -56,7 +56,7 @@ export const ALL = -1;
 /** The leader's own board, in a `BoardEvent`. */
 export const LEADER = -2;
 
-/** What happened to a follower's way out, or to the leader's way in. */
+/** What happened to a board: to the way out of all followers on it, or to the leader's way in. */
 export interface BoardEvent {
   readonly kind: /** Open and greeted. */
     | 'ready'
@@ -68,7 +68,10 @@ export interface BoardEvent {
     /** It can take one again. */
     | 'free';
   readonly tUs: number;
-  /** Index of the follower, or `LEADER`. */
+  /**
+   * Index of any follower on the board, which stands for all of them: they have one port, and none may be told later
+   * than another that it is busy. `LEADER` for the leader's part of its board.
+   */
   readonly follower: number;
   /** For `ready`: the board is known not to have restarted since it was last ready. */
   readonly kept: boolean;

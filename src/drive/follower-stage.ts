@@ -136,19 +136,19 @@ export function followerStage(
       if (reading) is.owed = true;
       else if (event.kind === 'key') {
         if (event.follower === ALL || event.follower === index) rule.key(event);
-      } else if (event.kind !== 'tick' && event.follower === index) {
-        if (event.kind === 'jog') rule.jog(event);
-        else rule.board(event);
-      }
+      } else if (event.kind === 'jog') {
+        if (event.follower === index) rule.jog(event);
+      } else if (event.kind !== 'tick' && common.boardOf[event.follower] === start.board) rule.board(event);
       rule.weigh();
-      if (!is.present || is.busy || common.taken[start.board] === 1) return false;
-      if (siblings.length > 1 && mustYield()) return false;
+      if (!is.present || common.busy[start.board] === 1 || common.taken[start.board] === 1) return false;
+      // What switches an arm off waits for nobody's motion.
       if (pending.some) return emit(pending.take());
+      if (siblings.length > 1 && mustYield()) return false;
       if (is.state === 'waking') return wake();
       return is.pulsed && move(reading);
     },
     dueUs() {
-      if (!is.present || is.busy) return Number.POSITIVE_INFINITY;
+      if (!is.present || common.busy[start.board] === 1) return Number.POSITIVE_INFINITY;
       if (pending.some) return now[0] as number;
       if (is.state === 'waking') return is.going ? is.nextPulseUs : Number.POSITIVE_INFINITY;
       if (!is.pulsed) return Number.POSITIVE_INFINITY;

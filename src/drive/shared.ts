@@ -8,16 +8,26 @@ export interface Shared {
   readonly inrushFreeUs: Float64Array;
   /** 1 for each follower in state `following`, in rig order: only those count in unison. */
   readonly following: Uint8Array;
+  /** The board each follower hangs on, in rig order. */
+  readonly boardOf: readonly number[];
   /** 1 for each board that has been given a command in the event being handled. */
   readonly taken: Uint8Array;
+  /** 1 for each board whose port is still busy with the last command. */
+  readonly busy: Uint8Array;
+  /** Since when, integer microseconds. */
+  readonly busySinceUs: Float64Array;
 }
 
-export function shared(startUs: number, followers: number, boards: number, pace: number): Shared {
+export function shared(startUs: number, boardOf: readonly number[], pace: number): Shared {
+  const boards = 1 + Math.max(-1, ...boardOf);
   return {
     nowUs: new Float64Array([startUs]),
     pace: new Float64Array([pace]),
     inrushFreeUs: new Float64Array([Number.NEGATIVE_INFINITY]),
-    following: new Uint8Array(followers),
+    following: new Uint8Array(boardOf.length),
+    boardOf,
     taken: new Uint8Array(boards),
+    busy: new Uint8Array(boards),
+    busySinceUs: new Float64Array(boards),
   };
 }

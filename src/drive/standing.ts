@@ -18,10 +18,6 @@ export interface Standing {
   going: boolean;
   /** The clutch is out: the leader moves without this arm. */
   clutched: boolean;
-  /** The port is still busy with the last command. */
-  busy: boolean;
-  /** Since when, integer microseconds. */
-  busySinceUs: number;
   /** When its port went down. */
   downUs: number;
   /** When the next servo gets its first pulse. */
@@ -48,8 +44,6 @@ export function standing(): Standing {
     moving: false,
     going: false,
     clutched: false,
-    busy: false,
-    busySinceUs: Number.NEGATIVE_INFINITY,
     downUs: Number.NEGATIVE_INFINITY,
     nextPulseUs: Number.NEGATIVE_INFINITY,
     lastUs: Number.NEGATIVE_INFINITY,

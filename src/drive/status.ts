@@ -3,6 +3,7 @@ import type { State } from '../follower/states.ts';
 import { ILLS, type Ill } from '../leader/health.ts';
 import type { Drive } from './drive.ts';
 import type { FollowerStage } from './follower-stage.ts';
+import type { Shared } from './shared.ts';
 
 /** Everything people and programs are shown of a drive; pulled, never pushed. Keys are the ones `--json` prints. */
 export interface DriveStatus {
@@ -65,7 +66,7 @@ export function driveStatus(drive: Drive, nowUs: number): DriveStatus {
     pace: drive.common.pace[0] as number,
     unison: drive.plan.unison,
     leader: leaderStatus(drive, nowUs),
-    followers: drive.followers.map((follower) => followerStatus(follower, nowUs)),
+    followers: drive.followers.map((follower) => followerStatus(follower, drive.common, nowUs)),
   };
 }
 
@@ -92,8 +93,8 @@ function leaderStatus(drive: Drive, nowUs: number): LeaderStatus {
   };
 }
 
-function followerStatus(stage: FollowerStage, nowUs: number): FollowerStatus {
-  const { is, arm, spec } = stage;
+function followerStatus(stage: FollowerStage, common: Shared, nowUs: number): FollowerStatus {
+  const { is, arm, spec, board } = stage;
   return {
     follower: spec.name,
     state: is.state,
@@ -103,7 +104,7 @@ function followerStatus(stage: FollowerStage, nowUs: number): FollowerStatus {
     moving: is.moving,
     commands: stage.commands,
     lag_us: finite(stage.readingAgeUs),
-    busy_us: is.busy ? nowUs - is.busySinceUs : null,
+    busy_us: common.busy[board] === 1 ? nowUs - (common.busySinceUs[board] as number) : null,
     joints: spec.joints.map((joint, j) => ({
       joint: joint.name,
       wanted_deg: (arm.wantedRad[j] as number) * DEG,

@@ -110,7 +110,7 @@ export class Rehearsal {
   /** Opens the leader's port and every follower's. */
   ready(): this {
     this.board('ready', LEADER);
-    this.drive.followers.forEach((_, f) => this.board('ready', f));
+    for (const board of new Set(this.#boardOf)) this.board('ready', this.#boardOf.indexOf(board));
     return this;
   }
 
