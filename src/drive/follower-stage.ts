@@ -37,6 +37,8 @@ export interface FollowerStage {
   readonly commands: number;
   /** Age of the newest reading when the last command was made, microseconds. */
   readonly readingAgeUs: number;
+  /** Power or pulses are to be switched as soon as the port takes it. */
+  readonly switching: boolean;
   /** Handles one event; true when a command is to go out now. */
   take(event: DriveEvent): boolean;
   /** The next instant at which it has something to do although nothing arrives; Infinity when there is none. */
@@ -115,10 +117,10 @@ export function followerStage(
     return emit('move');
   };
 
-  /** Where a board is too slow for its followers, the one that has waited longest goes first. */
+  /** Where a board is too slow for its followers, one that is switched off goes first, then the one that has waited longest. */
   const mustYield = (): boolean => {
     const mine = self.dueUs();
-    for (const other of siblings) if (other !== self && other.dueUs() < mine) return true;
+    for (const other of siblings) if (other !== self && (other.switching || other.dueUs() < mine)) return true;
     return false;
   };
 
@@ -131,6 +133,9 @@ export function followerStage(
     kind: 'move',
     commands: 0,
     readingAgeUs: Number.NaN,
+    get switching() {
+      return pending.some;
+    },
     take(event) {
       const reading = event.kind === 'reading' || event.kind === 'pose';
       if (reading) is.owed = true;
@@ -140,6 +145,8 @@ export function followerStage(
         if (event.follower === index) rule.jog(event);
       } else if (event.kind !== 'tick' && common.boardOf[event.follower] === start.board) rule.board(event);
       rule.weigh();
+      // Several ports may become busy in one instant, and are told one by one: this board's own word may be yet to come.
+      if (event.kind === 'blocked') return false;
       if (!is.present || common.busy[start.board] === 1 || common.taken[start.board] === 1) return false;
       // What switches an arm off waits for nobody's motion.
       if (pending.some) return emit(pending.take());
