@@ -1,3 +1,4 @@
+import { normalize } from 'node:path';
 import { parseAddress } from '../port/address.ts';
 import type { Address } from '../port/address.ts';
 import { WIRE_ABILITIES } from '../wire/abilities.ts';
@@ -23,14 +24,17 @@ export function addressOf(port: string | undefined): Address | null {
   return address === null || address.kind === 'mistake' ? null : address;
 }
 
-/** Options do not make another port: two baud rates on one device are a contradiction, not two devices. */
+/**
+ * Two spellings of one device are one port: it can be opened once. Options do not make another: two baud rates on one
+ * device are a contradiction, not two devices.
+ */
 function identityOf(address: Address): string {
   switch (address.kind) {
     case 'serial':
-      return `serial:${address.path}`;
+      return `serial:${normalize(address.path)}`;
     case 'tcp':
     case 'udp':
-      return `${address.kind}:${address.host}:${address.port}`;
+      return `${address.kind}:${address.host.toLowerCase()}:${address.port}`;
     case 'sim':
       return address.text;
   }

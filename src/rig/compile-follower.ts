@@ -1,7 +1,9 @@
+import type { ArmSpec } from '../arm/spec.ts';
 import type { FollowerJointSpec, FollowerSpec, ServoSpec, WeightedSource } from '../follower/spec.ts';
 import type { LeaderSpec } from '../leader/spec.ts';
 import { compileMap } from '../map/compile.ts';
 import type { OutputWiring, PowerWiring } from '../wire/types.ts';
+import { compileWhole } from './compile-arm.ts';
 import { rising } from './compile-leader.ts';
 import { reachMm } from './reach.ts';
 import type { FollowerJoint, FollowerProfile } from './schema/follower.ts';
@@ -13,13 +15,18 @@ import { commandsOf, wireName } from './wire-choice.ts';
 /** An arm that reaches less than this is put into its rest pose without asking. */
 const WAKE_REACH_MM = 300;
 
-/** A follower file without mistakes, in radians and microseconds, tied to its leader's joints by index. */
-export function compileFollower(profile: FollowerProfile, leader: LeaderSpec): FollowerSpec {
+/**
+ * A follower file without mistakes, in radians and microseconds, tied to its leader's joints by index.
+ * @param leaderArm the leader's geometry; null where its file gives none
+ */
+export function compileFollower(profile: FollowerProfile, leader: LeaderSpec, leaderArm: ArmSpec | null): FollowerSpec {
   const { joints, join, poses } = profile;
+  const specs = joints.map((joint) => compileJoint(joint, leader));
+  const whole = compileWhole(profile, specs, leaderArm);
   return {
     name: profile.follower,
     periodUs: periodUs(profile.rate_hz),
-    joints: joints.map((joint) => compileJoint(joint, leader)),
+    joints: specs,
     servos: compileServos(profile),
     joinShare: join.speed,
     joinMeet: join.meet,
@@ -33,6 +40,7 @@ export function compileFollower(profile: FollowerProfile, leader: LeaderSpec): F
         Float64Array.from(joints, (joint) => radians(angles[joint.name] ?? joint.rest_deg)),
       ]),
     ),
+    ...(whole === null ? {} : { whole }),
   };
 }
 

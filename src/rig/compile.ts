@@ -1,6 +1,7 @@
 import type { Address } from '../port/address.ts';
 import type { WireChoice } from '../wire/choice.ts';
 import { addressOf, baudOf, groupByPort } from './boards.ts';
+import { compileArm } from './compile-arm.ts';
 import { compileFollower, outputWiring } from './compile-follower.ts';
 import { compileLeader, inputWiring } from './compile-leader.ts';
 import type { CompiledBoard, CompiledRig } from './compiled.ts';
@@ -19,11 +20,13 @@ export interface RigProfiles {
 /** Compiles a rig that has passed every rule. Here and in what it calls, and nowhere else, units convert. */
 export function compileRig(frame: RigFrame, profiles: RigProfiles): CompiledRig {
   const leader = compileLeader(profiles.leader);
+  const { arm, joints } = profiles.leader;
+  const leaderArm = arm === undefined ? null : compileArm(arm, joints);
   return {
     name: frame.rig,
     plan: {
       leader,
-      followers: profiles.followers.map((follower) => compileFollower(follower, leader)),
+      followers: profiles.followers.map((follower) => compileFollower(follower, leader, leaderArm)),
       unison: frame.unison,
       pace: share(frame.pace),
     },

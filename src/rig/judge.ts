@@ -5,10 +5,12 @@ import type { Member } from './rules/between.ts';
 import { followerConnectionRules, leaderConnectionRules } from './rules/connection.ts';
 import { followerRules } from './rules/follower.ts';
 import { leaderRules } from './rules/leader.ts';
+import { notEnforcedRules } from './rules/not-enforced.ts';
 import { noteIn } from './rules/note.ts';
 import { rateRule, samplingRule } from './rules/rates.ts';
 import { servoRules } from './rules/servos.ts';
-import { textRules } from './rules/texts.ts';
+import { separatorRule, textRules } from './rules/texts.ts';
+import { geometryRules, poseRules } from './rules/whole-arm.ts';
 import { follower } from './schema/follower.ts';
 import type { FollowerProfile } from './schema/follower.ts';
 import { leader } from './schema/leader.ts';
@@ -30,6 +32,7 @@ export function judgeLeader(node: LocatedNode, entry: LocatedNode, mistakes: Mis
   leaderRules(loose, note);
   leaderConnectionRules(loose, note);
   armRules(loose, note);
+  separatorRule(loose, note);
   samplingRule(loose, note);
   return { whole, loose, entry, note };
 }
@@ -42,7 +45,11 @@ export function judgeFollower(node: LocatedNode, entry: LocatedNode, mistakes: M
   servoRules(loose, note);
   followerConnectionRules(loose, note);
   textRules(loose, note);
+  separatorRule(loose, note);
   armRules(loose, note);
+  geometryRules(loose, note);
+  notEnforcedRules(loose, note);
+  if (whole !== null) poseRules(whole, note);
   rateRule(loose, note);
   return { whole, loose, entry, note };
 }

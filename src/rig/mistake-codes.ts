@@ -107,7 +107,14 @@ export const MISTAKE_CODES = {
     means: 'a follower on lines without a template',
     remedy: 'give wire: { lines: { template: "{shoulder.us},{elbow.us}\\n" } }',
   },
-  RIG_TEMPLATE: { means: 'a line template that cannot be filled', remedy: 'mend it as is said' },
+  RIG_TEMPLATE: {
+    means: 'a line template that cannot be filled, or whose last number has no end',
+    remedy: 'mend it as is said',
+  },
+  RIG_SEPARATOR: {
+    means: 'a separator that a number, a name or a checksum may contain',
+    remedy: 'use one sign such as ; or , or a space',
+  },
   RIG_RATE_TOO_HIGH: {
     means: 'commands that do not fit the baud rate (10 bits a byte)',
     remedy: 'lower rate_hz to the rate that is named, or raise the baud on the board and here',
@@ -121,8 +128,36 @@ export const MISTAKE_CODES = {
     remedy: 'give sampling_ms well under timeout_ms',
   },
   RIG_ARM: {
-    means: 'an arm that cannot be: no reach, or a spring whose ends meet',
+    means: 'an arm that cannot be: no reach, an axis without direction, a spring whose ends meet or that has no lever',
     remedy: 'measure it again, in the links’ frames at the zero pose',
+  },
+  RIG_ARM_MISSING: {
+    means: 'a key that needs the geometry of the arm, without arm:',
+    remedy: 'give arm: with its links, or remove the key',
+  },
+  RIG_LINK_ORDER: {
+    means: 'links in another order than their joints',
+    remedy: 'list joints and links from the base to the tip',
+  },
+  RIG_MOTOR_MISSING: {
+    means: 'a limited load where no link has a motor',
+    remedy: 'give motor: { stall_nm: … } to the links, or use load: warn',
+  },
+  RIG_TIPPING: {
+    means: 'a base of which tipping is asked and cannot be told: a part is missing, or the footprint is no outline',
+    remedy: 'give base: mass_g and footprint_mm, its corners in order round, with friction',
+  },
+  RIG_POSE_KEPT_OUT: {
+    means: 'a rest or named pose with a link inside a keep-out',
+    remedy: 'move the pose or the keep-out',
+  },
+  RIG_TIP_STILL: {
+    means: 'follow: tip of an arm whose tip no joint moves',
+    remedy: 'give links to the joints that reach, or use follow: joints',
+  },
+  RIG_TIP_LEADER: {
+    means: 'follow: tip of a leader whose geometry is not known',
+    remedy: 'give arm: in the leader file, or use follow: joints',
   },
   RIG_NOT_ENFORCED: {
     means: 'a limit that this version does not yet enforce',

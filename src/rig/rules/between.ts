@@ -32,7 +32,11 @@ export function betweenRules(
   followers: readonly Member<FollowerProfile>[],
   mistakes: MistakeList,
 ): void {
-  for (const follower of followers) if (leader !== null) sourceRule(follower, leader.loose);
+  for (const follower of followers) {
+    if (leader === null) break;
+    sourceRule(follower, leader.loose);
+    tipRule(follower, leader.loose);
+  }
   const tenants = [...(leader === null ? [] : [leaderTenant(leader)]), ...followers.map(followerTenant)];
   nameRule(tenants, mistakes);
   for (const group of groupByPort(tenants.map(({ port }) => port))) {
@@ -68,6 +72,13 @@ function sourceRule({ loose, note }: Member<FollowerProfile>, leader: Loose<Lead
   }
 }
 
+/** A tip can only be followed where it is known. */
+function tipRule({ loose, note }: Member<FollowerProfile>, leader: Loose<LeaderProfile>): void {
+  if (loose.follow !== 'tip' || 'arm' in leader) return;
+  const wrong = `follow: tip needs the geometry of ${leader.leader ?? 'the leader'}, whose file gives no arm`;
+  note('RIG_TIP_LEADER', ['follow'], wrong, 'give arm: with its links in the leader file, or use follow: joints');
+}
+
 function nameRule(tenants: readonly Tenant[], mistakes: MistakeList): void {
   const seen = new Set<string>();
   for (const { name, entry } of tenants) {
@@ -91,6 +102,7 @@ function sharedPortRule(tenant: Tenant, former: readonly Tenant[], mistakes: Mis
   if (wires[0] === null || wires[1] === null) return;
   differs('wire', wires[0], wires[1]);
   if (wires[0] === wires[1]) differs('baud', baudText(tenant, wires[0]), baudText(first, wires[1]));
+  differs('local port', localPortText(tenant), localPortText(first));
   const named = former.find(({ board }) => board !== undefined);
   if (tenant.board !== undefined && named?.board !== undefined) differs('board', tenant.board, named.board);
   overlapRule(tenant, former, place, mistakes);
@@ -112,6 +124,11 @@ function overlapRule(tenant: Tenant, former: readonly Tenant[], place: Place, mi
 function baudText({ port }: Tenant, wire: Parameters<typeof baudOf>[1]): string {
   const address = addressOf(port);
   return String(address === null ? null : baudOf(address, wire));
+}
+
+function localPortText({ port }: Tenant): string {
+  const address = addressOf(port);
+  return String((address?.kind === 'udp' ? address.localPort : null) ?? 'any');
 }
 
 /** In the rig's own file: a profile may stand in several rigs, and in one of them several times. */

@@ -26,7 +26,6 @@ export function followerRules(follower: LooseFollower, note: Note): void {
   );
   for (const [i, joint] of joints.entries()) jointRules(joint, ['joints', i], note);
   poseRules(follower, note);
-  notEnforcedRules(follower, note);
 }
 
 function jointRules(joint: LooseJoint, path: Path, note: Note): void {
@@ -82,20 +81,6 @@ function poseRules({ poses = {}, joints = [] }: LooseFollower, note: Note): void
       const wrong = `${angle} is outside the range of ${joint}, ${range[0]} to ${range[1]} degrees`;
       note('RIG_POSE_OUTSIDE', path, wrong, `give an angle within ${range[0]} to ${range[1]}`);
     }
-  }
-}
-
-/** Limits that a person relies on are not accepted in silence while nothing keeps them. */
-function notEnforcedRules(follower: LooseFollower, note: Note): void {
-  const asked: readonly (readonly [boolean, Path, string])[] = [
-    [follower.follow === 'tip', ['follow'], 'follow: tip'],
-    [follower.tip_speed_mm_s !== undefined, ['tip_speed_mm_s'], 'tip_speed_mm_s'],
-    [(follower.keep_out ?? []).length > 0, ['keep_out'], 'keep_out'],
-    [follower.load === 'limit', ['load'], 'load: limit'],
-  ];
-  for (const [is, path, what] of asked) {
-    const wrong = `${what} is not yet enforced by this version`;
-    if (is) note('RIG_NOT_ENFORCED', path, wrong, 'remove it, and keep the speed down with speed_deg_s');
   }
 }
 

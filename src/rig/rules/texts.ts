@@ -1,6 +1,8 @@
+import { canSeparate } from '../../wire/lines-parser.ts';
 import { compileTemplate, escapeMistake } from '../../wire/template.ts';
 import { outputWiring } from '../compile-follower.ts';
 import type { FollowerProfile } from '../schema/follower.ts';
+import type { LeaderProfile } from '../schema/leader.ts';
 import type { Loose } from '../shape.ts';
 import { wireName } from '../wire-choice.ts';
 import type { Note } from './note.ts';
@@ -23,4 +25,21 @@ export function textRules(follower: Loose<FollowerProfile>, note: Note): void {
   const compiled = texts.template === undefined || wiring === null ? null : compileTemplate(texts.template, wiring);
   if (compiled?.kind === 'mistake')
     note('RIG_TEMPLATE', ['wire', 'lines', 'template'], compiled.wrong, compiled.remedy);
+  else if (compiled !== null && endsInNumber(texts.template ?? '')) {
+    const wrong = 'the line ends in a number, and the sketch cannot tell where it is whole';
+    note('RIG_TEMPLATE', ['wire', 'lines', 'template'], wrong, 'end the template with "\\n", in double quotes');
+  }
+}
+
+/** How either end splits the numbers of a line. */
+export function separatorRule({ wire }: Loose<LeaderProfile>, note: Note): void {
+  const separator = typeof wire === 'object' ? wire.lines?.separator : undefined;
+  if (separator === undefined || canSeparate(separator)) return;
+  const wrong = `${JSON.stringify(separator)} may stand in a number, a name or a checksum`;
+  note('RIG_SEPARATOR', ['wire', 'lines', 'separator'], wrong, 'use one sign such as ";" "," "|" or " "');
+}
+
+/** A placeholder that nothing follows; "}}" at the end is a brace. */
+function endsInNumber(template: string): boolean {
+  return (/\}*$/.exec(template)?.[0].length ?? 0) % 2 === 1;
 }

@@ -1,10 +1,19 @@
 import { z } from 'zod';
 import { at, degrees, grams, millimetres, nameOf, positive } from './quantities.ts';
 
+/** What the arm's kernels are built and tested for. */
+const LINKS_MAX = 8;
+
+const component = () => z.number().min(-1e3).max(1e3);
+
 const spring = z
   .strictObject({
     n_per_mm: positive(1e5).describe('the stiffness of the spring, in newtons per millimetre, above 0'),
-    free_mm: positive(1e5).describe('the length of the spring without load, in millimetres, above 0'),
+    free_mm: z
+      .number()
+      .min(0)
+      .max(1e5)
+      .describe('the length at which the spring pulls nothing, in millimetres; 0 where a cord makes it so'),
     from_mm: at('where the spring is held on the link before this one, [x, y, z] in millimetres'),
     to_mm: at('where the spring is held on this link, [x, y, z] in millimetres'),
   })
@@ -24,16 +33,20 @@ const motor = z
 const link = z.strictObject({
   joint: nameOf('the joint that turns this link'),
   axis: z
-    .enum(['x', 'y', 'z'])
-    .describe('the axis it turns about, right-handed: x (forward), y (left) or z (up) at the zero pose'),
+    .union([z.enum(['x', 'y', 'z']), z.tuple([component(), component(), component()])])
+    .describe(
+      'the axis it turns about, right-handed: x (forward), y (left), z (up), or its direction [x, y, z], at the zero pose',
+    ),
   to_mm: at(
     'from this joint’s axis to the next one’s (of the last link: to the tip), [x, y, z] in millimetres at the zero pose',
   ),
-  mass_g: grams().describe('the mass of the link, in grams').optional(),
-  centre_mm: at('the centre of mass, from this joint’s axis, [x, y, z] in millimetres').optional(),
+  mass_g: grams().describe('the mass of the link, in grams, above 0').optional(),
+  centre_mm: at(
+    'the centre of mass, from this joint’s axis, [x, y, z] in millimetres; absent: halfway along to_mm',
+  ).optional(),
   counterweight: z
     .strictObject({
-      mass_g: positive(1e7).describe('the mass of the counterweight, in grams, above 0'),
+      mass_g: grams().describe('the mass of the counterweight, in grams, above 0'),
       at_mm: at('where it sits, from this joint’s axis, [x, y, z] in millimetres'),
     })
     .describe('a counterweight on this link')
@@ -62,7 +75,7 @@ const base = z
       .tuple([degrees(), degrees()])
       .default([0, 0])
       .describe('how the base is turned about x, then y, [degrees, degrees]; [180, 0] hangs it from a ceiling'),
-    mass_g: grams().describe('the mass of the base, in grams').optional(),
+    mass_g: grams().describe('the mass of the base, in grams, above 0').optional(),
     footprint_mm: z
       .array(z.tuple([millimetres(), millimetres()]))
       .min(3)
@@ -78,10 +91,10 @@ const base = z
 export const arm = z
   .strictObject({
     base,
-    links: z.array(link).min(1).max(64).describe('the links, one a joint, base first'),
+    links: z.array(link).min(1).max(LINKS_MAX).describe('the links, one a joint, base first'),
     payload: z
       .strictObject({
-        mass_g: grams().describe('the mass of what the tip carries, in grams'),
+        mass_g: grams().describe('the mass of what the tip carries, in grams, above 0'),
         at_mm: at('where it sits, from the tip, in the last link’s frame, [x, y, z] in millimetres'),
       })
       .describe('what the tip carries')

@@ -8,6 +8,7 @@ import {
   degreesPerSecond,
   degreesPerSecondSquared,
   factor,
+  at,
   nameOf,
   positive,
   servoPoints,
@@ -55,12 +56,28 @@ const coupledServo = z.strictObject({
   deadband_us: servoKeys.deadband_us,
 });
 
+const tip = z
+  .strictObject({
+    scale: factor()
+      .describe('its lengths for one of the leader’s, above 0; absent: the ratio of their reaches')
+      .optional(),
+    origin_mm: at('how far the copy is moved, [x, y, z] in millimetres, in its own level frame').default([0, 0, 0]),
+    mirror: z.boolean().default(false).describe('true: left and right change places'),
+    turn_deg: degrees().default(0).describe('how far the copy is turned about the vertical, in degrees'),
+    keep_pitch: z
+      .boolean()
+      .default(false)
+      .describe('true: the last link keeps the pitch of the leader’s last link, where a joint is free for it'),
+  })
+  .describe('with follow: tip, how the leader’s tip becomes its own');
+
 export const follower = z
   .strictObject({
     follower: nameOf('the name of the follower'),
     ...connection,
     rate_hz: z.number().min(1).max(1000).default(50).describe('commands a second, in hertz'),
     follow: z.enum(['joints', 'tip']).default('joints').describe('what it copies: joints, or the tip'),
+    tip: tip.optional(),
     join: z
       .strictObject({
         speed: positive(1).default(0.25).describe('the share of the speed limits while joining, above 0, at most 1'),
@@ -111,6 +128,10 @@ export const follower = z
       .enum(['warn', 'limit'])
       .default('warn')
       .describe('what happens at a torque over the motor’s share: warn or limit'),
+    moving_load: z
+      .enum(['warn', 'limit'])
+      .default('warn')
+      .describe('what happens where speeding up takes more than the motor’s share: warn, or limit the acceleration'),
     arm: arm.optional(),
     keep_out: keepOut.default([]),
     supply: supply.optional(),

@@ -39,6 +39,12 @@ const joint = z.strictObject({
     .max(15)
     .default(3)
     .describe('the median window in readings, odd: 3 takes out single spikes for one reading of delay, 1 is off'),
+  noise_counts: z
+    .number()
+    .min(0)
+    .max(1e6)
+    .describe('the noise of the pot as it stands still, root mean square, in counts; absent: not measured')
+    .optional(),
   smooth: smooth.optional(),
 });
 

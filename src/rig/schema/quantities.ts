@@ -29,7 +29,7 @@ export const channel = () => z.int().min(0).max(CHANNEL_MAX);
 export const factor = () => z.number().gt(0).max(FACTOR_MAX);
 const weight = () => z.number().min(-FACTOR_MAX).max(FACTOR_MAX);
 export const millimetres = () => z.number().min(-LENGTH_MM_MAX).max(LENGTH_MM_MAX);
-export const grams = () => z.number().min(0).max(MASS_G_MAX);
+export const grams = () => z.number().gt(0).max(MASS_G_MAX);
 export const positive = (max: number) => z.number().gt(0).max(max);
 
 export const at = (what: string) => z.tuple([millimetres(), millimetres(), millimetres()]).describe(what);

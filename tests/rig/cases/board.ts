@@ -201,6 +201,34 @@ export const BOARD_CASES: readonly MistakeCase[] = [
       'RIG_TEMPLATE stork.yaml:3:64: wire.lines.limp: "\\n" is two characters here; write the text in double quotes',
     ],
   },
+  ...['{shoulder.us},{elbow.us}', '{shoulder.us}}}{elbow.deg:2}'].map((template) => ({
+    title: `a template that ends in a number: ${template}`,
+    stork: [['wire: firmata', `wire: { lines: { template: "${template}" } }`] as const],
+    says: [
+      'RIG_TEMPLATE stork.yaml:3:28: wire.lines.template: the line ends in a number, and the sketch cannot tell where it is whole; end the template with "\\n", in double quotes',
+    ],
+  })),
+  ...['-', '5', '_', '*', 'é'].map((separator) => ({
+    title: `a separator that a number or a name may contain: ${separator}`,
+    rig: [['wire: lines', `wire: { lines: { separator: "${separator}" } }`] as const],
+    says: [
+      `RIG_SEPARATOR rig.yaml:5:31: leader.wire.lines.separator: "${separator}" may stand in a number, a name or a checksum; use one sign such as ";" "," "|" or " "`,
+    ],
+  })),
+  {
+    title: 'one UDP board that is to answer to two ports',
+    rig: [
+      ['serial:/dev/hand?baud=115200', 'udp:Arms.local:7000?local=7001'],
+      ['wire: lines', 'wire: frames'],
+    ],
+    stork: [
+      ['serial:/dev/stork?baud=57600', 'udp:arms.local:7000'],
+      ['wire: firmata', 'wire: frames'],
+    ],
+    says: [
+      'RIG_PORT_DIFFERS rig.yaml:17:5: followers[0]: stork says local port any of a port of which hand says 7001; one port is one board: say the same in both, or use another port',
+    ],
+  },
   // Two servos of one Firmata analog message each, 3 bytes (firmata/protocol, protocol.md), 10 bits a byte (8N1):
   // 6 * 10 * 50 = 3000 bits a second, and 2400 / 60 = 40 Hz fits.
   {

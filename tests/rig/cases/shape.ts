@@ -13,7 +13,7 @@ export const SHAPE_CASES: readonly MistakeCase[] = [
     title: 'an unknown key that is near no other',
     stork: [['rate_hz: 50', 'colour: red']],
     says: [
-      'RIG_KEY_UNKNOWN stork.yaml:4:1: colour: "colour" is not a key here; known keys are follower, port, wire, board, rate_hz, follow, join, wake, stop_category, power, on_lost_pulse, joints, servos, poses, tip_speed_mm_s, load, arm, keep_out, supply',
+      'RIG_KEY_UNKNOWN stork.yaml:4:1: colour: "colour" is not a key here; known keys are follower, port, wire, board, rate_hz, follow, tip, join, wake, stop_category, power, on_lost_pulse, joints, servos, poses, tip_speed_mm_s, load, moving_load, arm, keep_out, supply',
     ],
   },
   {
