@@ -1,4 +1,4 @@
-import type { ArmSpec, LinkSpec } from './spec.ts';
+import type { ArmSpec, Vec3 } from './spec.ts';
 
 /**
  * Where every frame of a serial chain is, in the base's level frame: x forward, y left, z up, origin on the floor below
@@ -7,6 +7,8 @@ import type { ArmSpec, LinkSpec } from './spec.ts';
 export interface Chain {
   readonly spec: ArmSpec;
   readonly links: number;
+  /** Index of the profile's joint that turns link i. */
+  readonly joint: Uint8Array;
   /** Start of link i at at[3i..3i+2], metres; the tip is the last entry. Length 3 (links + 1). */
   readonly at: Float64Array;
   /** Orientation of link i, row by row, at turn[9i..9i+8]. */
@@ -21,33 +23,54 @@ export interface Chain {
    * @param point 3 values at point[offset..]
    */
   jacobian(point: Float64Array, offset: number, link: number, out: Float64Array): void;
+  /** out[3k..3k+2] = velocity of at[3k..3k+2], m/s, with the profile's joints turning at these speeds. */
+  velocities(speedsRadS: Float64Array, out: Float64Array): void;
 }
 
+/** A turn about z of the parent's frame mixes its first column with its second; about x and y alike. */
+const MIXED: readonly (readonly [number, number])[] = [
+  [1, 2],
+  [2, 0],
+  [0, 1],
+];
+
+/** @throws RangeError for an axis that is no unit vector: files are normalised when they are compiled */
 export function chain(spec: ArmSpec): Chain {
   const n = spec.links.length;
   const at = new Float64Array(3 * (n + 1));
-  const turn = new Float64Array(9 * n);
+  // The base's orientation stands before the links', so that every link has one before it.
+  const turns = new Float64Array(9 * (n + 1));
+  const turn = turns.subarray(9);
   const axis = new Float64Array(3 * n);
-  const base = baseTurn(spec.base.tiltRad);
+  const joint = Uint8Array.from(spec.links, (link) => link.joint);
+  const to = Float64Array.from(spec.links.flatMap((link) => [...link.toM]));
+  const axes = Float64Array.from(spec.links.flatMap((link) => [...unit(link.axis)]));
+  /** 0, 1, 2: about x, y, z; 3: about none of them. */
+  const about = Uint8Array.from(spec.links, ({ axis: a }) => (a.includes(1) ? a.indexOf(1) : 3));
   const spin = new Float64Array(9);
+  turns.set(baseTurn(spec.base.tiltRad));
   at[2] = spec.base.heightM;
 
   return {
     spec,
     links: n,
+    joint,
     at,
     turn,
     axis,
     pose(anglesRad) {
       for (let i = 0; i < n; i++) {
-        const link = spec.links[i] as LinkSpec;
-        const before = i === 0 ? base : turn;
-        const from = i === 0 ? 0 : 9 * (i - 1);
-        rotation(link.axis, anglesRad, link.joint, spin);
-        multiply(before, from, spin, turn, 9 * i);
+        const angle = anglesRad[joint[i] as number] as number;
+        const before = 9 * i;
+        const kind = about[i] as number;
+        for (let row = 0; row < 3; row++) axis[3 * i + row] = dot(turns, before + 3 * row, axes, 3 * i);
+        if (kind < 3) turnAbout(MIXED[kind] as readonly [number, number], angle, turns, before);
+        else {
+          rotation(axes, 3 * i, angle, spin);
+          multiply(turns, before, spin);
+        }
         for (let row = 0; row < 3; row++) {
-          axis[3 * i + row] = dotRow(before, from + 3 * row, link.axis);
-          at[3 * (i + 1) + row] = (at[3 * i + row] as number) + dotRow(turn, 9 * i + 3 * row, link.toM);
+          at[3 * i + 3 + row] = (at[3 * i + row] as number) + dot(turns, before + 9 + 3 * row, to, 3 * i);
         }
       }
     },
@@ -65,7 +88,35 @@ export function chain(spec: ArmSpec): Chain {
         out[3 * i + 2] = ax * ry - ay * rx;
       }
     },
+    velocities(speedsRadS, out) {
+      let wx = 0;
+      let wy = 0;
+      let wz = 0;
+      out[0] = 0;
+      out[1] = 0;
+      out[2] = 0;
+      for (let k = 0; k < 3 * n; k += 3) {
+        const speed = speedsRadS[joint[k / 3] as number] as number;
+        wx += (axis[k] as number) * speed;
+        wy += (axis[k + 1] as number) * speed;
+        wz += (axis[k + 2] as number) * speed;
+        const rx = (at[k + 3] as number) - (at[k] as number);
+        const ry = (at[k + 4] as number) - (at[k + 1] as number);
+        const rz = (at[k + 5] as number) - (at[k + 2] as number);
+        out[k + 3] = (out[k] as number) + wy * rz - wz * ry;
+        out[k + 4] = (out[k + 1] as number) + wz * rx - wx * rz;
+        out[k + 5] = (out[k + 2] as number) + wx * ry - wy * rx;
+      }
+    },
   };
+}
+
+/** A length this far from one is no rounding. */
+const UNIT_ROUNDING = 1e-9;
+
+function unit(axis: Vec3): Vec3 {
+  if (!(Math.abs(Math.hypot(...axis) - 1) < UNIT_ROUNDING)) throw new RangeError(`axis ${axis} is no unit vector`);
+  return axis;
 }
 
 /** Turn of a base tilted about the level x, then about the level y, row by row. */
@@ -77,13 +128,29 @@ export function baseTurn(tiltRad: readonly [number, number]): Float64Array {
   return Float64Array.of(cy, sy * sx, sy * cx, 0, cx, -sx, -sy, cy * sx, cy * cx);
 }
 
-/** Rodrigues' rotation about a unit axis by angles[j], row by row. */
-function rotation(axis: LinkSpec['axis'], angles: Float64Array, j: number, out: Float64Array): void {
-  const angle = angles[j] as number;
+/** turns[o+9..] = turns[o..] turned about its own axis that is neither of `mixed`. */
+function turnAbout(mixed: readonly [number, number], angle: number, turns: Float64Array, o: number): void {
+  const s = Math.sin(angle);
+  const c = Math.cos(angle);
+  const [p, q] = mixed;
+  const kept = 3 - p - q;
+  for (let row = o; row < o + 9; row += 3) {
+    const a = turns[row + p] as number;
+    const b = turns[row + q] as number;
+    turns[row + 9 + p] = c * a + s * b;
+    turns[row + 9 + q] = c * b - s * a;
+    turns[row + 9 + kept] = turns[row + kept] as number;
+  }
+}
+
+/** Rodrigues' rotation about the unit axis at axes[o..], row by row. */
+function rotation(axes: Float64Array, o: number, angle: number, out: Float64Array): void {
   const s = Math.sin(angle);
   const c = Math.cos(angle);
   const v = 1 - c;
-  const [x, y, z] = axis;
+  const x = axes[o] as number;
+  const y = axes[o + 1] as number;
+  const z = axes[o + 2] as number;
   out[0] = c + x * x * v;
   out[1] = x * y * v - z * s;
   out[2] = x * z * v + y * s;
@@ -95,17 +162,22 @@ function rotation(axis: LinkSpec['axis'], angles: Float64Array, j: number, out: 
   out[8] = c + z * z * v;
 }
 
-/** out[o..] = a[ao..] b, 3 by 3, row by row. */
-function multiply(a: Float64Array, ao: number, b: Float64Array, out: Float64Array, o: number): void {
-  for (let row = 0; row < 9; row += 3) {
-    const x = a[ao + row] as number;
-    const y = a[ao + row + 1] as number;
-    const z = a[ao + row + 2] as number;
+/** turns[o+9..] = turns[o..] spin, 3 by 3, row by row. */
+function multiply(turns: Float64Array, o: number, spin: Float64Array): void {
+  for (let row = o; row < o + 9; row += 3) {
+    const x = turns[row] as number;
+    const y = turns[row + 1] as number;
+    const z = turns[row + 2] as number;
     for (let column = 0; column < 3; column++)
-      out[o + row + column] = x * (b[column] as number) + y * (b[3 + column] as number) + z * (b[6 + column] as number);
+      turns[row + 9 + column] =
+        x * (spin[column] as number) + y * (spin[3 + column] as number) + z * (spin[6 + column] as number);
   }
 }
 
-function dotRow(a: Float64Array, o: number, v: readonly [number, number, number]): number {
-  return (a[o] as number) * v[0] + (a[o + 1] as number) * v[1] + (a[o + 2] as number) * v[2];
+function dot(a: Float64Array, ao: number, b: Float64Array, bo: number): number {
+  return (
+    (a[ao] as number) * (b[bo] as number) +
+    (a[ao + 1] as number) * (b[bo + 1] as number) +
+    (a[ao + 2] as number) * (b[bo + 2] as number)
+  );
 }

@@ -1,22 +1,34 @@
 import type { ArmSpec, LinkSpec, Vec3 } from './spec.ts';
 
-/** Longest distance from the first axis to the tip, metres. */
+/**
+ * Longest distance from the first axis to the tip, metres: all links in line. An arm whose links are offset sideways
+ * falls a little short of it.
+ */
 export function reachM(spec: ArmSpec): number {
   return spec.links.reduce((sum, link) => sum + length(link.toM), 0);
 }
 
 /**
- * For each link, the longest distance from its axis to any link end beyond it, metres, in whatever pose: a turn of
- * that joint by dq moves no link end further than this times dq.
+ * How far each joint can move each link end, in whatever pose: entry i (n + 1) + k is the most metres that end k (the
+ * start of link k; n: the tip) moves for a radian of link i's joint. A joint turns its own link's end about its axis,
+ * and everything beyond at most at full length.
  */
 export function leversM(spec: ArmSpec): Float64Array {
-  const levers = new Float64Array(spec.links.length);
-  let beyond = 0;
-  for (let i = spec.links.length - 1; i >= 0; i--) {
-    beyond += length((spec.links[i] as LinkSpec).toM);
-    levers[i] = beyond;
-  }
+  const n = spec.links.length;
+  const levers = new Float64Array(n * (n + 1));
+  spec.links.forEach((link, i) => {
+    let sum = besideM(link);
+    for (let k = i + 1; k <= n; k++) {
+      levers[i * (n + 1) + k] = sum;
+      if (k < n) sum += length((spec.links[k] as LinkSpec).toM);
+    }
+  });
   return levers;
+}
+
+/** How far a link's end is beside its axis. */
+function besideM({ axis: [ax, ay, az], toM: [x, y, z] }: LinkSpec): number {
+  return Math.hypot(ay * z - az * y, az * x - ax * z, ax * y - ay * x);
 }
 
 export function length(v: Vec3): number {

@@ -1,124 +1,112 @@
+import { clearBy, depthIn, distanceTo, enters, passesBy, staysOut, TOUCHING_M } from './box.ts';
 import type { Chain } from './chain.ts';
 import type { KeepOut } from './spec.ts';
 
 /**
  * Whether an arm stays out of where it must not be. Links are the straight lines between their ends: how thick they are
- * is not known here, so a keep-out is drawn with the links' thickness in mind.
+ * is not known here, so a keep-out is drawn with the links' thickness in mind. Link ends are given as in `Chain.at`.
  */
 export interface KeepOuts {
   readonly some: boolean;
   /**
    * out[0] = distance from the chain's present pose to the nearest keep-out, metres; where a link is inside one, minus
-   * the depth by which all keep-outs would have to shrink to free it.
+   * the depth by which that keep-out would have to shrink to free it.
    */
   clearance(chain: Chain, out: Float64Array): void;
+  /** Says where a motion begins: a link that is inside a keep-out already may leave it, but not go deeper. */
+  begin(at: Float64Array): void;
+  /** True unless every end k could move marginM[k] in any direction without touching anything. */
+  near(at: Float64Array, marginM: Float64Array): boolean;
+  /**
+   * True unless every link surely stays out of what it was not in at `begin`, on its way between two looks.
+   * @param bulgeM how far end k may be beside the straight line between its two places
+   */
+  entered(before: Float64Array, after: Float64Array, bulgeM: Float64Array): boolean;
 }
-
-type Box = Extract<KeepOut, { kind: 'box' }>;
-
-/** Depth is told to this many halvings of `DEEPEST_M`: a quarter of a millimetre. */
-const DEPTH_STEPS = 14;
-const DEEPEST_M = 4;
-/** The nearest place of a link is found to 1/4096 of its length; the distance there is flat, so its error is far smaller. */
-const NEAREST_STEPS = 12;
 
 /** @param places in the base's level frame, metres */
 export function keepOuts(places: readonly KeepOut[]): KeepOuts {
-  const near = new Float64Array(1);
+  const depth = new Float64Array(places.length);
+  const one = new Float64Array(1);
+  let links = 0;
 
-  const inside = (chain: Chain, shrinkM: number): boolean => {
-    for (const place of places) {
-      for (let i = 0; i < chain.links; i++) {
-        if (place.kind === 'below' ? lowest(chain.at, i) < place.zM - shrinkM : enters(chain.at, i, place, shrinkM))
-          return true;
+  const depthAt = (at: Float64Array, place: KeepOut, p: number, fixedToo: boolean): void => {
+    let deepest = 0;
+    if (place.kind === 'below') {
+      // The first axis does not move: a motion cannot be blamed for where it is.
+      for (let k = fixedToo ? 0 : 1; k <= links; k++) deepest = Math.max(deepest, place.zM - (at[3 * k + 2] as number));
+    } else {
+      for (let i = 0; i < links; i++) {
+        depthIn(at, i, place, one, 0);
+        deepest = Math.max(deepest, one[0] as number);
       }
     }
-    return false;
+    depth[p] = deepest > TOUCHING_M ? deepest : 0;
   };
 
-  const depth = (chain: Chain): number => {
-    let low = 0;
-    let high = DEEPEST_M;
-    for (let step = 0; step < DEPTH_STEPS; step++) {
-      const middle = 0.5 * (low + high);
-      if (inside(chain, middle)) low = middle;
-      else high = middle;
+  const distance = (at: Float64Array, place: KeepOut): number => {
+    let nearest = Number.POSITIVE_INFINITY;
+    for (let i = 0; i < links; i++) {
+      if (place.kind === 'box') distanceTo(at, i, place, one);
+      else one[0] = Math.min(at[3 * i + 2] as number, at[3 * i + 5] as number) - place.zM;
+      nearest = Math.min(nearest, one[0] as number);
     }
-    return high;
+    return nearest;
+  };
+
+  const belowEntered = (b: Float64Array, a: Float64Array, zM: number, depthM: number, bulge: Float64Array): boolean => {
+    for (let k = 1; k <= links; k++) {
+      const to = (a[3 * k + 2] as number) - zM;
+      // From inside: no deeper, at every look.
+      if (depthM > 0 ? to < -depthM - TOUCHING_M : !staysOut((b[3 * k + 2] as number) - zM, to, bulge[k] as number))
+        return true;
+    }
+    return false;
   };
 
   return {
     some: places.length > 0,
     clearance(chain, out) {
-      if (inside(chain, 0)) {
-        out[0] = -depth(chain);
-        return;
+      links = chain.links;
+      let least = Number.POSITIVE_INFINITY;
+      for (let p = 0; p < places.length; p++) {
+        const place = places[p] as KeepOut;
+        depthAt(chain.at, place, p, true);
+        least = Math.min(least, (depth[p] as number) > 0 ? -(depth[p] as number) : distance(chain.at, place));
       }
-      let nearest = Number.POSITIVE_INFINITY;
-      for (const place of places) {
-        for (let i = 0; i < chain.links; i++) {
-          if (place.kind === 'below') near[0] = lowest(chain.at, i) - place.zM;
-          else distance(chain.at, i, place, near);
-          nearest = Math.min(nearest, near[0] as number);
+      out[0] = least;
+    },
+    begin(at) {
+      links = at.length / 3 - 1;
+      for (let p = 0; p < places.length; p++) depthAt(at, places[p] as KeepOut, p, false);
+    },
+    near(at, marginM) {
+      for (let p = 0; p < places.length; p++) {
+        const place = places[p] as KeepOut;
+        for (let k = 1; k <= links; k++) {
+          const margin = marginM[k] as number;
+          if (
+            place.kind === 'below' ? (at[3 * k + 2] as number) - margin < place.zM : !clearBy(at, k - 1, place, margin)
+          )
+            return true;
         }
       }
-      out[0] = nearest;
+      return false;
+    },
+    entered(before, after, bulgeM) {
+      for (let p = 0; p < places.length; p++) {
+        const place = places[p] as KeepOut;
+        const deep = depth[p] as number;
+        if (place.kind === 'below') {
+          if (belowEntered(before, after, place.zM, deep, bulgeM)) return true;
+          continue;
+        }
+        for (let i = 0; i < links; i++) {
+          if (deep > 0 ? enters(after, i, place, deep) : !passesBy(before, after, i, place, bulgeM[i + 1] as number))
+            return true;
+        }
+      }
+      return false;
     },
   };
-}
-
-function lowest(at: Float64Array, link: number): number {
-  return Math.min(at[3 * link + 2] as number, at[3 * link + 5] as number);
-}
-
-/** out[0] = distance from a link to a box it is outside of: convex along the link, so its slope is bisected. */
-function distance(at: Float64Array, link: number, box: Box, out: Float64Array): void {
-  let low = 0;
-  let high = 1;
-  for (let step = 0; step < NEAREST_STEPS; step++) {
-    const middle = 0.5 * (low + high);
-    let slope = 0;
-    for (let k = 0; k < 3; k++) {
-      const along = (at[3 * link + 3 + k] as number) - (at[3 * link + k] as number);
-      slope += along * beyond((at[3 * link + k] as number) + middle * along, box, k);
-    }
-    if (slope > 0) high = middle;
-    else low = middle;
-  }
-  const t = 0.5 * (low + high);
-  let square = 0;
-  for (let k = 0; k < 3; k++) {
-    const along = (at[3 * link + 3 + k] as number) - (at[3 * link + k] as number);
-    const gap = beyond((at[3 * link + k] as number) + t * along, box, k);
-    square += gap * gap;
-  }
-  out[0] = Math.sqrt(square);
-}
-
-/** How far a coordinate is past the box's side, with its sign; 0 between the sides. */
-function beyond(value: number, box: Box, k: number): number {
-  const low = box.minM[k] as number;
-  const high = box.maxM[k] as number;
-  return value < low ? value - low : value > high ? value - high : 0;
-}
-
-/** Slab test of a link against the box shrunk on every side. */
-function enters(at: Float64Array, link: number, box: Box, shrinkM: number): boolean {
-  let enter = 0;
-  let leave = 1;
-  for (let k = 0; k < 3; k++) {
-    const from = at[3 * link + k] as number;
-    const along = (at[3 * link + 3 + k] as number) - from;
-    const low = (box.minM[k] as number) + shrinkM - from;
-    const high = (box.maxM[k] as number) - shrinkM - from;
-    if (low >= high) return false;
-    if (along === 0) {
-      if (low >= 0 || high <= 0) return false;
-      continue;
-    }
-    enter = Math.max(enter, Math.min(low / along, high / along));
-    leave = Math.min(leave, Math.max(low / along, high / along));
-    if (enter >= leave) return false;
-  }
-  return true;
 }
