@@ -74,6 +74,7 @@ export function authority(
         return;
       case 'following':
         share.meet(now);
+        common.opened[index] = share.opened[0] as number;
         return;
       case 'holding':
         if (event === 'rested' || event === 'jogged') is.blocks |= BLOCKS.held;

@@ -70,7 +70,7 @@ export function followerStage(
   const share = shares(spec.joinShare);
   const jogging = jog(spec.servos.length);
   const rule = authority(is, index, arm, lead, common, { share, pending, jogging, unasked: start.unasked });
-  const steer = steering(is, arm, lead, common, { share, jogging, raise: rule.raise, cutPower: rule.cutPower });
+  const steer = steering(is, index, arm, lead, common, { share, jogging, raise: rule.raise, cutPower: rule.cutPower });
   const now = common.nowUs;
 
   const emit = (kind: CommandKind): true => {

@@ -1,4 +1,5 @@
 import { leader, type Leader } from '../leader/leader.ts';
+import { ILLS } from '../leader/health.ts';
 import type { ButtonDuty } from '../leader/spec.ts';
 import { ALL, LEADER, type DriveEvent, type Key, type KeyEvent } from './events.ts';
 import type { Plan } from './plan.ts';
@@ -31,6 +32,8 @@ export interface LeaderStage {
   /** When it has to be woken although nothing arrives: the instant contact is lost. */
   dueUs(): number;
 }
+
+const SILENT = ILLS.indexOf('silent');
 
 /** What a press of a button asks of all followers; the others are levels. */
 const KEY_OF: Readonly<Partial<Record<ButtonDuty, Key>>> = { stop: 'stop', join: 'join', mark: 'mark' };
@@ -68,6 +71,16 @@ export function leaderStage(plan: Plan, common: Shared): LeaderStage {
     }
   };
 
+  /** A pose is sound as far as it goes; a joint it has no angle for is not heard. */
+  const adopt = (poseRad: Float64Array): void => {
+    for (let j = 0; j < health.length; j++) {
+      const angle = poseRad[j] as number;
+      const known = Number.isFinite(angle);
+      if (known) kernel.poseRad[j] = angle;
+      health[j] = known ? 0 : SILENT;
+    }
+  };
+
   const noteHealth = (): void => {
     for (let j = 0; j < health.length; j++) {
       if (health[j] === healthBefore[j]) continue;
@@ -95,7 +108,7 @@ export function leaderStage(plan: Plan, common: Shared): LeaderStage {
       self.pressedCount = 0;
       // The virtual leader first moves towards what was known until now.
       if (virtual !== null) {
-        virtual.limit(common.following, common.pace);
+        virtual.limit(common.following, common.opened, common.pace);
         virtual.advance(kernel.poseRad, common.nowUs);
       }
       if (event.kind === 'reading') {
@@ -104,8 +117,7 @@ export function leaderStage(plan: Plan, common: Shared): LeaderStage {
         readButtons(event.tUs);
         noteHealth();
       } else if (event.kind === 'pose') {
-        kernel.poseRad.set(event.poseRad);
-        health.fill(0);
+        adopt(event.poseRad);
         self.lastUs = event.tUs;
         noteHealth();
       } else if (event.kind === 'key' && event.key === 'pace') {
@@ -114,6 +126,7 @@ export function leaderStage(plan: Plan, common: Shared): LeaderStage {
       } else if (event.kind === 'down' && event.follower === LEADER) {
         self.lastUs = Number.NEGATIVE_INFINITY;
       }
+      virtual?.meet(kernel.poseRad);
       const age = event.tUs - self.lastUs;
       self.stale = age > plan.leader.timeoutUs || age === Number.POSITIVE_INFINITY;
     },

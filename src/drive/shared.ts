@@ -8,6 +8,8 @@ export interface Shared {
   readonly inrushFreeUs: Float64Array;
   /** 1 for each follower in state `following`, in rig order: only those count in unison. */
   readonly following: Uint8Array;
+  /** Share of its speed limits that each follower may use while it follows, pace apart. */
+  readonly opened: Float64Array;
   /** The board each follower hangs on, in rig order. */
   readonly boardOf: readonly number[];
   /** 1 for each board that has been given a command in the event being handled. */
@@ -25,6 +27,7 @@ export function shared(startUs: number, boardOf: readonly number[], pace: number
     pace: new Float64Array([pace]),
     inrushFreeUs: new Float64Array([Number.NEGATIVE_INFINITY]),
     following: new Uint8Array(boardOf.length),
+    opened: new Float64Array(boardOf.length),
     boardOf,
     taken: new Uint8Array(boards),
     busy: new Uint8Array(boards),

@@ -5,6 +5,8 @@ import { US_PER_S } from '../clock/clock.ts';
  * catch up, and opening over a second once it has met the leader.
  */
 export interface Shares {
+  /** What a follower that follows may use, pace apart. */
+  readonly opened: Float64Array;
   /** Joining (or parking) begins. */
   begin(nowUs: Float64Array): void;
   /** The leader is met. */
@@ -28,16 +30,19 @@ export function shares(joinShare: number): Shares {
   const began = new Float64Array(1);
   const met = new Float64Array(1);
   const shareAtMeeting = new Float64Array(1);
+  const opened = new Float64Array(1);
   const lateUs = (nowUs: Float64Array): number => (nowUs[0] as number) - (began[0] as number) - PATIENCE_US;
   const risen = (nowUs: Float64Array): number =>
     joinShare + (1 - joinShare) * Math.min(Math.max(lateUs(nowUs) / RISE_US, 0), 1);
   return {
+    opened,
     begin(nowUs) {
       began[0] = nowUs[0] as number;
     },
     meet(nowUs) {
       met[0] = nowUs[0] as number;
       shareAtMeeting[0] = risen(nowUs);
+      opened[0] = shareAtMeeting[0];
     },
     impatient: (nowUs) => lateUs(nowUs) > 0,
     joining(nowUs, pace, share) {
@@ -46,7 +51,8 @@ export function shares(joinShare: number): Shares {
     following(nowUs, pace, share) {
       const from = shareAtMeeting[0] as number;
       const open = Math.min(((nowUs[0] as number) - (met[0] as number)) / OPEN_US, 1);
-      share[0] = (from + (1 - from) * open) * (pace[0] as number);
+      opened[0] = from + (1 - from) * open;
+      share[0] = opened[0] * (pace[0] as number);
     },
     parking(pace, share) {
       share[0] = joinShare * (pace[0] as number);

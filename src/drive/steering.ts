@@ -19,6 +19,7 @@ const WAIT_RAD = (3 * Math.PI) / 180;
 
 export function steering(
   is: Standing,
+  index: number,
   arm: Follower,
   lead: LeaderStage,
   common: Shared,
@@ -73,6 +74,7 @@ export function steering(
         case 'following':
           wish();
           share.following(now, common.pace, shareNow);
+          common.opened[index] = share.opened[0] as number;
           arm.limitSpeed(shareNow, false);
           arm.step(dtS);
           break;
