@@ -49,10 +49,10 @@ export function demoCommand(world: () => World = realWorld): CommandUnknownOpts 
   return new Command('demo')
     .description('drive three simulated arms by a simulated hand: no hardware, nothing real moves')
     .option('--for <time>', 'end after this time (10s, 2min)', durationOption)
-    .option('--json', 'print the status as JSON, ten lines a second', false)
+    .option('--json', 'print the status as JSON, ten lines a second')
     .addOption(logOption())
     .addHelpText('after', EXPLAINED)
-    .action(async ({ for: forUs, ...rest }) => {
-      process.exitCode = await demo({ for: forUs, ...rest }, world());
+    .action(async ({ for: forUs, json, log }) => {
+      process.exitCode = await demo({ for: forUs, json: json === true, log }, world());
     });
 }

@@ -100,6 +100,7 @@ export async function driving(options: DrivingOptions, world: World): Promise<nu
     const port = boards.find((board) => board.followers.includes(status.follower)) ?? null;
     display.changed({ atUs: atUs(), follower: status.follower, from, to, reasons: reasons(status, port) });
   });
+  let afterwards = '';
   const cancelWorld = world.listen({
     signal(name) {
       if (name !== 'SIGINT') over.because('terminated');
@@ -108,7 +109,9 @@ export async function driving(options: DrivingOptions, world: World): Promise<nu
     },
     outClosed: (fault) => over.because(fault.code === 'EPIPE' ? 'terminated' : 'broken'),
     bug(fault) {
-      log.fatal({ err: fault }, `a fault of this program: ${String(fault)}`);
+      // On the screen it would be gone with the screen.
+      if (onScreen) afterwards = `a fault of this program: ${fault instanceof Error ? fault.stack : String(fault)}\n`;
+      else log.fatal({ err: fault }, `a fault of this program: ${String(fault)}`);
       over.because('broken');
     },
   });
@@ -142,7 +145,7 @@ export async function driving(options: DrivingOptions, world: World): Promise<nu
   cancelStates();
   await live.close();
   await display.end(last, why);
-  if (view !== null) err.write(`${rig.name}: ${ENDINGS[why]}\n`);
+  if (view !== null) err.write(`${afterwards}${rig.name}: ${ENDINGS[why]}\n`);
   const holding = live.drive.followers.filter(({ is }) => is.pulsed).map(({ spec }) => spec.name);
   if (real && !dry && holding.length > 0) err.write(`${leftHolding(holding, still)}\n`);
   await Promise.all([out.flush(FLUSH_US), err.flush(FLUSH_US)]);

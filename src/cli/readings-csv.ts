@@ -75,7 +75,6 @@ export function readingsCsv(leader: LeaderSpec, inputs: number): ReadingsCsv {
     header = cells.map(({ text: name }) => columns.get(name) ?? TIME);
     for (const { does, pressed, name, input } of leader.buttons) {
       const isMissing = does === 'enable' && !cells.some((cell) => cell.text === name);
-      if (isMissing) columns.set(name, input);
       reading.counts[input] = isMissing ? (pressed === 'below' ? leader.countsMin : leader.countsMax) : Number.NaN;
     }
   };

@@ -88,18 +88,19 @@ export function runCommand(world: () => World = realWorld): CommandUnknownOpts {
   return new Command('run')
     .description('drive the followers of a rig by its leader (arms move: see the cautions in its help)')
     .argument('<rig>', 'the rig file')
-    .option('--join', 'let the arms start without asking (needed where there is no terminal)', false)
+    .option('--join', 'let the arms start without asking (needed where there is no terminal)')
     .option('--pace <percent>', "share of every speed limit, 1% to 100%, in place of the rig's own", paceOption)
     .option('--only <followers>', 'only these followers; several with commas', namesOption)
     .option('--without <followers>', 'all but these followers; several with commas', namesOption)
-    .option('--dry', 'open the leader only: compute and show everything, send nothing', false)
+    .option('--dry', 'open the leader only: compute and show everything, send nothing')
     .option('--for <time>', 'after this time (500ms, 10s, 2min) park every follower and leave', durationOption)
-    .option('--json', 'print the status as JSON, ten lines a second', false)
+    .option('--json', 'print the status as JSON, ten lines a second')
     .addOption(logOption())
     .option('--log-file <file>', 'write the log there rather than to standard error')
     .addHelpText('after', EXPLAINED)
-    .action(async (file, { pace, only, without, for: forUs, logFile, ...rest }) => {
-      process.exitCode = await run(file, { pace, only, without, for: forUs, logFile, ...rest }, world());
+    .action(async (file, { join, pace, only, without, dry, for: forUs, json, log, logFile }) => {
+      const flags = { join: join === true, dry: dry === true, json: json === true };
+      process.exitCode = await run(file, { ...flags, pace, only, without, for: forUs, log, logFile }, world());
     });
 }
 

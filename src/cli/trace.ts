@@ -72,7 +72,8 @@ export async function* tracing(
     }
   }
   if (csv.mistakes.length === 0) run?.end();
-  yield commands.rows();
+  // Of readings that were refused from the start there is nothing to show, not even a header.
+  if (run !== null || csv.mistakes.length === 0) yield commands.rows();
 }
 
 /** Runs recorded readings through a rig's maps; resolves with the exit status. */

@@ -11,11 +11,13 @@ const STROKE = 100;
 /**
  * Runs made-up readings through a rig's whole way and throws the commands away, before anything is opened. The first
  * readings of a fresh process cost several times as much as later ones, and that must not be while an arm moves.
+ * @returns how many commands were thrown away
  */
-export function warm(rig: CompiledRig): void {
+export function warm(rig: CompiledRig): number {
+  let commands = 0;
   const { leader } = rig.plan;
   const counts = new Float64Array(rig.boards.find(({ leads }) => leads)?.plan.inputs?.channels.length ?? 0);
-  const run = trace(rig, [], 0, () => {});
+  const run = trace(rig, [], 0, () => commands++);
   for (const button of leader.buttons) {
     const isDown = button.does === 'enable';
     counts[button.input] = isDown === (button.pressed === 'below') ? leader.countsMin : leader.countsMax;
@@ -28,4 +30,5 @@ export function warm(rig: CompiledRig): void {
     run.push({ kind: 'reading', tUs: i * INTERVAL_US, counts });
   }
   run.end();
+  return commands;
 }

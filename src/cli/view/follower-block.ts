@@ -169,7 +169,8 @@ function largeJoint(joint: Joint, state: State, nameWidth: number, width: number
   const target = span(wide ? `  ${shapes.target}${degrees(joint.target_deg)}${shapes.degree}` : '', 'moving');
   const limited = limitsOf(joint, state);
   const limits = limited.map((limit) => LIMIT_WORDS[limit]).join(', ');
-  const limitsRoom = 14;
+  // Two limits at once where there is room for them; the bar must not jump as limits come and go.
+  const limitsRoom = width >= 96 ? 26 : 14;
   const used = INDENT + [left, right, angle, target].reduce((sum, { text }) => sum + text.length, 0) + limitsRoom;
   const barWidth = Math.min(Math.max(width - used, BAR_MIN), BAR_MAX);
   const onlyDeadband = limited.every((limit) => limit === 'deadband');
