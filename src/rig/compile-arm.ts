@@ -1,7 +1,7 @@
 import { reachM } from '../arm/extent.ts';
 import type { ArmSpec, BaseSpec, KeepOut, LinkSpec, SpringSpec, Vec3 } from '../arm/spec.ts';
 import type { FollowerJointSpec, TipSpec, WholeArmSpec } from '../follower/spec.ts';
-import { reaching } from './reaching.ts';
+import { reaching } from '../arm/reaching.ts';
 import type { Arm } from './schema/arm.ts';
 import type { FollowerProfile } from './schema/follower.ts';
 import { kilograms, metres, radians } from './units.ts';

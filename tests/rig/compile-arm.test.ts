@@ -1,6 +1,6 @@
 import { describe, expect, it } from 'vitest';
 import { compileWhole } from '../../src/rig/compile-arm.ts';
-import { reaching } from '../../src/rig/reaching.ts';
+import { reaching } from '../../src/arm/reaching.ts';
 import { arm } from '../../src/rig/schema/arm.ts';
 import { compileArm } from '../../src/rig/compile-arm.ts';
 import { follower } from '../../src/rig/schema/follower.ts';

@@ -2,7 +2,7 @@ import { chain } from '../../arm/chain.ts';
 import { keepOuts } from '../../arm/keep-outs.ts';
 import { compileArm, compileKeepOut } from '../compile-arm.ts';
 import type { Path } from '../located.ts';
-import { reaching } from '../reaching.ts';
+import { reaching } from '../../arm/reaching.ts';
 import { lengthMm } from '../reach.ts';
 import type { Vector } from '../reach.ts';
 import type { FollowerProfile } from '../schema/follower.ts';

@@ -1,9 +1,9 @@
-import { chain } from '../arm/chain.ts';
-import { reachM } from '../arm/extent.ts';
-import type { ArmSpec } from '../arm/spec.ts';
+import { chain } from './chain.ts';
+import { reachM } from './extent.ts';
+import type { ArmSpec } from './spec.ts';
 
-/** As much of a follower's joint as bounds where it can be. */
-interface Range {
+/** Lowest and highest angle of a joint. */
+export interface JointRange {
   readonly minRad: number;
   readonly maxRad: number;
 }
@@ -16,7 +16,7 @@ const SPREAD = 0.618_033_988_749_895;
 const NOTHING = 1e-9;
 
 /** Joints, by index, that can move the tip: those with a link, unless their axis runs through the tip in every pose. */
-export function reaching(arm: ArmSpec, joints: readonly Range[]): readonly number[] {
+export function reaching(arm: ArmSpec, joints: readonly JointRange[]): readonly number[] {
   const poser = chain(arm);
   const pose = new Float64Array(joints.length);
   const jacobian = new Float64Array(3 * poser.links);
