@@ -25,6 +25,8 @@ export interface LiveOptions {
   readonly say: (word: Word) => void;
   /** A bug of ours: that follower is given up, the others go on. */
   readonly onBug: (follower: string, bug: unknown) => void;
+  /** Called before the first event, for those who have to see every one; subscribers see each after it was handled. */
+  readonly onStart?: (drive: Drive, events$: Observable<DriveEvent>, clock: Clock) => void;
 }
 
 /** A rig being driven. */
@@ -83,6 +85,7 @@ export function live(options: LiveOptions): Live {
     if (!dry) boards[way.on]?.send(way.output, command);
   };
   const flow = pipeline(source.events$, drive, send, (follower, bug) => options.onBug(follower.spec.name, bug));
+  options.onStart?.(drive, source.events$, clock);
   for (const plan of opened) {
     const listener = { event: source.push, say: options.say };
     boards.push(makeBoard(plan, options.openPort(plan), clock, listener));

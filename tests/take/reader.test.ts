@@ -1,0 +1,157 @@
+import { mkdirSync, readFileSync, writeFileSync } from 'node:fs';
+import { join } from 'node:path';
+import { tableFromIPC as flechetteTable } from '@uwdata/flechette';
+import { tableFromArrays, tableFromIPC, tableToIPC } from 'apache-arrow';
+import fc from 'fast-check';
+import { describe, expect, it } from 'vitest';
+import { isTakeFault } from '../../src/take/fault.ts';
+import { openTake } from '../../src/take/reader.ts';
+import { bytesOf, fileWriter, headerOf, opened, rowsOf, takesFolderForTests, TWO_ARMS } from './studio.ts';
+
+const folder = takesFolderForTests();
+const BATCHES = 8;
+const ROWS = 50;
+
+async function written(name: string): Promise<string> {
+  const writer = fileWriter(folder, name, headerOf(TWO_ARMS));
+  for (let i = 0; i < BATCHES * ROWS; i++) {
+    writer.row.tUs = i * 4_000 + (i >= 200 ? 2 ** 33 : 0);
+    writer.row.event = 0;
+    writer.row.name = i === 170 ? 'überall' : '';
+    writer.row.counts.fill(i);
+    for (const arm of writer.row.followers) {
+      arm.commanded = i % 2;
+      arm.angleRad.fill(i / 3);
+      arm.speedRadS.fill(-i);
+    }
+    writer.append();
+    if (i % ROWS === ROWS - 1) writer.flush();
+  }
+  await writer.end();
+  return join(folder, `${name}.arrows`);
+}
+
+function codeOf(file: string): string {
+  const found = openTake(file);
+  return isTakeFault(found) ? found.code : 'opened';
+}
+
+function fileOf(name: string, bytes: Uint8Array | string): string {
+  const file = join(folder, `${name}.arrows`);
+  writeFileSync(file, bytes);
+  return file;
+}
+
+describe('a take', () => {
+  it('gives back the rows that were written', async () => {
+    const take = opened(await written('whole'));
+    const rows = rowsOf(take);
+    expect(rows).toHaveLength(BATCHES * ROWS);
+    expect(take.lostBytes).toBeNull();
+    expect(take.marks).toEqual([{ name: 'überall', tUs: 680_000 }]);
+    rows.forEach((row, i) => {
+      expect(row.tUs).toBe(i * 4_000 + (i >= 200 ? 2 ** 33 : 0));
+      expect(row.counts).toEqual(Float64Array.of(i, i));
+      expect(row.followers[1]?.angleRad).toEqual(Float64Array.of(i / 3, i / 3));
+      expect(row.followers[0]?.commanded).toBe(i % 2);
+    });
+    take.close();
+  });
+
+  it('is read from any moment on', async () => {
+    const take = opened(await written('from'));
+    const rows = rowsOf(take, 500_000);
+    expect(rows[0]?.tUs).toBeLessThanOrEqual(500_000);
+    expect(rows[0]?.tUs).toBeGreaterThan(500_000 - 2 * ROWS * 4_000);
+    expect(rows.at(-1)?.tUs).toBe(take.durationUs);
+  });
+
+  it('opens, cut at any byte, with all whole batches, and says that its end is missing', async () => {
+    const bytes = bytesOf(await written('to-cut'));
+    const whole = opened(join(folder, 'to-cut.arrows'));
+    fc.assert(
+      fc.property(fc.integer({ min: 0, max: bytes.length - 1 }), (length) => {
+        const file = fileOf('cut', bytes.subarray(0, length));
+        const take = openTake(file);
+        if (isTakeFault(take)) return ['TAKE_EMPTY', 'TAKE_FOREIGN'].includes(take.code);
+        const rows = rowsOf(take);
+        take.close();
+        expect(rows.length % ROWS).toBe(0);
+        expect(rows.length).toBe(take.rows);
+        expect(take.lostBytes).not.toBeNull();
+        // A batch is missing only when the cut went through it.
+        const perBatch = (bytes.length - 8) / BATCHES;
+        expect(rows.length / ROWS).toBeGreaterThanOrEqual(Math.floor(length / perBatch) - 2);
+        return true;
+      }),
+      { numRuns: 60 },
+    );
+    whole.close();
+  });
+
+  it('does not take a cut between batches, or a tail of zeros, for an end', async () => {
+    const bytes = bytesOf(await written('ends'));
+    const between = openTake(fileOf('between', bytes.subarray(0, bytes.length - 8)));
+    expect(isTakeFault(between) ? between : between.lostBytes).toBe(0);
+    const zeros = openTake(fileOf('zeros', Buffer.concat([bytes.subarray(0, bytes.length - 8), Buffer.alloc(4096)])));
+    expect(isTakeFault(zeros) ? zeros : [zeros.lostBytes, zeros.rows]).toEqual([4096, BATCHES * ROWS]);
+  });
+
+  it('survives any damage to its frames without throwing', async () => {
+    const bytes = bytesOf(await written('to-damage'));
+    fc.assert(
+      fc.property(
+        fc.array(fc.tuple(fc.integer({ min: 0, max: bytes.length - 1 }), fc.integer({ min: 0, max: 255 })), {
+          minLength: 1,
+          maxLength: 40,
+        }),
+        (damages) => {
+          const damaged = Uint8Array.from(bytes);
+          for (const [at, value] of damages) damaged[at] = value;
+          const take = openTake(fileOf('damaged', damaged));
+          if (isTakeFault(take)) return;
+          const rows = rowsOf(take);
+          expect(rows.length + take.damagedRows).toBe(take.rows);
+          for (const row of rows) expect(Number.isSafeInteger(row.tUs) && row.event >= 0).toBe(true);
+          take.close();
+        },
+      ),
+      { numRuns: 100 },
+    );
+  });
+
+  it('refuses what is no take, with a code for each', async () => {
+    expect(codeOf(join(folder, 'nowhere.arrows'))).toBe('TAKE_MISSING');
+    expect(codeOf(fileOf('empty', ''))).toBe('TAKE_EMPTY');
+    expect(codeOf(fileOf('text', 'angle,1\n'.repeat(400)))).toBe('TAKE_FOREIGN');
+    expect(codeOf(fileOf('stream', tableToIPC(tableFromArrays({ a: Float64Array.of(1, 2) }), 'stream')))).toBe(
+      'TAKE_FOREIGN',
+    );
+    mkdirSync(join(folder, 'folder.arrows'));
+    expect(codeOf(join(folder, 'folder.arrows'))).toBe('TAKE_FOREIGN');
+    const bytes = readFileSync(await written('future'));
+    const at = bytes.indexOf('eidograph.take_version');
+    const table = tableFromIPC(bytes);
+    table.schema.metadata.set('eidograph.take_version', '2');
+    expect(at).toBeGreaterThan(0);
+    expect(codeOf(fileOf('newer', tableToIPC(table, 'stream')))).toBe('TAKE_NEWER');
+  });
+
+  it('reads the same in two other Arrow readers', async () => {
+    const file = await written('others');
+    const rows = rowsOf(opened(file));
+    const arrow = tableFromIPC(readFileSync(file));
+    const flechette = flechetteTable(readFileSync(file));
+    expect(arrow.numRows).toBe(rows.length);
+    expect(flechette.numRows).toBe(rows.length);
+    for (const row of [0, 170, 399]) {
+      const want = rows[row]?.followers[1]?.angleRad[1];
+      expect(arrow.getChild('stork.elbow.angle_rad')?.get(row)).toBe(want);
+      expect(flechette.getChild('stork.elbow.angle_rad').at(row)).toBe(want);
+      expect(Number(arrow.getChild('t_us')?.get(row))).toBe(rows[row]?.tUs);
+      expect(Number(flechette.getChild('t_us').at(row))).toBe(rows[row]?.tUs);
+      expect(flechette.getChild('name').at(row)).toBe(rows[row]?.name);
+    }
+    expect(flechette.schema.metadata?.get('eidograph.take_version')).toBe('1');
+  });
+});
