@@ -115,7 +115,8 @@ export function chain(spec: ArmSpec): Chain {
 const UNIT_ROUNDING = 1e-9;
 
 function unit(axis: Vec3): Vec3 {
-  if (!(Math.abs(Math.hypot(...axis) - 1) < UNIT_ROUNDING)) throw new RangeError(`axis ${axis} is no unit vector`);
+  if (!(Math.abs(Math.hypot(...axis) - 1) < UNIT_ROUNDING))
+    throw new RangeError(`axis ${axis.join(', ')} is no unit vector`);
   return axis;
 }
 
