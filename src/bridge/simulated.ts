@@ -1,8 +1,11 @@
-import type { Clock } from '../clock/clock.ts';
+import { type Clock, US_PER_S } from '../clock/clock.ts';
 import type { FollowerSpec } from '../follower/spec.ts';
 import type { LeaderSpec } from '../leader/spec.ts';
 import type { CompiledBoard, CompiledRig } from '../rig/compiled.ts';
 import { simulatedBoard, type SimulatedBoard, type SimulatedBoardOptions } from '../sim/board.ts';
+
+/** Time for a troupe to wake, servo by servo, and to join a hand that lies still: nobody starts in mid-motion. */
+const STILL_US = 3 * US_PER_S;
 
 /** A board behind a `sim:` address: a hand with the leader's travel, arms with the followers' servos, hanging at rest. */
 export function simulatedFor(rig: CompiledRig, board: CompiledBoard, clock: Clock): SimulatedBoard {
@@ -21,6 +24,7 @@ function handOf(leader: LeaderSpec): NonNullable<SimulatedBoardOptions['hand']> 
   return {
     countsMin: leader.countsMin,
     countsMax: leader.countsMax,
+    stillUs: STILL_US,
     inputs: [
       ...leader.joints.map((joint) => ({
         kind: 'joint' as const,

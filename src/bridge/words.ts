@@ -186,6 +186,7 @@ export const LIMIT_WORDS: Readonly<Record<keyof typeof LIMITS, string>> = {
   end_speed: 'full end speed',
   keep_out: 'keep-out',
   load: 'full load',
+  reach: 'out of reach',
 };
 
 /** For each ill but `sound`: a word, and what to do. */

@@ -3,7 +3,8 @@ import { governor, type Governor } from './governor.ts';
 import { LIMITS } from './reasons.ts';
 import { remap } from './remap.ts';
 import { servos } from './servos.ts';
-import type { FollowerJointSpec, FollowerSpec } from './spec.ts';
+import type { FollowerJointSpec, FollowerSpec, TipSpec } from './spec.ts';
+import { tipWish } from './tip-wish.ts';
 import { wholeArm } from './whole-arm.ts';
 
 /**
@@ -64,6 +65,8 @@ export interface Follower {
 
 /** A command this far outside its range is a bug of ours, not rounding, radians. */
 const ROUNDING_RAD = 1e-9;
+/** A tip target left this far away is out of reach, metres. */
+const OUT_OF_REACH_M = 0.001;
 /** A joint counts as moving at its limit from this share of it on. */
 const AT_LIMIT = 0.999;
 /** A joint this close to its target hardly needs a share of the speed, radians. */
@@ -75,6 +78,8 @@ export function follower(spec: FollowerSpec): Follower {
   const motion = governor(joints);
   const map = remap(spec);
   const gears = servos(spec.servos);
+  const tip = spec.whole?.tip ? tipWish(spec.whole, spec.whole.tip, joints) : null;
+  const feeds = joints.map((joint, j) => feedsOf(joint, tip?.reaches[j] === 1 ? spec.whole?.tip : null));
   const whole = spec.whole === undefined ? null : wholeArm(spec.whole, motion, null);
   const rest = Float64Array.from(joints, (j) => j.restRad);
   const min = Float64Array.from(joints, (j) => j.minRad);
@@ -100,11 +105,15 @@ export function follower(spec: FollowerSpec): Follower {
 
   /** Writes what holds each joint back, as far as the wish tells, and lets the held ones brake. */
   const noteLimits = (): void => {
+    const tooFar = tip !== null && (tip.leftM[0] as number) > OUT_OF_REACH_M;
     for (let j = 0; j < n; j++) {
       motion.braking[j] = held[j] as number;
       const inDeadband = target[j] !== wantedRad[j] && clipped[j] === 0;
       limits[j] =
-        (clipped[j] === 1 ? LIMITS.range : 0) | (inDeadband ? LIMITS.deadband : 0) | (held[j] === 1 ? LIMITS.sick : 0);
+        (tooFar && tip?.reaches[j] === 1 ? LIMITS.reach : 0) |
+        (clipped[j] === 1 ? LIMITS.range : 0) |
+        (inDeadband ? LIMITS.deadband : 0) |
+        (held[j] === 1 ? LIMITS.sick : 0);
     }
   };
 
@@ -139,6 +148,7 @@ export function follower(spec: FollowerSpec): Follower {
     },
     want(leaderRad, clutched) {
       map.mix(leaderRad, mixed);
+      tip?.reach(leaderRad, mixed);
       for (let j = 0; j < n; j++) {
         if (held[j] === 1) wantedRad[j] = target[j] as number;
         else if (clutched) clutchRad[j] = (wantedRad[j] as number) - (mixed[j] as number);
@@ -152,6 +162,11 @@ export function follower(spec: FollowerSpec): Follower {
     match(leaderRad, leaderRadS) {
       map.mix(leaderRad, mixed);
       map.mixSpeed(leaderRadS, motion.targetSpeed);
+      if (tip !== null) {
+        // How fast the solved joints will move is not known: they follow with the governor's lag.
+        tip.reach(leaderRad, mixed);
+        for (let j = 0; j < n; j++) if (tip.reaches[j] === 1) motion.targetSpeed[j] = 0;
+      }
       for (let j = 0; j < n; j++) {
         const wish = held[j] === 1 ? (target[j] as number) : (mixed[j] as number) + (clutchRad[j] as number);
         wantedRad[j] = wish;
@@ -212,7 +227,7 @@ export function follower(spec: FollowerSpec): Follower {
     hold(health) {
       let freed = false;
       for (let j = 0; j < n; j++) {
-        const sick = (joints[j] as FollowerJointSpec).sources.some((s) => health[s.joint] !== 0);
+        const sick = (feeds[j] as readonly number[]).some((i) => health[i] !== 0);
         if (held[j] === 1 && !sick) freed = true;
         held[j] = sick ? 1 : 0;
       }
@@ -244,4 +259,10 @@ export function follower(spec: FollowerSpec): Follower {
   self.place(rest);
   self.aim();
   return self;
+}
+
+/** The leader joints that a joint depends on: its sources, and for one that reaches for the tip the leader's whole arm. */
+function feedsOf(joint: FollowerJointSpec, tip: TipSpec | null | undefined): readonly number[] {
+  const sources = joint.sources.map((source) => source.joint);
+  return tip ? [...sources, ...tip.leader.links.map((link) => link.joint)] : sources;
 }

@@ -32,4 +32,6 @@ export const LIMITS = {
   keep_out: 32,
   /** A joint would carry more than its motor may. */
   load: 64,
+  /** The leader's tip is where this arm's tip cannot be: it goes to the nearest place. */
+  reach: 128,
 } as const;
