@@ -1,7 +1,9 @@
+import fc from 'fast-check';
 import type { Plan } from '../src/drive/plan.ts';
 import type { FollowerJointSpec, FollowerSpec, ServoSpec } from '../src/follower/spec.ts';
 import type { ButtonSpec, LeaderJointSpec, LeaderSpec } from '../src/leader/spec.ts';
 import { compileMap } from '../src/map/compile.ts';
+import type { PointMap } from '../src/map/points.ts';
 
 /** Plans built by hand, in radians and microseconds, for kernels and drives that never see a rig file. */
 
@@ -10,24 +12,35 @@ export const MS = 1_000;
 export const S = 1_000_000;
 
 /** A pot of 0.3 degrees a count, zero in the middle, whose points leave both rails out. */
-const POT = compileMap(
-  [
-    [112, -120 * DEG],
-    [912, 120 * DEG],
-  ],
-  'straight',
-  'extend',
+const POT = named(
+  'POT',
+  compileMap(
+    [
+      [112, -120 * DEG],
+      [912, 120 * DEG],
+    ],
+    'straight',
+    'extend',
+  ),
 );
 
 /** A servo of 180 degrees over 1880 us. */
-const SERVO = compileMap(
-  [
-    [-90 * DEG, 560],
-    [90 * DEG, 2440],
-  ],
-  'straight',
-  'clamp',
+const SERVO = named(
+  'SERVO',
+  compileMap(
+    [
+      [-90 * DEG, 560],
+      [90 * DEG, 2440],
+    ],
+    'straight',
+    'clamp',
+  ),
 );
+
+/** A map is functions: a counterexample says its name instead of their text. */
+function named(name: string, map: PointMap): PointMap {
+  return Object.assign(map, { [fc.toStringMethod]: () => name });
+}
 
 /** What the pot of a joint made here reads at an angle; not whole, so that a test can ask for exactly that angle. */
 export function countsAt(angleDeg: number): number {

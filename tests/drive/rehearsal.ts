@@ -1,3 +1,4 @@
+import { STAGGER_US } from '../../src/drive/authority.ts';
 import { drive, type Drive } from '../../src/drive/drive.ts';
 import { ALL, type BoardEvent, type DriveEvent, type Key, LEADER } from '../../src/drive/events.ts';
 import type { FollowerStage, Start } from '../../src/drive/follower-stage.ts';
@@ -17,6 +18,19 @@ export interface Told {
   readonly anglesRad: Float64Array;
   readonly pulsesUs: Float64Array;
   readonly pulsing: number;
+  /** It is a servo's first pulse. */
+  readonly waking: boolean;
+  /** The arm does not stand at the end of it. */
+  readonly moving: boolean;
+}
+
+/** One event, copied, with what it left. */
+export interface Happened {
+  readonly event: DriveEvent;
+  /** State of each follower right after it. */
+  readonly states: readonly State[];
+  /** Commands told up to and with it. */
+  readonly told: number;
 }
 
 /** A time for each byte pipe: how long its board is busy with one command; 0 takes everything at once. */
@@ -35,8 +49,8 @@ const TICKS_MAX = 1_000;
 export class Rehearsal {
   readonly drive: Drive;
   readonly told: Told[] = [];
-  /** Every event as delivered, copied. */
-  readonly events: DriveEvent[] = [];
+  /** Every event as delivered, ticks included. */
+  readonly happened: Happened[] = [];
   nowUs = 0;
   /** What the leader's inputs read: joints in degrees turned into counts, buttons as they are. */
   #counts: number[];
@@ -79,6 +93,11 @@ export class Rehearsal {
     return this;
   }
 
+  /** Sets what one of the leader's joints reads from now on, in degrees. */
+  joint(j: number, angleDeg: number): this {
+    return this.input(j, countsAt(angleDeg));
+  }
+
   /** Sets what one input reads from now on. */
   input(index: number, counts: number): this {
     this.#counts[index] = counts;
@@ -111,6 +130,15 @@ export class Rehearsal {
   ready(): this {
     this.board('ready', LEADER);
     for (const board of new Set(this.#boardOf)) this.board('ready', this.#boardOf.indexOf(board));
+    return this;
+  }
+
+  /** The same, but for boards whose arms started awake. */
+  readyUnlessAwake(): this {
+    this.board('ready', LEADER);
+    this.drive.followers.forEach((stage, f) => {
+      if (!stage.is.present) this.board('ready', f);
+    });
     return this;
   }
 
@@ -149,11 +177,15 @@ export class Rehearsal {
 
   #take(event: DriveEvent): void {
     this.nowUs = event.tUs;
-    this.events.push(event.kind === 'reading' ? { ...event, counts: event.counts.slice() } : { ...event });
     const caused: number[] = [];
     take(this.drive, event, (command) => {
       this.#keep(command);
       if (this.#busyUs > 0) caused.push(command.board);
+    });
+    this.happened.push({
+      event: event.kind === 'reading' ? { ...event, counts: event.counts.slice() } : { ...event },
+      states: this.drive.followers.map((f) => f.is.state),
+      told: this.told.length,
     });
     for (const board of caused) {
       this.#freeUs[board] = this.nowUs + this.#busyUs;
@@ -174,6 +206,8 @@ export class Rehearsal {
       anglesRad: arm.governor.x.slice(),
       pulsesUs: arm.frame.pulsesUs.slice(),
       pulsing: arm.frame.pulsing,
+      waking: is.nextPulseUs === this.nowUs + STAGGER_US,
+      moving: is.moving,
     });
   }
 
