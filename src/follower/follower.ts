@@ -65,6 +65,9 @@ export interface Follower {
 
 /** A command this far outside its range is a bug of ours, not rounding, radians. */
 const ROUNDING_RAD = 1e-9;
+const STOPPED_SHORT = LIMITS.keep_out | LIMITS.load;
+/** Slower than this a joint stands, rad/s. */
+const STANDING_RAD_S = 1e-3;
 /** A tip target left this far away is out of reach, metres. */
 const OUT_OF_REACH_M = 0.001;
 /** A joint counts as moving at its limit from this share of it on. */
@@ -243,6 +246,8 @@ export function follower(spec: FollowerSpec): Follower {
       for (let j = 0; j < n; j++) {
         if (held[j] === 1) continue;
         const v = motion.v[j] as number;
+        // Stopped short by a keep-out or a load, it is as near as it will be.
+        if (((limits[j] as number) & STOPPED_SHORT) !== 0 && Math.abs(v) < STANDING_RAD_S) continue;
         const lag = lagging ? (0.5 * v * v) / (motion.accel[j] as number) : 0;
         if (Math.abs((target[j] as number) - (motion.x[j] as number)) > withinRad + lag) return false;
       }
