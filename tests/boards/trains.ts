@@ -22,6 +22,14 @@ export function settledUs(train: readonly Pulse[], nearUs: number): number {
   return last === undefined ? Number.NEGATIVE_INFINITY : last.startUs + last.widthUs;
 }
 
+/** How far a train is at most from a steady motion of `usPerS` through its first pulse, in microseconds of pulse. */
+export function unsteadiness(train: readonly Pulse[], usPerS: number): number {
+  const [first] = train;
+  if (first === undefined) return Number.NaN;
+  const off = train.map(({ startUs, widthUs }) => widthUs - first.widthUs - (usPerS * (startUs - first.startUs)) / 1e6);
+  return Math.max(...off.map(Math.abs));
+}
+
 /**
  * Takes out what one late interrupt does to one pulse (some microseconds, now and then): a median of three, which
  * leaves a rising or falling train as it is.
@@ -43,8 +51,8 @@ export interface PulseLimits {
   readonly commandUs: number;
 }
 
-/** A calm pulse is its command rounded to whole microseconds, within this. */
-const PULSE_ERROR_US = 1.5;
+/** A calm pulse is its command, rounded to whole microseconds, within this. */
+export const PULSE_ERROR_US = 1.5;
 
 /**
  * The highest speed and acceleration of a train, from differences over windows of `frames` frames, each as a share of the

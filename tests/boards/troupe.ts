@@ -44,13 +44,18 @@ export const voltsOf = (counts: number): number => ((counts + 0.5) * VREF) / ADC
 const RIG_FILE = 'rig.yaml';
 const LOOK_US = 5_000;
 
-/** @param rig the text of a rig file with its profiles inline, or a reader and the rig's name in it */
+/** Texts of files by name; the rig is `rig.yaml`. */
+export type RigFiles = Readonly<Record<string, string>>;
+
+/** @param rig the rig's text with its profiles inline, or the texts of several files, or a rig file on the disk */
 export function troupe(
-  rig: string | { readonly file: string; readonly readFile: ReadFile },
+  rig: string | RigFiles | { readonly onDisk: string },
   options: { readonly memory?: WakeMemory } = {},
 ): Troupe {
-  const { file, readFile } = typeof rig === 'string' ? inMemory(rig) : rig;
-  const loaded = loadRig(file, readFile);
+  const loaded =
+    typeof rig === 'object' && 'onDisk' in rig
+      ? loadRig(rig['onDisk'] as string)
+      : loadRig(RIG_FILE, inMemory(typeof rig === 'string' ? { [RIG_FILE]: rig } : rig));
   if ('mistakes' in loaded) throw new Error(JSON.stringify(loaded.mistakes, null, 1));
   const clock = virtualClock();
   const wired = new Map<string, WiredBoard>();
@@ -108,10 +113,9 @@ export function troupe(
   };
 }
 
-function inMemory(text: string): { readonly file: string; readonly readFile: ReadFile } {
-  return {
-    file: RIG_FILE,
-    readFile: (file) =>
-      file.endsWith(RIG_FILE) ? { text } : { fault: 'missing', detail: 'only the rig itself is in memory' },
+const inMemory =
+  (files: RigFiles): ReadFile =>
+  (file) => {
+    const text = files[file];
+    return text === undefined ? { fault: 'missing', detail: 'it is not among the test’s files' } : { text };
   };
-}
