@@ -27,9 +27,9 @@ export interface Replaced {
 /**
  * Puts a new text in a file's place, whole or not at all: written beside it, brought to the disk, then renamed over it.
  * @param was the text that `text` was made from: if another hand has saved the file meanwhile, it is left alone
- * @param keep the old text stays in a file of the same name with `.old` after it
+ * @param keep the old text stays in a file of the same name with `.old` after it, or with these words instead of `old`
  */
-export function replaceFile(file: string, was: string, text: string, keep: boolean): Replaced | ReplaceFault {
+export function replaceFile(file: string, was: string, text: string, keep: boolean | string): Replaced | ReplaceFault {
   let beside: string | null = null;
   try {
     // A link stays one: what it leads to is replaced.
@@ -37,7 +37,7 @@ export function replaceFile(file: string, was: string, text: string, keep: boole
     if (readFileSync(target, 'utf8') !== was) {
       return { wrong: `${file} has been changed meanwhile`, right: 'look at it, and try again' };
     }
-    const kept = keep ? `${target}.old` : null;
+    const kept = keep === false ? null : `${target}.${keep === true ? 'old' : keep}`;
     if (kept !== null) copyFileSync(target, kept);
     beside = join(dirname(target), `.${basename(target)}.${process.pid}.new`);
     writeWhole(beside, text, statSync(target).mode);

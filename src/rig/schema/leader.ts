@@ -1,6 +1,7 @@
 import { z } from 'zod';
 import { arm } from './arm.ts';
 import { connection } from './connection.ts';
+import { fitted } from './fitted.ts';
 import { channel, counts, leaderPoints, nameOf } from './quantities.ts';
 
 const smooth = z
@@ -46,6 +47,7 @@ const joint = z.strictObject({
     .describe('the noise of the pot as it stands still, root mean square, in counts; absent: not measured')
     .optional(),
   smooth: smooth.optional(),
+  fitted: fitted.optional(),
 });
 
 const button = z.strictObject({
