@@ -1,6 +1,7 @@
 import { z } from 'zod';
 import { arm, keepOut, supply } from './arm.ts';
 import { connection } from './connection.ts';
+import { fitted } from './fitted.ts';
 import {
   channel,
   degrees,
@@ -24,6 +25,7 @@ const servoKeys = {
     .max(1000)
     .default(0)
     .describe('the change of pulse that the servo does not answer, in microseconds, from its data sheet'),
+  fitted: fitted.optional(),
 };
 
 const joint = z.strictObject({
@@ -47,6 +49,7 @@ const joint = z.strictObject({
   accel_deg_s2: degreesPerSecondSquared().describe('its highest acceleration, in degrees per second squared, above 0'),
   rest_deg: degrees().default(0).describe('the angle it is parked at, in degrees'),
   servo: z.strictObject(servoKeys).describe('the servo that turns it alone').optional(),
+  fitted: fitted.optional(),
 });
 
 const coupledServo = z.strictObject({
@@ -54,6 +57,7 @@ const coupledServo = z.strictObject({
   turns: weights('the joints whose weighted sum is this servo’s angle, such as { shoulder: 1, elbow: 1 }'),
   points: servoKeys.points,
   deadband_us: servoKeys.deadband_us,
+  fitted: servoKeys.fitted,
 });
 
 const tip = z
