@@ -63,14 +63,14 @@ export function chain(spec: ArmSpec): Chain {
         const angle = anglesRad[joint[i] as number] as number;
         const before = 9 * i;
         const kind = about[i] as number;
-        for (let row = 0; row < 3; row++) axis[3 * i + row] = dot(turns, before + 3 * row, axes, 3 * i);
+        for (let row = 0; row < 3; row++) axis[3 * i + row] = rowTimes(turns, before + 3 * row, axes, 3 * i);
         if (kind < 3) turnAbout(MIXED[kind] as readonly [number, number], angle, turns, before);
         else {
           rotation(axes, 3 * i, angle, spin);
           multiply(turns, before, spin);
         }
         for (let row = 0; row < 3; row++) {
-          at[3 * i + 3 + row] = (at[3 * i + row] as number) + dot(turns, before + 9 + 3 * row, to, 3 * i);
+          at[3 * i + 3 + row] = (at[3 * i + row] as number) + rowTimes(turns, before + 9 + 3 * row, to, 3 * i);
         }
       }
     },
@@ -175,10 +175,11 @@ function multiply(turns: Float64Array, o: number, spin: Float64Array): void {
   }
 }
 
-function dot(a: Float64Array, ao: number, b: Float64Array, bo: number): number {
+/** A row of three values times a vector of three, each from its offset on. */
+export function rowTimes(rows: Float64Array, row: number, v: Float64Array, o: number): number {
   return (
-    (a[ao] as number) * (b[bo] as number) +
-    (a[ao + 1] as number) * (b[bo + 1] as number) +
-    (a[ao + 2] as number) * (b[bo + 2] as number)
+    (rows[row] as number) * (v[o] as number) +
+    (rows[row + 1] as number) * (v[o + 1] as number) +
+    (rows[row + 2] as number) * (v[o + 2] as number)
   );
 }

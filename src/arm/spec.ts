@@ -4,7 +4,7 @@
  */
 export interface ArmSpec {
   readonly base: BaseSpec;
-  /** One a joint of the profile, base first. */
+  /** Base first. A joint of the profile that has no link (a grip) moves nothing here. */
   readonly links: readonly LinkSpec[];
   readonly payload: MassSpec | null;
 }
@@ -45,9 +45,13 @@ export interface MassSpec {
   readonly atM: Vec3;
 }
 
-/** A coil spring from a point on the link before (the base, for the first) to a point on this link. */
+/**
+ * A coil spring from a point on the link before to a point on this link. For the first link the former is the base,
+ * tilted with it, its origin at the first axis. It pulls, and hangs slack when it is shorter than its free length.
+ */
 export interface SpringSpec {
   readonly nPerM: number;
+  /** 0 where a cord over a pulley takes up the spring's own length. */
   readonly freeM: number;
   /** In the frame of the link before. */
   readonly fromM: Vec3;
@@ -57,7 +61,7 @@ export interface SpringSpec {
 
 export interface MotorSpec {
   readonly stallNm: number;
-  /** Share of the stall torque that may be used moving, and held. */
+  /** Shares of the stall torque that may be used: moving, and held. */
   readonly use: number;
   readonly holdUse: number;
   readonly stallA: number | null;

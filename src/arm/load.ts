@@ -1,0 +1,86 @@
+import { bodies, GRAVITY_MS2 } from './bodies.ts';
+import { chain as makeChain, rowTimes } from './chain.ts';
+import { passive } from './passive.ts';
+import type { ArmSpec, LinkSpec } from './spec.ts';
+
+/**
+ * Static load of an arm: the torque about each joint's axis, right-handed, that its motor must supply to hold a pose
+ * still against the weight of everything beyond it, its spring and its cable. Drag helps a motor to hold, by an amount
+ * nobody knows; so it counts only while moving.
+ */
+export interface Loads {
+  /**
+   * out[j] = torque of joint j at a pose, newton metres; 0 for a joint without a link.
+   * @param anglesRad one a joint of the profile
+   */
+  torqueNm(anglesRad: Float64Array, out: Float64Array): void;
+  /**
+   * out[j] = share of what joint j's motor may give: |torque| against its stall torque times `holdUse`, or, moving,
+   * |torque| + drag against stall torque times `use`. Above 1 is over; NaN where the file knows no motor.
+   */
+  shares(anglesRad: Float64Array, holding: boolean, out: Float64Array): void;
+  /** out[j] = the greater of both shares: an arm must be able to go on, and to stop anywhere. */
+  worst(anglesRad: Float64Array, out: Float64Array): void;
+}
+
+/** @param joints how many the profile has */
+export function loads(spec: ArmSpec, joints: number): Loads {
+  const chain = makeChain(spec);
+  const { links, joint, at, turn, axis } = chain;
+  const { massKg, momentKgM } = bodies(spec);
+  const pulls = passive(spec);
+  const torque = new Float64Array(links);
+  const byJoint = new Float64Array(joints);
+  const held = new Float64Array(joints);
+  const limitOf = (share: (motor: NonNullable<LinkSpec['motor']>) => number): Float64Array =>
+    Float64Array.from(spec.links, ({ motor }) => (motor === null ? Number.NaN : motor.stallNm * share(motor)));
+  const holdNm = limitOf(({ holdUse }) => holdUse);
+  const moveNm = limitOf(({ use }) => use);
+  const dragNm = Float64Array.from(spec.links, (link) => link.dragNm);
+
+  const hold = (anglesRad: Float64Array): void => {
+    chain.pose(anglesRad);
+    let mass = 0;
+    let x = 0;
+    let y = 0;
+    for (let i = links - 1; i >= 0; i--) {
+      const m = massKg[i] as number;
+      mass += m;
+      x += m * (at[3 * i] as number) + rowTimes(turn, 9 * i, momentKgM, 3 * i);
+      y += m * (at[3 * i + 1] as number) + rowTimes(turn, 9 * i + 3, momentKgM, 3 * i);
+      const rx = x - mass * (at[3 * i] as number);
+      const ry = y - mass * (at[3 * i + 1] as number);
+      // Weight turns the joint by a . (r x (0, 0, -g)) = g (ay rx - ax ry); holding takes the opposite.
+      torque[i] = GRAVITY_MS2 * ((axis[3 * i] as number) * ry - (axis[3 * i + 1] as number) * rx);
+    }
+    pulls.addHeld(anglesRad, torque);
+  };
+
+  const sharesOf = (holding: boolean, out: Float64Array): void => {
+    out.fill(Number.NaN);
+    for (let i = 0; i < links; i++) {
+      const size = Math.abs(torque[i] as number);
+      out[joint[i] as number] = holding
+        ? size / (holdNm[i] as number)
+        : (size + (dragNm[i] as number)) / (moveNm[i] as number);
+    }
+  };
+
+  return {
+    torqueNm(anglesRad, out) {
+      hold(anglesRad);
+      out.fill(0);
+      for (let i = 0; i < links; i++) out[joint[i] as number] = torque[i] as number;
+    },
+    shares(anglesRad, holding, out) {
+      hold(anglesRad);
+      sharesOf(holding, out);
+    },
+    worst(anglesRad, out) {
+      hold(anglesRad);
+      sharesOf(true, held);
+      sharesOf(false, byJoint);
+      for (let j = 0; j < joints; j++) out[j] = Math.max(held[j] as number, byJoint[j] as number);
+    },
+  };
+}
