@@ -53,8 +53,8 @@ function millimetres(metres: number): string {
   return String(Number((1000 * metres).toPrecision(6)));
 }
 
-/** A bar of a round length, in the lower right corner. */
-export function scaleBar({ x, y, width, height }: Frame, perM: number): string {
+/** A bar of a round length, in the upper right corner. */
+export function scaleBar({ x, y, width }: Frame, perM: number): string {
   const lengthM = roundLength((0.35 * width) / perM);
   const length = lengthM * perM;
   const left = x + width - length - 8;

@@ -151,6 +151,10 @@ export const MISTAKE_CODES = {
     means: 'a rest or named pose with a link inside a keep-out',
     remedy: 'move the pose or the keep-out',
   },
+  RIG_REST_OVERLOAD: {
+    means: 'a rest pose that is over its load, with load: limit',
+    remedy: 'rest lower, balance the arm (eidograph balance), or give it a stronger motor',
+  },
   RIG_TIP_STILL: {
     means: 'follow: tip of an arm whose tip no joint moves',
     remedy: 'give links to the joints that reach, or use follow: joints',

@@ -37,7 +37,8 @@ describe('the outline of marked cells', () => {
       .filter(([x, y]) => x !== 4 || y !== 4);
     const rings = outline(frame);
     expect(rings).toHaveLength(2);
-    expect(rings.map((ring) => Math.sign(area(ring))).sort()).toEqual([-1, 1]);
+    const [one = 0, other = 0] = rings.map(area);
+    expect(one * other).toBeLessThan(0);
   });
 
   it('keeps cells apart that touch at a corner only, however they touch', () => {

@@ -40,8 +40,9 @@ function elements(xml: string): readonly { name: string; attributes: Map<string,
   )) {
     expect(rest.startsWith(whole)).toBe(true);
     rest = rest.slice(whole.length);
-    if (close === '/') expect(open.pop()).toBe(name);
-    else {
+    if (close === '/') {
+      if (open.pop() !== name) throw new Error(`</${name}> closes nothing`);
+    } else {
       if (alone !== '/') open.push(name);
       const pairs = [...attributes.matchAll(/([\w:-]+)="([^"]*)"/g)].map(
         ([, key, value]) => [String(key), String(value)] as const,

@@ -1,8 +1,10 @@
 import { chain } from '../../arm/chain.ts';
 import { keepOuts } from '../../arm/keep-outs.ts';
+import { loads } from '../../arm/load.ts';
+import { reaching } from '../../arm/reaching.ts';
+import type { ArmSpec } from '../../arm/spec.ts';
 import { compileArm, compileKeepOut } from '../compile-arm.ts';
 import type { Path } from '../located.ts';
-import { reaching } from '../../arm/reaching.ts';
 import { lengthMm } from '../reach.ts';
 import type { Vector } from '../reach.ts';
 import type { FollowerProfile } from '../schema/follower.ts';
@@ -73,6 +75,7 @@ export function poseRules(follower: FollowerProfile, note: Note): void {
     const right = 'give links to the joints that reach, or use follow: joints';
     note('RIG_TIP_STILL', ['follow'], 'follow: tip, and no joint of this arm moves its tip', right);
   }
+  overloadRule(follower, arm, note);
   const poser = chain(arm);
   const places = keepOuts(follower.keep_out.map(compileKeepOut));
   const clear = new Float64Array(1);
@@ -84,6 +87,27 @@ export function poseRules(follower: FollowerProfile, note: Note): void {
     if (deepMm <= 0) continue;
     const wrong = `${name} is inside a keep-out, by ${Math.max(1, Math.round(deepMm))} mm`;
     note('RIG_POSE_KEPT_OUT', path, wrong, 'move the pose or the keep-out; both are in the base’s level frame');
+  }
+}
+
+/** An arm that refuses loads could never leave, nor reach, a rest pose that is over its own. */
+function overloadRule({ load, joints }: FollowerProfile, arm: ArmSpec, note: Note): void {
+  if (load !== 'limit') return;
+  const shares = new Float64Array(joints.length);
+  loads(arm, joints.length).worst(
+    Float64Array.from(joints, ({ rest_deg }) => radians(rest_deg)),
+    shares,
+  );
+  for (const [i, { name }] of joints.entries()) {
+    const percent = Math.round(100 * (shares[i] ?? Number.NaN));
+    if (!(percent > 100)) continue;
+    const wrong = `the rest pose loads ${name} to ${percent} % of what its motor may give, and load: limit allows 100`;
+    note(
+      'RIG_REST_OVERLOAD',
+      ['joints', i, 'rest_deg'],
+      wrong,
+      'rest lower, balance the arm, or give it a stronger motor',
+    );
   }
 }
 

@@ -49,6 +49,22 @@ export const WHOLE_ARM_CASES: readonly MistakeCase[] = [
     ],
   },
   {
+    title: 'a rest pose over its load',
+    // Shoulder at -20 degrees: 1 kg, 150 mm up the link, leans 150 sin 20 = 51.3 mm back: 9.80665 * 0.0513 = 0.5031 Nm,
+    // 167.7 % of 0.3 * 1 Nm held. (With no drag, moving it is 100.6 % of 0.5 Nm.)
+    stork: [
+      [
+        'poses:',
+        'arm: { links: [{ joint: shoulder, axis: y, to_mm: [0, 0, 300], mass_g: 1000, motor: { stall_nm: 1 } }] }\nposes:',
+      ],
+      asked('load: limit'),
+    ],
+    says: [
+      notEnforced(4, 7, 'load', 'load: limit'),
+      'RIG_REST_OVERLOAD stork.yaml:13:15: joints[0].rest_deg: the rest pose loads shoulder to 168 % of what its motor may give, and load: limit allows 100; rest lower, balance the arm, or give it a stronger motor',
+    ],
+  },
+  {
     title: 'follow: tip of a leader whose geometry is not known',
     stork: [armed, asked('follow: tip')],
     says: [
