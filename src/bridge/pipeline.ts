@@ -40,7 +40,14 @@ function conditioned(leader: LeaderStage): OperatorFunction<DriveEvent, DriveEve
     new Observable((out) =>
       events$.subscribe({
         next(event) {
-          leader.take(event);
+          try {
+            leader.take(event);
+          } catch (bug) {
+            // Nobody can follow a leader that failed; unguarded, it would end the program on a later turn instead.
+            leader.giveUp();
+            out.error(bug);
+            return;
+          }
           for (let k = 0; k < leader.pressedCount; k++) out.next(leader.pressed[k] as DriveEvent);
           out.next(event);
         },

@@ -30,12 +30,13 @@ const TICKS_AT_ONCE_MAX = 10_000;
  * @param clock wakes the drive at its due instants; null: only `push` and `runTo` move it, as in `trace`
  * @param startUs nothing is delivered earlier
  */
-export function eventSource(drive: Drive, clock: Clock | null, startUs: number): EventSource {
+export function eventSource(drive: Pick<Drive, 'dueUs'>, clock: Clock | null, startUs: number): EventSource {
   const subject = new Subject<DriveEvent>();
   const caused: Stamped[] = [];
   const tick: { -readonly [K in keyof TickEvent]: TickEvent[K] } = { kind: 'tick', tUs: startUs };
   const last = { us: startUs, alarmUs: Number.POSITIVE_INFINITY };
   let delivering = false;
+  let closed = false;
   let cancel: Cancel | null = null;
 
   const deliver = (event: Stamped): void => {
@@ -67,19 +68,21 @@ export function eventSource(drive: Drive, clock: Clock | null, startUs: number):
     const dueUs = drive.dueUs();
     if (dueUs === last.alarmUs) return;
     cancel?.();
-    cancel = dueUs === Number.POSITIVE_INFINITY ? null : clock.at(dueUs, alarm);
+    // A microsecond later than it is due: what arrives at that very instant comes before its tick, timers or not.
+    cancel = dueUs === Number.POSITIVE_INFINITY ? null : clock.at(dueUs + 1, alarm);
     last.alarmUs = dueUs;
   };
 
   const alarm = (): void => {
     last.alarmUs = Number.POSITIVE_INFINITY;
-    tickBefore((clock as Clock).nowUs() + 1);
+    tickBefore((clock as Clock).nowUs());
     setAlarm();
   };
 
   return {
     events$: subject.asObservable(),
     push(event) {
+      if (closed) return;
       if (delivering) {
         caused.push(event);
         return;
@@ -90,10 +93,13 @@ export function eventSource(drive: Drive, clock: Clock | null, startUs: number):
       setAlarm();
     },
     runTo(untilUs) {
+      if (closed) return;
       tickBefore(untilUs + 1);
       setAlarm();
     },
     close() {
+      // Ports still have words to say while they close, and nobody answers the drive's ticks any more.
+      closed = true;
       cancel?.();
       subject.complete();
     },

@@ -31,6 +31,8 @@ export interface LeaderStage {
   take(event: DriveEvent): void;
   /** When it has to be woken although nothing arrives: the instant contact is lost. */
   dueUs(): number;
+  /** A bug of ours was caught: no reading is worth anything any more. */
+  giveUp(): void;
 }
 
 const SILENT = ILLS.indexOf('silent');
@@ -133,6 +135,10 @@ export function leaderStage(plan: Plan, common: Shared): LeaderStage {
     dueUs() {
       // One microsecond past the timeout is the first integer instant at which the reading is too old.
       return self.stale ? Number.POSITIVE_INFINITY : self.lastUs + plan.leader.timeoutUs + 1;
+    },
+    giveUp() {
+      self.lastUs = Number.NEGATIVE_INFINITY;
+      self.stale = true;
     },
   };
   return self;

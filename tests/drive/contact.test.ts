@@ -35,7 +35,7 @@ describe('readings that stop', () => {
     const on = swinging();
     on.run(240 * MS);
     expect(on.state()).toBe('following');
-    on.run(1);
+    on.run(2);
     expect(on.state()).toBe('holding');
   });
 

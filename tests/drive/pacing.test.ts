@@ -51,7 +51,7 @@ describe('pacing', () => {
     expect(times(on, fromUs)).toEqual([0, 18]);
     on.run(17.9 * MS)
       .reads()
-      .run(2.1 * MS);
+      .run(2.2 * MS);
     expect(times(on, fromUs)).toEqual([0, 18, 38]);
   });
 

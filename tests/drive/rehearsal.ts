@@ -27,6 +27,8 @@ export interface Told {
 /** One event, copied, with what it left. */
 export interface Happened {
   readonly event: DriveEvent;
+  /** A command brought it about: it is no event from outside. */
+  readonly caused: boolean;
   /** State of each follower right after it. */
   readonly states: readonly State[];
   /** Commands told up to and with it. */
@@ -80,9 +82,10 @@ export class Rehearsal {
     return this;
   }
 
+  /** Lets time pass. What is due at the end of it waits for the event that may come at that instant. */
   run(forUs: number): this {
     const untilUs = this.nowUs + forUs;
-    this.#tickBefore(untilUs + 1);
+    this.#tickBefore(untilUs);
     this.nowUs = untilUs;
     return this;
   }
@@ -175,7 +178,7 @@ export class Rehearsal {
     return this.told.filter((told) => told.follower === follower && told.tUs >= fromUs);
   }
 
-  #take(event: DriveEvent): void {
+  #take(event: DriveEvent, isCaused = false): void {
     this.nowUs = event.tUs;
     const caused: number[] = [];
     take(this.drive, event, (command) => {
@@ -184,6 +187,7 @@ export class Rehearsal {
     });
     this.happened.push({
       event: event.kind === 'reading' ? { ...event, counts: event.counts.slice() } : { ...event },
+      caused: isCaused,
       states: this.drive.followers.map((f) => f.is.state),
       told: this.told.length,
     });
@@ -194,7 +198,7 @@ export class Rehearsal {
   }
 
   #boardSays(kind: 'blocked' | 'free', board: number): void {
-    this.#take({ kind, tUs: this.nowUs, follower: this.#boardOf.indexOf(board), kept: false });
+    this.#take({ kind, tUs: this.nowUs, follower: this.#boardOf.indexOf(board), kept: false }, kind === 'blocked');
   }
 
   #keep({ index, kind, is, arm }: FollowerStage): void {
