@@ -70,13 +70,22 @@ export const LEADER_POINTS = [
   [3_700, 120 * RAD],
 ] as const;
 
-/** Radians and microseconds. */
+/** Radians and microseconds: an end to end measured servo, and one measured in the middle too. */
 export const SERVO_POINTS = [
   [-90 * RAD, 560],
   [90 * RAD, 2_440],
 ] as const;
+const MIDDLE_TOO = [SERVO_POINTS[0], [0, 1_520], SERVO_POINTS[1]] as const;
 
-/** No two arms are alike: gains, offsets and limits differ a little, so that no branch goes the same way in all. */
+/** Points of the servo on channel `k`, every arm's alike. */
+export function servoPoints(k: number): readonly (readonly [number, number])[] {
+  return k % 2 === 0 ? SERVO_POINTS : MIDDLE_TOO;
+}
+
+/**
+ * No two arms are alike: gains, offsets and limits differ a little, so that no branch goes the same way in all. One joint
+ * copies two of the leader's, and one servo turns with two joints.
+ */
 function follower(f: number): FollowerSpec {
   return {
     name: `f${f}`,
@@ -90,7 +99,7 @@ function follower(f: number): FollowerSpec {
     poses: new Map(),
     joints: INPUT_NAMES.map((name, j) => ({
       name,
-      sources: [{ joint: j, weight: 1 }],
+      sources: [{ joint: j, weight: 1 }, ...(j === 5 ? [{ joint: 4, weight: -0.25 }] : [])],
       gain: ((f + j) % 2 === 0 ? 1 : -1) * (0.6 + 0.03 * ((3 * f + j) % 11)),
       offsetRad: ((f % 5) - 2) * RAD,
       // Some joints are asked past their range, as happens with every hand.
@@ -103,8 +112,8 @@ function follower(f: number): FollowerSpec {
     })),
     servos: INPUT_NAMES.map((_, j) => ({
       channel: j,
-      turns: [{ joint: j, weight: 1 }],
-      map: compileMap(SERVO_POINTS, 'straight', 'clamp'),
+      turns: [{ joint: j, weight: 1 }, ...(j === 3 ? [{ joint: 2, weight: 0.2 }] : [])],
+      map: compileMap(servoPoints(j), 'straight', 'clamp'),
       deadbandUs: 4,
     })),
   };

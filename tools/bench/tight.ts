@@ -9,9 +9,10 @@ import type { Way } from './way.ts';
 const CRC_BYTES = 2;
 
 /**
- * (b) The yardstick: the same sums by hand over flat typed arrays, no streams, no objects, nothing but what this scene
- * needs (whole readings, one source a joint, straight maps, ports that never vanish). Its commands equal (a)'s byte
- * for byte.
+ * (b) The yardstick: the same sums by hand over flat typed arrays, no streams, no objects. As general as the program
+ * where that costs sums (weighted sources and turns, moving targets, maps through any points, every reason that is
+ * shown), and no more than this scene needs elsewhere (whole readings, no keys, ports that never vanish). Its commands
+ * equal (a)'s byte for byte.
  */
 export function tight(scene: Scene): Way {
   const lead = tightLeader(scene.plan.leader);
