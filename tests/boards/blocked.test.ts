@@ -45,7 +45,6 @@ const SPEED_US_S = 60 * US_PER_DEG;
 const LIMITS = { speed: SPEED_US_S, accel: 240 * US_PER_DEG, commandUs: 22_000 };
 /** v^2 / 2A = 60^2 / 480 = 7.5 degrees. */
 const BRAKING_US = 7.5 * US_PER_DEG;
-const COMMAND_US = 20_000;
 const FRAME_US = 20_000;
 const PER_FRAME_US = (SPEED_US_S * FRAME_US) / 1e6;
 /** Three bytes at 173.6 us, and the firmware's own loop. */

@@ -22,8 +22,10 @@ export type Volts = (atUs: number) => number;
 
 export interface ChipWiring {
   readonly flash: Uint16Array;
-  /** The instant of its reset; every other instant counts from it at exactly sixteen cycles a microsecond. */
+  /** The instant of its reset; every other instant counts from it. */
   readonly startUs: number;
+  /** How fast its clock runs: 1 is exactly sixteen cycles a microsecond. */
+  readonly pace: number;
   /** Of analog inputs A0 to A5; read anew at each conversion. */
   readonly volts: readonly Volts[];
   /** A byte has been given to the USART; its stop bit ends at `endsUs`, which is yet to come. */
@@ -62,8 +64,9 @@ const PORTS = [
 
 export function bootedChip(wiring: ChipWiring): Chip {
   const cpu = new CPU(wiring.flash, SRAM_BYTES);
-  const usOf = (cycles: number): number => wiring.startUs + cycles / CYCLES_PER_US;
-  const cyclesOf = (us: number): number => Math.round((us - wiring.startUs) * CYCLES_PER_US);
+  const cyclesPerUs = CYCLES_PER_US * wiring.pace;
+  const usOf = (cycles: number): number => wiring.startUs + cycles / cyclesPerUs;
+  const cyclesOf = (us: number): number => Math.round((us - wiring.startUs) * cyclesPerUs);
 
   for (const { config, firstPin, pins } of PORTS) {
     new AVRIOPort(cpu, config).addListener((levels) =>

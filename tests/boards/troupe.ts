@@ -47,11 +47,14 @@ const LOOK_US = 5_000;
 /** Texts of files by name; the rig is `rig.yaml`. */
 export type RigFiles = Readonly<Record<string, string>>;
 
+export interface TroupeOptions {
+  readonly memory?: WakeMemory;
+  /** How fast the resonators of some boards run, by address; the others run at exactly 16 MHz. */
+  readonly paces?: Readonly<Record<string, number>>;
+}
+
 /** @param rig the rig's text with its profiles inline, or the texts of several files, or a rig file on the disk */
-export function troupe(
-  rig: string | RigFiles | { readonly onDisk: string },
-  options: { readonly memory?: WakeMemory } = {},
-): Troupe {
+export function troupe(rig: string | RigFiles | { readonly onDisk: string }, options: TroupeOptions = {}): Troupe {
   const loaded =
     typeof rig === 'object' && 'onDisk' in rig
       ? loadRig(rig['onDisk'] as string)
@@ -64,7 +67,7 @@ export function troupe(
     rig: loaded.rig,
     clock,
     openPort({ address }) {
-      const board = wiredBoard(clock, address.text);
+      const board = wiredBoard(clock, address.text, { pace: options.paces?.[address.text] ?? 1 });
       wired.set(address.text, board);
       return board.port;
     },

@@ -32,6 +32,8 @@ export interface UnoOptions {
   readonly send: (bytes: Uint8Array) => void;
   /** At which both ends talk; 57600 by default. */
   readonly baud?: number;
+  /** How fast its resonator runs; 1, exactly 16 MHz, by default. */
+  readonly pace?: number;
 }
 
 const BAUD_DEFAULT = 57_600;
@@ -41,7 +43,7 @@ const SLICE_OF_BYTE = 0.92;
 const LINE_BYTES_MAX = 16_384;
 const ANALOG_INPUTS = 6;
 
-export function unoBoard({ clock, flash, send, baud = BAUD_DEFAULT }: UnoOptions): UnoBoard {
+export function unoBoard({ clock, flash, send, baud = BAUD_DEFAULT, pace = 1 }: UnoOptions): UnoBoard {
   const byteUs = (BITS_PER_BYTE * 1e6) / baud;
   const sliceUs = Math.floor(byteUs * SLICE_OF_BYTE);
   const pins = pinRecorder();
@@ -106,7 +108,7 @@ export function unoBoard({ clock, flash, send, baud = BAUD_DEFAULT }: UnoOptions
     },
     reset() {
       powerOff();
-      chip = bootedChip({ flash, startUs: clock.nowUs(), volts, sending, wrote: pins.wrote });
+      chip = bootedChip({ flash, startUs: clock.nowUs(), pace, volts, sending, wrote: pins.wrote });
       slice();
     },
     powerOff,

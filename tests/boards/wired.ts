@@ -5,7 +5,7 @@ import type { Port } from '../../src/port/types.ts';
 import { firmwareHex } from '../../tools/firmware.ts';
 import { flashImage } from './hex.ts';
 import { unoBoard } from './uno.ts';
-import type { UnoBoard } from './uno.ts';
+import type { UnoBoard, UnoOptions } from './uno.ts';
 
 /** StandardFirmata for the Uno. */
 export const standardFirmata = flashImage(await firmwareHex());
@@ -26,10 +26,11 @@ export interface WiredBoard {
 export function wiredBoard(
   clock: VirtualClock,
   address: string,
-  options: Omit<MemoryPortOptions, 'baud' | 'chunkBytes'> = {},
+  options: Omit<MemoryPortOptions, 'baud' | 'chunkBytes'> & Pick<UnoOptions, 'pace'> = {},
 ): WiredBoard {
   const { port, far } = memoryPort(clock, address, options);
-  const board = unoBoard({ clock, flash: standardFirmata, send: (bytes) => far.write(bytes) });
+  const { pace = 1 } = options;
+  const board = unoBoard({ clock, pace, flash: standardFirmata, send: (bytes) => far.write(bytes) });
   // Opening raises DTR, which resets an Uno. Closing leaves it powered: its servos go on being pulsed.
   far.listen({ opened: () => board.reset(), data: (bytes) => board.receive(bytes) });
   return {
