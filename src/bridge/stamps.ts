@@ -39,6 +39,7 @@ export function stamps(inputs: number, emit: (event: Stamped) => void): Stamps {
       spacing[0] = (nowUs - before.us) / held;
       median.push(0, spacing, interval);
     }
+    const earliestUs = Number.isNaN(before.us) ? Number.NEGATIVE_INFINITY : before.us;
     before.us = nowUs;
     const count = held;
     held = 0;
@@ -46,7 +47,9 @@ export function stamps(inputs: number, emit: (event: Stamped) => void): Stamps {
     for (let i = 0; i < count; i++) {
       const event = pool[i] as Pooled;
       const byBoard = lastBoardUs - (boardUs[i] as number);
-      event.tUs = nowUs - Math.round(Number.isNaN(byBoard) ? (count - 1 - i) * (interval[0] as number) : byBoard);
+      const backUs = Math.round(Number.isNaN(byBoard) ? (count - 1 - i) * (interval[0] as number) : byBoard);
+      // Whatever a board's clock says, across a restart too: no reading is of the future, nor of before the last chunk.
+      event.tUs = Math.min(Math.max(nowUs - backUs, earliestUs), nowUs);
       emit(event);
     }
   };
