@@ -6,8 +6,8 @@ export type Curve = 'straight' | 'monotone';
 /** What a map does outside its outer points: go on along the end's slope, or stay at the outer value. */
 export type Beyond = 'extend' | 'clamp';
 
-/** Coefficients of a segment: y = c0 + d (c1 + d (c2 + d c3)), d = x - x_i. */
-const ORDER = 4;
+/** A row of the table: where it starts, then its coefficients: y = c0 + d (c1 + d (c2 + d c3)), d = x - start. */
+const ROW = 5;
 
 /** Halvings that bring a segment below one part in 2^52 of its width: no more can be told apart. */
 const BISECTIONS = 52;
@@ -18,55 +18,77 @@ const BISECTIONS = 52;
  *   The caller has checked that (rig files report it with a place), so a bad list is our bug and throws.
  */
 export function compileMap(points: readonly (readonly [number, number])[], curve: Curve, beyond: Beyond): PointMap {
-  const n = points.length;
   const x = Float64Array.from(points, (p) => p[0]);
   const y = Float64Array.from(points, (p) => p[1]);
   refuseBadPoints(x, y);
-  const falling = at(y, n - 1) < at(y, 0);
-  const slopes = curve === 'monotone' ? monotoneSlopes(x, y) : null;
-  const segments = segmentTable(x, y, slopes);
-  const firstSlope = beyond === 'clamp' ? 0 : slopes === null ? at(segments, 1) : at(slopes, 0);
-  const lastSlope = beyond === 'clamp' ? 0 : slopes === null ? at(segments, (n - 2) * ORDER + 1) : at(slopes, n - 1);
+  return new CompiledMap(x, y, curve, beyond);
+}
 
-  const within = (i: number, input: number): number => {
-    const d = input - at(x, i);
-    const c = i * ORDER;
-    return at(segments, c) + d * (at(segments, c + 1) + d * (at(segments, c + 2) + d * at(segments, c + 3)));
-  };
-  const value = (input: number): number => {
-    if (input <= at(x, 0)) return at(y, 0) + (input - at(x, 0)) * firstSlope;
-    if (input >= at(x, n - 1)) return at(y, n - 1) + (input - at(x, n - 1)) * lastSlope;
-    return within(bracket(x, input, false), input);
-  };
+/**
+ * A class, because a rig has hundreds of maps that are read at every command: methods are compiled once for all of
+ * them, while the variables of so many closures would be looked up and checked anew at every use.
+ */
+class CompiledMap implements PointMap {
+  readonly xMin: number;
+  readonly xMax: number;
+  readonly yMin: number;
+  readonly yMax: number;
+  readonly falling: boolean;
+  private readonly straight: boolean;
+  /** A row before the first point, one for each segment, one from the last point on. */
+  private readonly rows: Float64Array;
 
-  return {
-    xMin: at(x, 0),
-    xMax: at(x, n - 1),
-    yMin: falling ? at(y, n - 1) : at(y, 0),
-    yMax: falling ? at(y, 0) : at(y, n - 1),
-    falling,
-    value,
-    apply(input, i, output, j) {
-      output[j] = value(at(input, i));
-    },
-    inverse(output) {
-      if (falling ? output >= at(y, 0) : output <= at(y, 0))
-        return at(x, 0) + (firstSlope === 0 ? 0 : (output - at(y, 0)) / firstSlope);
-      if (falling ? output <= at(y, n - 1) : output >= at(y, n - 1))
-        return at(x, n - 1) + (lastSlope === 0 ? 0 : (output - at(y, n - 1)) / lastSlope);
-      const i = bracket(y, output, falling);
-      if (slopes === null) return at(x, i) + (output - at(y, i)) / at(segments, i * ORDER + 1);
-      // Bisection: the cubic is monotone inside a segment, and near a flat end Newton would leave it.
-      let low = at(x, i);
-      let high = at(x, i + 1);
-      for (let step = 0; step < BISECTIONS; step++) {
-        const middle = 0.5 * (low + high);
-        if (within(i, middle) < output !== falling) low = middle;
-        else high = middle;
-      }
-      return 0.5 * (low + high);
-    },
-  };
+  constructor(x: Float64Array, y: Float64Array, curve: Curve, beyond: Beyond) {
+    const last = x.length - 1;
+    this.falling = at(y, last) < at(y, 0);
+    this.xMin = at(x, 0);
+    this.xMax = at(x, last);
+    this.yMin = at(y, this.falling ? last : 0);
+    this.yMax = at(y, this.falling ? 0 : last);
+    this.straight = curve === 'straight';
+    this.rows = table(x, y, this.straight ? null : monotoneSlopes(x, y), beyond);
+  }
+
+  value(input: number): number {
+    const { rows } = this;
+    let row = 0;
+    // Maps have few points: the next one is nearer than the middle one.
+    while (row + ROW < rows.length && at(rows, row + ROW) <= input) row += ROW;
+    return valueIn(rows, row, input);
+  }
+
+  apply(input: Float64Array, i: number, output: Float64Array, j: number): void {
+    output[j] = this.value(at(input, i));
+  }
+
+  inverse(output: number): number {
+    const { rows, falling } = this;
+    let row = 0;
+    const reached = (start: number): boolean => (falling ? start >= output : start <= output);
+    while (row + ROW < rows.length && reached(at(rows, row + ROW + 1))) row += ROW;
+    const start = at(rows, row);
+    const beyond = row === 0 || row + ROW === rows.length;
+    if (!this.straight && !beyond) return this.bisect(row, output);
+    const slope = at(rows, row + 2);
+    return slope === 0 ? start : start + (output - at(rows, row + 1)) / slope;
+  }
+
+  /** The cubic is monotone inside a segment, and near a flat end Newton would leave it. */
+  private bisect(row: number, output: number): number {
+    let low = at(this.rows, row);
+    let high = at(this.rows, row + ROW);
+    for (let step = 0; step < BISECTIONS; step++) {
+      const middle = 0.5 * (low + high);
+      if (valueIn(this.rows, row, middle) < output !== this.falling) low = middle;
+      else high = middle;
+    }
+    return 0.5 * (low + high);
+  }
+}
+
+function valueIn(rows: Float64Array, row: number, input: number): number {
+  const d = input - at(rows, row);
+  return at(rows, row + 1) + d * (at(rows, row + 2) + d * (at(rows, row + 3) + d * at(rows, row + 4)));
 }
 
 function refuseBadPoints(x: Float64Array, y: Float64Array): void {
@@ -79,33 +101,26 @@ function refuseBadPoints(x: Float64Array, y: Float64Array): void {
 }
 
 /** One polynomial a segment; straight where `slopes` is null, the cubic Hermite through the slopes otherwise. */
-function segmentTable(x: Float64Array, y: Float64Array, slopes: Float64Array | null): Float64Array {
-  const table = new Float64Array((x.length - 1) * ORDER);
-  for (let i = 0; i < x.length - 1; i++) {
+function table(x: Float64Array, y: Float64Array, slopes: Float64Array | null, beyond: Beyond): Float64Array {
+  const last = x.length - 1;
+  const rows = new Float64Array((x.length + 1) * ROW);
+  for (let i = 0; i < last; i++) {
     const h = at(x, i + 1) - at(x, i);
     const secant = (at(y, i + 1) - at(y, i)) / h;
-    const from = slopes === null ? secant : at(slopes, i);
-    const to = slopes === null ? secant : at(slopes, i + 1);
-    table[i * ORDER] = at(y, i);
-    table[i * ORDER + 1] = from;
-    table[i * ORDER + 2] = (3 * secant - 2 * from - to) / h;
-    table[i * ORDER + 3] = (from + to - 2 * secant) / (h * h);
     // A straight segment is exactly straight: no rounding crumbs in the upper coefficients.
-    if (slopes === null) table.fill(0, i * ORDER + 2, i * ORDER + 4);
+    if (slopes === null) rows.set([at(x, i), at(y, i), secant], (i + 1) * ROW);
+    else {
+      const from = at(slopes, i);
+      const to = at(slopes, i + 1);
+      const square = (3 * secant - 2 * from - to) / h;
+      rows.set([at(x, i), at(y, i), from, square, (from + to - 2 * secant) / (h * h)], (i + 1) * ROW);
+    }
   }
-  return table;
-}
-
-/** Index of the segment that holds `value`, in a list that rises (or falls). */
-function bracket(list: Float64Array, value: number, falling: boolean): number {
-  let low = 0;
-  let high = list.length - 1;
-  while (high - low > 1) {
-    const middle = (low + high) >>> 1;
-    if (falling ? at(list, middle) >= value : at(list, middle) <= value) low = middle;
-    else high = middle;
-  }
-  return low;
+  const slope = (i: number): number =>
+    beyond === 'clamp' ? 0 : slopes === null ? at(rows, i * ROW + 2) : at(slopes, i);
+  rows.set([at(x, 0), at(y, 0), slope(slopes === null ? 1 : 0)], 0);
+  rows.set([at(x, last), at(y, last), slope(last)], (last + 1) * ROW);
+  return rows;
 }
 
 function at(list: Float64Array, i: number): number {

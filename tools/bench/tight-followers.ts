@@ -1,13 +1,6 @@
 import { US_PER_S } from '../../src/clock/clock.ts';
 import type { Plan } from '../../src/drive/plan.ts';
-import {
-  commandBytes,
-  FROM_HOST,
-  HOST_HEAD,
-  PULSE_STEPS_PER_US,
-  SERVO_BYTES,
-  seal,
-} from '../../src/wire/frames-layout.ts';
+import { commandBytes, FROM_HOST, HOST_HEAD, SERVO_BYTES, seal } from '../../src/wire/frames-layout.ts';
 import { JOINTS, PERIOD_US, START_US } from './scene.ts';
 import type { TightLeader } from './tight-leader.ts';
 import { IN_DEADBAND, IN_RANGE, SICK, tightMotion } from './tight-motion.ts';
