@@ -4,7 +4,7 @@
  */
 import { beforeAll, describe, expect, it } from 'vitest';
 import { median } from './solo.ts';
-import { trainOf } from './trains.ts';
+import { pulseAt, trainOf } from './trains.ts';
 import { troupe } from './troupe.ts';
 import type { Troupe } from './troupe.ts';
 import type { UnoBoard } from './uno.ts';
@@ -49,7 +49,7 @@ const US_PER_DEG = 1880 / 180;
 const STAGES = ['sampling', 'despike', 'smoothing', 'governor', 'frame'] as const;
 type Stage = (typeof STAGES)[number];
 /** Microseconds that each stage took. */
-type Budget = Readonly<Record<Stage, number>> & { readonly total: number };
+type Budget = Readonly<Record<Stage, number>> & { readonly total: number; readonly halfWay: number };
 
 /** Of each kind of step; 100 counts are a jump of 30 degrees, 5 are 1.5 degrees: a hand that begins to move. */
 const STEPS = { large: 100, small: 5 } as const;
@@ -131,6 +131,14 @@ describe('the lag from a pot to a pin', () => {
     return first === undefined ? Number.NaN : first.startUs + first.widthUs;
   };
 
+  /** End of the first pulse that has done half of the way: what smoothing costs shows here, not at the first change. */
+  const halfWayUs = (pin: number, startUs: number): number => {
+    const from = pulseAt(board, pin, startUs).widthUs;
+    const to = pulseAt(board, pin, all.clock.nowUs()).widthUs;
+    const pulse = trainOf(board, pin, startUs).find(({ widthUs }) => Math.abs(widthUs - to) < Math.abs(from - to) / 2);
+    return pulse === undefined ? Number.NaN : pulse.startUs + pulse.widthUs;
+  };
+
   const step = (size: Size, counts: number): void => {
     const startUs = all.clock.nowUs();
     const watch = new Watch(all);
@@ -150,6 +158,7 @@ describe('the lag from a pot to a pin', () => {
         governor: command - shownPose,
         frame: endUs - command,
         total: endUs - startUs,
+        halfWay: halfWayUs(PINS[joint], startUs) - startUs,
       });
     }
   };
@@ -213,14 +222,15 @@ function table(budgets: Readonly<Record<Size, Record<Joint, readonly Budget[]>>>
   );
   const cell = (values: readonly number[]): string =>
     `${(median(values) / 1000).toFixed(1)} (${(Math.max(...values) / 1000).toFixed(1)})`;
-  const rows = [...STAGES, 'total' as const].map((stage) =>
+  const rows = [...STAGES, 'total' as const, 'halfWay' as const].map((stage) =>
     [
-      stage.padEnd(10),
+      (stage === 'halfWay' ? 'half way' : stage).padEnd(10),
       ...columns.map((column) => cell(column.budgets.map((budget) => budget[stage])).padStart(20)),
     ].join(''),
   );
   return [
-    `lag budget in ms, median (worst) of ${PHASES} phases, from the pot's step to the end of the first changed pulse:`,
+    `lag budget in ms, median (worst) of ${PHASES} phases, from the pot's step to the end of the first changed pulse,`,
+    'and to the end of the first one that is half way there, which is up to the limits of the arm too:',
     [''.padEnd(10), ...columns.map(({ head }) => head.padStart(20))].join(''),
     ...rows,
   ].join('\n');
