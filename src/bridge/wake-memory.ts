@@ -57,7 +57,7 @@ export function wakeMemory(file: string, onFault: (detail: string) => void): Wak
 
   return {
     recall(follower) {
-      const last = known[follower.name];
+      const last = Object.hasOwn(known, follower.name) ? known[follower.name] : undefined;
       if (last === undefined || last.parked) return null;
       return Float64Array.from(follower.joints, (joint) => {
         const deg = last.angles_deg[joint.name];

@@ -5,7 +5,7 @@ import { type VirtualClock, virtualClock } from '../../src/clock/virtual.ts';
 import type { DriveEvent } from '../../src/drive/events.ts';
 import type { State } from '../../src/follower/states.ts';
 import type { Port } from '../../src/port/types.ts';
-import type { CompiledRig } from '../../src/rig/compiled.ts';
+import type { CompiledBoard, CompiledRig } from '../../src/rig/compiled.ts';
 import { loadRig } from '../../src/rig/load.ts';
 import type { SimulatedBoard } from '../../src/sim/board.ts';
 
@@ -59,6 +59,14 @@ leader:
 followers:${entries.join('')}`;
 }
 
+export interface PerformanceOptions extends Partial<LiveOptions> {
+  /** Speed of every board's line; none when absent. */
+  readonly baud?: number;
+  readonly latenessUs?: () => number;
+  /** Another board than the simulated one; null: that one. */
+  readonly boardFor?: (plan: CompiledBoard, clock: VirtualClock) => SimulatedBoard | null;
+}
+
 /** A live run on a virtual clock with simulated boards, and everything it said. */
 export class Performance {
   readonly clock: VirtualClock;
@@ -72,13 +80,13 @@ export class Performance {
   /** Writes that a port refused, because it was busy. */
   refused = 0;
 
-  constructor(rig: CompiledRig, options: Partial<LiveOptions> & { baud?: number; latenessUs?: () => number } = {}) {
+  constructor(rig: CompiledRig, options: PerformanceOptions = {}) {
     this.clock = virtualClock(1_000_000, options.latenessUs);
     this.live = live({
       rig,
       clock: this.clock,
       openPort: (plan) => {
-        const board = simulatedFor(rig, plan, this.clock);
+        const board = options.boardFor?.(plan, this.clock) ?? simulatedFor(rig, plan, this.clock);
         if (options.baud !== undefined) board.far.setBaud(options.baud);
         this.boards.set(plan.address.text, board);
         return this.#watched(board.port);
