@@ -30,3 +30,24 @@ declare module 'firmata-io' {
     setSamplingInterval(intervalMs: number): void;
   }
 }
+
+declare module 'fft.js' {
+  export default class FFT {
+    /** @param size a power of two */
+    constructor(size: number);
+    createComplexArray(): number[];
+    /** Writes real and imaginary parts in turn, up to half the size. */
+    realTransform(out: number[], input: readonly number[]): void;
+  }
+}
+
+declare module 'fili' {
+  export class CalcCascades {
+    /** Second-order sections, `order` of them; `a` without its leading 1. */
+    lowpass(options: { order: number; characteristic: 'butterworth'; Fs: number; Fc: number }): {
+      readonly a: readonly number[];
+      readonly b: readonly number[];
+      readonly k: number;
+    }[];
+  }
+}

@@ -6,9 +6,18 @@ import { demoCommand } from './demo.ts';
 import { portsCommand } from './ports.ts';
 import { runCommand } from './run.ts';
 import { schemaCommand } from './schema.ts';
+import { takeCommand } from './take.ts';
 import { traceCommand } from './trace.ts';
 
-const COMMANDS = [demoCommand, runCommand, portsCommand, checkCommand, traceCommand, schemaCommand] as const;
+const COMMANDS = [
+  demoCommand,
+  runCommand,
+  portsCommand,
+  checkCommand,
+  traceCommand,
+  takeCommand,
+  schemaCommand,
+] as const;
 
 const EXPLAINED = `
 Begin with "eidograph demo", which needs no hardware; then copy a rig from the package's profiles

@@ -23,6 +23,8 @@ export const TAKE_REMEDIES = {
   TAKE_JOINTS: 'say which joint is which with --map old=new',
   TAKE_RANGE: 'choose times or marks inside the take, the earlier one first',
   TAKE_MARK: 'name one of its marks, or a time such as 2.5s',
+  TAKE_COLUMN: 'name columns as "eidograph take export" writes them, with * for any part, such as wren.*',
+  TAKE_FILE: 'name another file; nothing is written over',
   TAKE_SHORT: 'choose a longer stretch',
   TAKE_UNFIT: 'choose takes that were recorded from the same joints',
 } as const;

@@ -16,6 +16,8 @@ export interface TakeWriter {
   flush(): void;
   /** Brings what has been written to the disk itself, unless that is under way already. */
   sync(): void;
+  /** Ends the take on a disk that has written when its call returns. */
+  finish(): void;
   /** Ends the take with its end mark; resolves with why it is not whole, or null. */
   end(): Promise<TakeFault | null>;
 }
@@ -129,6 +131,10 @@ export function takeWriter(
           settle();
         } else fail(diskFault(name, error));
       });
+    },
+    finish() {
+      flush();
+      send(END_MARK);
     },
     async end() {
       flush();

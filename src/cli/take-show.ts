@@ -1,0 +1,121 @@
+import { takeNames, takesFolder, takeFile, writtenAt, freeBytes } from '../take/folder.ts';
+import { isTakeFault } from '../take/fault.ts';
+import { openTake } from '../take/reader.ts';
+import { type FollowerSummary, summarize, type TakeSummary } from '../take/summary.ts';
+import { withTakes } from './take-files.ts';
+import { worked } from './take-work.ts';
+import type { TakeWorld } from './take-world.ts';
+
+export interface ListOptions {
+  readonly takes: string | undefined;
+  readonly json: boolean;
+}
+
+/** Lists the takes of the folder; resolves with the exit status. */
+export async function listTakes({ takes, json }: ListOptions, world: TakeWorld): Promise<number> {
+  const folder = takesFolder(takes, world.env);
+  const listed = takeNames(folder).map((name) => {
+    const place = takeFile(folder, name);
+    const take = 'fault' in place ? place.fault : openTake(place.file);
+    if (isTakeFault(take)) return { take: name, fault: take.code };
+    take.close();
+    return {
+      take: name,
+      rig: take.header.rig,
+      made_by: take.header.made.by,
+      parents: take.header.made.parents.map((parent) => parent.take),
+      duration_s: take.durationUs / 1e6,
+      rows: take.rows,
+      bytes: take.bytes,
+      marks: take.marks.length,
+      whole: take.lostBytes === null,
+      written: 'file' in place ? writtenAt(place.file) : null,
+    };
+  });
+  if (json) {
+    world.out.write(`${JSON.stringify({ folder, free_bytes: freeBytes(folder), takes: listed })}\n`);
+    return 0;
+  }
+  if (listed.length === 0) world.err.write(`no takes in ${folder}; "eidograph run RIG --take NAME" records one\n`);
+  const width = Math.max(4, ...listed.map(({ take }) => take.length));
+  for (const one of listed) {
+    if ('fault' in one) {
+      world.out.write(`${one.take.padEnd(width)}  cannot be read: ${one.fault}\n`);
+      continue;
+    }
+    const made = one.parents.length === 0 ? '' : `  ${one.made_by} of ${one.parents.join(' and ')}`;
+    const facts = `${one.duration_s.toFixed(1).padStart(8)} s  ${`${one.rows}`.padStart(8)} rows  ${size(one.bytes).padStart(9)}`;
+    const cut = one.whole ? '' : '  cut off';
+    world.out.write(`${one.take.padEnd(width)}  ${facts}  ${one.rig}  ${one.marks} marks${made}${cut}\n`);
+  }
+  return 0;
+}
+
+/** Tells what a take holds. */
+export function showTake(name: string, options: ListOptions, world: TakeWorld): Promise<number> {
+  return withTakes(world, options.takes, [name], async ([take]) => {
+    if (take === undefined) return 2;
+    const shown = await worked(summarize(take), world);
+    if ('status' in shown) return shown.status;
+    world.out.write(options.json ? `${JSON.stringify(shown.done)}\n` : describe(shown.done));
+    return 0;
+  });
+}
+
+function describe(summary: TakeSummary): string {
+  const { leader, marks, parents } = summary;
+  const made = parents.length === 0 ? 'recorded' : `${summary.made_by} of ${parents.join(' and ')}`;
+  const head = [
+    `${summary.take}: ${made} from ${summary.rig}, ${summary.duration_s.toFixed(2)} s, ${summary.rows} rows, ${size(summary.bytes)}`,
+    ...(summary.damaged_rows > 0 ? [`  ${summary.damaged_rows} rows stand in damaged batches and are left out`] : []),
+    ...(marks.length > 0 ? [`  marks: ${marks.map(({ mark, t_s }) => `${mark} ${t_s.toFixed(2)} s`).join(', ')}`] : []),
+    `leader ${leader.leader}: ${leader.joints.join(', ')}; ${leader.readings} readings, ${leader.dropouts.length} dropouts`,
+    ...leader.dropouts.slice(0, SPANS_SHOWN).map(({ from_s, to_s }) => `  nothing ${span(from_s, to_s)}`),
+  ];
+  return `${[...head, ...summary.followers.flatMap(describeFollower)].join('\n')}\n`;
+}
+
+const SPANS_SHOWN = 5;
+
+function describeFollower(arm: FollowerSummary): readonly string[] {
+  const states = Object.entries(arm.states).map(([state, seconds]) => `${state} ${seconds.toFixed(1)} s`);
+  const smooth =
+    arm.spectral_arc_length === null
+      ? 'no movement'
+      : `${arm.movements} movements, spectral arc length ${arm.spectral_arc_length.toFixed(2)}, log dimensionless jerk ${arm.log_dimensionless_jerk?.toFixed(2)}`;
+  const blocked = Object.entries(arm.blocked_s).map(([why, seconds]) => `${why} ${seconds.toFixed(1)} s`);
+  return [
+    `follower ${arm.follower}: ${arm.commands} commands; ${states.join(', ')}`,
+    `  ${smooth}${blocked.length === 0 ? '' : `; kept from following: ${blocked.join(', ')}`}`,
+    ...arm.joints.flatMap((joint) => [
+      `    ${joint.joint.padEnd(10)} ${degrees(joint.least_deg)} to ${degrees(joint.most_deg)} deg  peak ${joint.speed_deg_s.toFixed(1).padStart(6)} deg/s (${percent(joint.speed_share)})  ${joint.accel_deg_s2.toFixed(0).padStart(6)} deg/s2 (${percent(joint.accel_share)})`,
+      ...joint.limited
+        .filter(({ by }) => by !== 'deadband')
+        .slice(0, SPANS_SHOWN)
+        .map(
+          ({ by, from_s, to_s }) =>
+            `      ${by === 'range' ? 'clipped by its range' : `held back by ${by}`} ${span(from_s, to_s)}`,
+        ),
+    ]),
+  ];
+}
+
+function span(from: number, to: number): string {
+  return `${from.toFixed(2)} to ${to.toFixed(2)} s`;
+}
+
+function degrees(value: number): string {
+  return value.toFixed(1).padStart(6);
+}
+
+function percent(share: number): string {
+  return `${(100 * share).toFixed(0)} %`;
+}
+
+export function size(bytes: number): string {
+  return bytes < 1e6
+    ? `${(bytes / 1e3).toFixed(0)} kB`
+    : bytes < 1e9
+      ? `${(bytes / 1e6).toFixed(1)} MB`
+      : `${(bytes / 1e9).toFixed(1)} GB`;
+}

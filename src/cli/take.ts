@@ -1,0 +1,118 @@
+import { Command, InvalidArgumentError, Option } from '@commander-js/extra-typings';
+import type { CommandUnknownOpts } from '@commander-js/extra-typings';
+import { durationOption } from './options.ts';
+import { realTakeWorld, type TakeWorld } from './take-world.ts';
+
+const EXPLAINED = `
+A take is one file of the takes folder, NAME.arrows: an Arrow stream that any Arrow reader opens. Takes live
+in $XDG_DATA_HOME/eidograph/takes (~/.local/share/eidograph/takes), or where --takes says. Nothing is ever
+written over: each edit makes a new take that remembers its parents.
+
+Moments are marks, or times such as 2.5s, 500ms or -1s (from the end).`;
+
+/** `eidograph take …`: each subcommand loads what it needs, so that the others start without it. */
+export function takeCommand(world: () => TakeWorld = realTakeWorld): CommandUnknownOpts {
+  const take = new Command('take')
+    .description('list, show, play, edit, compare and export recordings')
+    .addHelpText('after', EXPLAINED);
+
+  take.addCommand(
+    folder(new Command('list').description('list the takes'))
+      .option('--json', 'print them as JSON', false)
+      .action(async (options) => {
+        const { listTakes } = await import('./take-show.ts');
+        process.exitCode = await listTakes({ json: options.json, takes: options.takes }, world());
+      }),
+  );
+  take.addCommand(
+    folder(new Command('show').description('tell what a take holds: marks, joints, peaks, smoothness, limited spans'))
+      .argument('<name>')
+      .option('--json', 'print it as JSON', false)
+      .action(async (name, options) => {
+        const { showTake } = await import('./take-show.ts');
+        process.exitCode = await showTake(name, { json: options.json, takes: options.takes }, world());
+      }),
+  );
+  take.addCommand(
+    edited('trim', 'keep one stretch of a take')
+      .argument('<name>')
+      .option('--from <moment>', 'where it begins')
+      .option('--to <moment>', 'where it ends')
+      .action(async (name, { takes, as, from, to }) => {
+        const { trimTake } = await import('./take-edit.ts');
+        process.exitCode = await trimTake(name, { takes, as, from, to }, world());
+      }),
+  );
+  take.addCommand(
+    edited('splice', 'join two takes by a minimum-jerk blend')
+      .argument('<first>')
+      .argument('<second>')
+      .addOption(new Option('--blend <time>', 'length of the blend').argParser(durationOption).default(1_000_000, '1s'))
+      .action(async (first, second, { takes, as, blend }) => {
+        const { spliceTakes } = await import('./take-edit.ts');
+        process.exitCode = await spliceTakes([first, second], { takes, as, blendUs: blend }, world());
+      }),
+  );
+  take.addCommand(
+    edited('smooth', 'filter a take forward and backward, without delay, and say how far it then is from the raw one')
+      .argument('<name>')
+      .requiredOption('--cutoff <hz>', 'what is faster than this is taken out', positive)
+      .action(async (name, { takes, as, cutoff }) => {
+        const { smoothTake } = await import('./take-edit.ts');
+        process.exitCode = await smoothTake(name, { takes, as, cutoff }, world());
+      }),
+  );
+  take.addCommand(
+    edited('retime', 'make a take faster or slower')
+      .argument('<name>')
+      .requiredOption('--speed <factor>', '2 is twice as fast', positive)
+      .action(async (name, { takes, as, speed }) => {
+        const { retimeTake } = await import('./take-edit.ts');
+        process.exitCode = await retimeTake(name, { takes, as, speed }, world());
+      }),
+  );
+  take.addCommand(
+    folder(new Command('compare').description('lay one take over another in time, and tell how far they differ'))
+      .argument('<a>')
+      .argument('<b>')
+      .option('--json', 'print it as JSON', false)
+      .action(async (a, b, options) => {
+        const { compareTakes } = await import('./take-edit.ts');
+        process.exitCode = await compareTakes([a, b], { json: options.json, takes: options.takes }, world());
+      }),
+  );
+  take.addCommand(
+    folder(new Command('export').description('write takes as one table: CSV, JSON Lines or Parquet'))
+      .argument('<names...>')
+      .option('--out <file>', 'where to; standard output when left out')
+      .addOption(
+        new Option('--format <format>', "in place of the file's ending").choices(['csv', 'jsonl', 'parquet'] as const),
+      )
+      .option('--columns <patterns>', 'only these, with commas; * stands for any part: t_us,wren.*', listed)
+      .option('--rate <hz>', 'at even instants rather than at every event', positive)
+      .action(async (names, { takes, out, format, columns, rate }) => {
+        const { exportCommand } = await import('./take-export.ts');
+        process.exitCode = await exportCommand(names, { takes, out, format, columns: columns ?? [], rate }, world());
+      }),
+  );
+  return take;
+}
+
+function folder<A extends unknown[]>(command: Command<A>): Command<A, { takes?: string | undefined }> {
+  return command.option('--takes <folder>', 'where takes live');
+}
+
+function edited(name: string, description: string): Command<[], { takes?: string | undefined; as: string }> {
+  return folder(new Command(name).description(description)).requiredOption('--as <name>', 'name of the new take');
+}
+
+function positive(text: string): number {
+  const value = Number(text);
+  if (!(value > 0 && value <= 1e6)) throw new InvalidArgumentError('A number over 0 is wanted, such as 1.5.');
+  return value;
+}
+
+function listed(text: string, before: readonly string[] | undefined): readonly string[] {
+  const items = text.split(',').map((item) => item.trim());
+  return [...(before ?? []), ...items.filter((item) => item !== '')];
+}
