@@ -3,6 +3,7 @@ import { Command, CommanderError } from '@commander-js/extra-typings';
 import type { CommandUnknownOpts } from '@commander-js/extra-typings';
 import { checkCommand } from './check.ts';
 import { demoCommand } from './demo.ts';
+import { fitCommand } from './fit.ts';
 import { portsCommand } from './ports.ts';
 import { runCommand } from './run.ts';
 import { schemaCommand } from './schema.ts';
@@ -14,6 +15,7 @@ const COMMANDS = [
   runCommand,
   portsCommand,
   checkCommand,
+  fitCommand,
   traceCommand,
   takeCommand,
   schemaCommand,

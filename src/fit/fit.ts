@@ -1,10 +1,9 @@
 import type { RigProfiles } from '../rig/compile.ts';
 import { byJoint, type Capture, type JointCaptures } from './captures.ts';
+import { leaderCurve } from './curves.ts';
 import { medianOf } from './dwells.ts';
 import { fitFollowerJoint } from './follower-part.ts';
 import { fitLeaderJoint, type LeaderMap } from './leader-part.ts';
-import { compileMap } from '../map/compile.ts';
-import { rising } from '../rig/compile-leader.ts';
 import { type FitProblem, problem } from './problems.ts';
 import type { FitReport } from './report.ts';
 import type { SuggestWish } from './suggest.ts';
@@ -43,9 +42,7 @@ export function fitCaptures(profiles: RigProfiles, captures: readonly Capture[],
     problems.push(...part.problems);
     return part;
   });
-  const maps = new Map<string, LeaderMap>(
-    leader.joints.map((joint) => [joint.name, compileMap(rising(joint.points), joint.curve, 'extend').value]),
-  );
+  const maps = new Map<string, LeaderMap>(leader.joints.map((joint) => [joint.name, leaderCurve(joint)]));
   for (const { report, map } of parts) maps.set(report.joint, map);
 
   const fitted = followers.flatMap((profile) => {

@@ -1,8 +1,7 @@
-import { compileMap } from '../map/compile.ts';
-import { rising } from '../rig/compile-leader.ts';
 import type { FollowerJoint, FollowerProfile } from '../rig/schema/follower.ts';
 import { servosOf } from '../rig/servo-list.ts';
 import type { JointCaptures } from './captures.ts';
+import { servoCurve } from './curves.ts';
 import type { LeaderMap } from './leader-part.ts';
 import { POINTS_ENOUGH } from './leader-part.ts';
 import { matchPoses } from './match.ts';
@@ -45,7 +44,7 @@ export function fitFollowerJoint(
     problems.push(found);
     return null;
   };
-  const former = compileMap(rising(listed.points.map(([deg, us]) => [us, deg] as const)), 'straight', 'extend').value;
+  const former = servoCurve(listed.points);
   const points = captures.of['servo-point'].map(({ pulseUs, knownDeg }) => ({ pulseUs, angleDeg: knownDeg }));
   const fit = wantsServo ? fitServo(points, former, READ_DEG) : null;
   const found = fit !== null && 'why' in fit ? complain(noMapProblem(fit, arm, joint.name, 'us')) : fit;

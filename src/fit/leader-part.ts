@@ -1,7 +1,6 @@
 import type { LeaderJoint, LeaderProfile } from '../rig/schema/leader.ts';
-import { compileMap } from '../map/compile.ts';
-import { rising } from '../rig/compile-leader.ts';
 import type { Capture, JointCaptures } from './captures.ts';
+import { leaderCurve } from './curves.ts';
 import { fitMap } from './map-fit.ts';
 import { noiseOf, QUANTISATION_COUNTS } from './noise.ts';
 import { pointsReport } from './points-report.ts';
@@ -64,7 +63,7 @@ export function fitLeaderJoint(profile: LeaderProfile, index: number, captures: 
   const found = fit !== null && 'why' in fit ? complain(noMapProblem(fit, arm, joint.name, 'counts')) : fit;
   const fitted: PointsReport | null = found === null ? null : pointsReport(found, x, y, width);
 
-  const former = compileMap(rising(joint.points), joint.curve, 'extend').value;
+  const former = leaderCurve(joint);
   const map = found?.value ?? former;
   const degPerCount = Math.abs(map(countsHigh) - map(countsLow)) / width;
   const sweepReport: SweepReport | null =

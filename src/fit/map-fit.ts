@@ -1,4 +1,4 @@
-import { compileMap } from '../map/compile.ts';
+import { curveThrough } from './curves.ts';
 import { fisherTail, studentT } from './distributions.ts';
 import { type Polynomial, polynomials } from './least-squares.ts';
 import { type Suspect, suspect, wrongPoint } from './wrong-point.ts';
@@ -14,7 +14,7 @@ export interface MapFit {
   readonly n: number;
   /** The one point left out because it stands out; null: none. */
   readonly wrong: Suspect | null;
-  /** The point that agrees least, left in, where too few points allow no verdict; null: not worth a word. */
+  /** The point that agrees least of those used, by its index among them; null: not worth a word. */
   readonly doubtful: Suspect | null;
   /** y less fitted y of every point given, the wrong one included. */
   readonly residuals: Float64Array;
@@ -45,7 +45,9 @@ export type NoMap =
   | { readonly why: 'few'; readonly n: number }
   | { readonly why: 'coincident' }
   | { readonly why: 'flat' }
-  | { readonly why: 'turns back'; readonly at: readonly [number, number] };
+  | { readonly why: 'turns back'; readonly at: readonly [number, number] }
+  /** With one point left out, another still stands out as far: nobody can say which are right. */
+  | { readonly why: 'wrong points'; readonly at: readonly [number, number] };
 
 const TAILS = 0.05;
 /**
@@ -92,10 +94,10 @@ export function fitMap(x: readonly number[], y: readonly number[], options: MapF
   const line = fit.all[1] as Polynomial;
   const { used } = fit;
   const points = used.degree === 1 ? ends(used, from, to) : knots(used, from, to);
-  const map = compileMap(points, used.degree === 1 ? 'straight' : 'monotone', 'extend');
-  const residuals = Float64Array.from(x, (at, i) => (y[i] as number) - map.value(at));
+  const value = curveThrough(points, used.degree === 1 ? 'straight' : 'monotone');
+  const residuals = Float64Array.from(x, (at, i) => (y[i] as number) - value(at));
   const own = kept.map((i) => Math.abs(residuals[i] as number));
-  const least = wrong === null && used.dof > 1 ? suspect(used, keptX, noise) : null;
+  const least = used.dof > 1 ? suspect(used, keptX, noise) : null;
   const t = used.dof > 0 ? studentT(TAILS, used.dof) : null;
   const within = (is: number, leverage: number): Estimate => ({
     is,
@@ -113,11 +115,11 @@ export function fitMap(x: readonly number[], y: readonly number[], options: MapF
     rms: Math.sqrt(own.reduce((sum, r) => sum + r * r, 0) / own.length),
     worst: Math.max(...own),
     sigma: used.dof > 0 ? used.sigma : null,
-    error95: errorOf(fit, from, to, noise, map.value),
+    error95: errorOf(fit, from, to, noise, value),
     slope: within(line.slope(mid), line.slopeLeverage(mid)),
     middle: { x: mid, ...within(line.value(mid), line.leverage(mid)) },
     offset: within(line.value(0), line.leverage(0)),
-    value: map.value,
+    value,
   };
 }
 
@@ -149,6 +151,8 @@ function chosen(
     const again = fitted(rest, y.filter(without), curves);
     // A bend can look like a wrong point to the line: then leaving that point out does not help much.
     if (asked !== fit.used && spread(again.used, noise) > HELPS * spread(fit.used, noise)) continue;
+    const second = wrongPoint(again.used, rest, noise);
+    if (second !== null) return { why: 'wrong points', at: [x[wrong.index] as number, rest[second.index] as number] };
     return turning(again, rest) ?? { fit: again, wrong: placed(wrong, again.used, x, y) };
   }
   return turning(fit, x) ?? { fit, wrong: null };

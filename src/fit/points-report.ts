@@ -1,6 +1,7 @@
 import { leastDeviation } from './linearity.ts';
 import type { Estimate, MapFit } from './map-fit.ts';
-import type { Figure, PointsReport } from './report.ts';
+import type { Figure, PointsReport, WrongReport } from './report.ts';
+import type { Suspect } from './wrong-point.ts';
 
 /** What a file shows of a fitted value: a hundredth of a degree and of a count is below every pot. */
 export const hundredth = (value: number): number => Math.round(value * 100) / 100 + 0;
@@ -34,10 +35,8 @@ export function pointsReport(
       known_deg: knownDeg[i] as number,
       residual_deg: fit.residuals[i] as number,
     })),
-    wrong:
-      fit.wrong === null
-        ? null
-        : { index: fit.wrong.index, away_deg: fit.wrong.away, sigmas: Math.min(fit.wrong.sigmas, SIGMAS_SHOWN_MAX) },
+    wrong: suspectReport(fit.wrong, (index) => index),
+    doubtful: suspectReport(fit.doubtful, (index) => used[index] as number),
     rms_deg: fit.rms,
     worst_deg: fit.worst,
     sigma_deg: fit.sigma,
@@ -52,3 +51,9 @@ export function pointsReport(
 
 /** Exact data makes sigmas of any size; JSON knows no infinity. */
 const SIGMAS_SHOWN_MAX = 1e6;
+
+/** @param at index among all points */
+function suspectReport(found: Suspect | null, at: (index: number) => number): WrongReport | null {
+  if (found === null) return null;
+  return { index: at(found.index), away_deg: found.away, sigmas: Math.min(found.sigmas, SIGMAS_SHOWN_MAX) };
+}

@@ -17,6 +17,7 @@ export const FIT_CODES = {
   FIT_COINCIDENT: 'measure points further apart: they all read the same',
   FIT_FLAT: 'check that the pot turns with the joint and hangs on this channel',
   FIT_TURNS_BACK: 'measure those points again; if they were right, the pot wraps or slips inside the travel',
+  FIT_WRONG_POINTS: 'measure both again; leave out what was read where the wiper is lost',
   FIT_WRAPS: 'turn the pot in its mount so that its dead end lies outside the travel, then sweep again',
   FIT_NEVER_STILL: 'support the joint, or mend its wiring, then measure again',
   FIT_NO_SERVO: 'give the joint a servo of its own, with a first guess at its points',
@@ -40,6 +41,11 @@ export function noMapProblem(no: NoMap, arm: string, joint: string, unit: string
       return problem('FIT_COINCIDENT', arm, joint, `all points stand at the same ${unit}`);
     case 'flat':
       return problem('FIT_FLAT', arm, joint, 'all points have the same angle, or rise as much as they fall');
+    case 'wrong points': {
+      const [a, b] = no.at;
+      const both = `the points at ${Math.round(a)} and at ${Math.round(b)} ${unit} both stand out`;
+      return problem('FIT_WRONG_POINTS', arm, joint, both);
+    }
     case 'turns back': {
       const [from, to] = no.at;
       return problem('FIT_TURNS_BACK', arm, joint, `the points turn back near ${Math.round((from + to) / 2)} ${unit}`);

@@ -62,6 +62,8 @@ export interface PointsReport {
   readonly measured: readonly MeasuredPoint[];
   /** Index into `measured` of the point left out. */
   readonly wrong: WrongReport | null;
+  /** The point that agrees least of those left in, where it is worth a word. */
+  readonly doubtful: WrongReport | null;
   readonly rms_deg: number;
   readonly worst_deg: number;
   /** Spread of a point about the map. */

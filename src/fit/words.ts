@@ -4,13 +4,20 @@ import type { MatchReport, PointsReport, SweepReport } from './report.ts';
 /** Sentences of a fit: what was found, and after a semicolon what to do about it. */
 
 export function pointsWords(points: PointsReport, unit: string, enough: number): readonly string[] {
-  const { curve, used, wrong, measured, sigma_deg, error_95_deg, linearity_percent } = points;
+  const { curve, used, wrong, doubtful, measured, sigma_deg, error_95_deg, linearity_percent } = points;
   const out: string[] = [];
   if (wrong !== null) {
     const { x, known_deg } = measured[wrong.index] as (typeof measured)[number];
     out.push(
       `the point at ${round(x, 1)} ${unit} (${known_deg} deg) is ${signed(wrong.away_deg)} deg off, ` +
         `${round(wrong.sigmas, 1)} times what the others scatter; it was left out: measure it again`,
+    );
+  }
+  if (doubtful !== null) {
+    const { x, known_deg } = measured[doubtful.index] as (typeof measured)[number];
+    out.push(
+      `the point at ${round(x, 1)} ${unit} (${known_deg} deg) agrees least, ${signed(doubtful.away_deg)} deg off, ` +
+        `${round(doubtful.sigmas, 1)} times what the others scatter; it was kept: look at it again`,
     );
   }
   if (curve === 'monotone') {

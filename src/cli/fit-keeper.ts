@@ -1,0 +1,41 @@
+import { closeSync, existsSync, fdatasyncSync, openSync, readFileSync, statSync, writeSync } from 'node:fs';
+import type { Capture } from '../fit/captures.ts';
+import type { FileText } from '../rig/file-reader.ts';
+import { captureLine, CAPTURES_HEADER } from './fit-captures-csv.ts';
+
+/** Ten joints swept for ten minutes at a hundred readings a second are 30 MB. */
+const CAPTURES_BYTES_MAX = 64 * 1024 * 1024;
+
+export function readCapturesFile(file: string): FileText {
+  try {
+    if (statSync(file).size > CAPTURES_BYTES_MAX) return { fault: 'too large', detail: 'it is no file of captures' };
+    return { text: readFileSync(file, 'utf8') };
+  } catch (fault) {
+    return { fault: 'unreadable', detail: fault instanceof Error ? fault.message : String(fault) };
+  }
+}
+
+/** Captures kept as they are made: what has been measured outlives a crash. */
+export interface Keeper {
+  /** Appends and brings to the disk; throws what the system says when it cannot. */
+  keep(captures: readonly Capture[]): void;
+  close(): void;
+}
+
+export function keeper(file: string): Keeper {
+  const isNew = !existsSync(file);
+  const descriptor = openSync(file, 'a');
+  const put = (text: string): void => {
+    const bytes = Buffer.from(text);
+    for (let at = 0; at < bytes.length; ) at += writeSync(descriptor, bytes, at);
+    fdatasyncSync(descriptor);
+  };
+  // A crash in the midst of a line leaves half of one: what follows begins on a line of its own.
+  const end = isNew ? '' : readFileSync(file, 'utf8').slice(-1);
+  if (isNew || end === '') put(CAPTURES_HEADER);
+  else if (end !== '\n') put('\n');
+  return {
+    keep: (captures) => put(captures.map(captureLine).join('')),
+    close: () => closeSync(descriptor),
+  };
+}

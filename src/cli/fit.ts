@@ -1,0 +1,88 @@
+import { Command, InvalidArgumentError } from '@commander-js/extra-typings';
+import type { CommandUnknownOpts } from '@commander-js/extra-typings';
+import { loadRig } from '../rig/load.ts';
+import { mistakeLine } from '../rig/mistake.ts';
+import { metres } from '../rig/units.ts';
+import { filesOnDisk, type FitFiles } from './fit-files.ts';
+import { capturesOf, checkAgainst, type FitFlags, fitInto, type Printer } from './fit-offline.ts';
+
+export interface FitOptions extends FitFlags {
+  readonly from: string | undefined;
+  readonly check: string | undefined;
+}
+
+/** Fits, or checks, from recorded captures; resolves with the exit status. */
+export function fitFromCaptures(file: string, options: FitOptions, files: FitFiles, printer: Printer): number {
+  const loaded = loadRig(file, files.readRig);
+  if ('mistakes' in loaded) {
+    printer.err(loaded.mistakes.map((mistake) => `${mistakeLine(mistake)}\n`).join(''));
+    return 2;
+  }
+  const captures = capturesOf(options.from ?? options.check ?? '', files, printer);
+  if (captures === null) return 2;
+  if (options.check !== undefined) return checkAgainst(loaded, captures, options.json, printer);
+  return fitInto(file, loaded, captures, options, files, printer);
+}
+
+const JITTER_MM = 0.5;
+const LAG_MS = 60;
+
+export function quantityOption(unit: string): (text: string) => number {
+  return (text) => {
+    const value = Number(text.trim().replace(new RegExp(`${unit}$`), ''));
+    if (text.trim() !== '' && value > 0 && Number.isFinite(value)) return value;
+    throw new InvalidArgumentError(`Give a number above 0, such as 0.5${unit}.`);
+  };
+}
+
+const EXPLAINED = `
+Captures are CSV with the columns step,arm,joint,counts,pulse_us,known_deg (more are allowed); the
+steps are leader-still, leader-sweep, leader-point, servo-point and match.
+
+Exit status: 0 done, 1 the run failed, some joint could not be fitted, or a map has drifted,
+2 the input was wrong and nothing was written, 130 interrupted.`;
+
+/** `eidograph fit RIG` */
+export function fitCommand(
+  files: FitFiles = filesOnDisk(),
+  printer: Printer = {
+    out: (text) => void process.stdout.write(text),
+    err: (text) => void process.stderr.write(text),
+  },
+): CommandUnknownOpts {
+  return new Command('fit')
+    .description('measure pots and servos, fit their maps with the error stated, and write them into the profiles')
+    .argument('<rig>', 'the rig file')
+    .option('--from <file>', 'fit from captures recorded before, without a person')
+    .option('--check <file>', 'say whether the maps in the profiles have drifted from new captures')
+    .option('--dry-run', 'show what would change in the profiles, and write nothing')
+    .option('--partly', 'write what could be fitted even when some joint could not')
+    .option('--report <file>', 'write a report with plots there, one HTML file')
+    .option('--json', 'print every figure as one JSON object')
+    .option(
+      '--jitter <mm>',
+      'largest jitter of a tip at rest that smoothing is suggested for',
+      quantityOption('mm'),
+      JITTER_MM,
+    )
+    .option('--lag <ms>', 'longest delay that the suggested smoothing may add', quantityOption('ms'), LAG_MS)
+    .addHelpText('after', EXPLAINED)
+    .action((file, given) => {
+      const { from, check, report, jitter, lag } = given;
+      const options: FitOptions = {
+        from,
+        check,
+        report,
+        json: given.json === true,
+        dryRun: given.dryRun === true,
+        partly: given.partly === true,
+        wish: { jitterM: metres(jitter), lagS: lag / 1000 },
+      };
+      if (from !== undefined && check !== undefined) {
+        printer.err('error: --from and --check are two different things to do; leave one out\n');
+        process.exitCode = 2;
+        return;
+      }
+      process.exitCode = fitFromCaptures(file, options, files, printer);
+    });
+}

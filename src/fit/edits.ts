@@ -1,0 +1,139 @@
+import type { Edit, EditPath } from '../rig/edit.ts';
+import type { PlainValue } from '../rig/flow-text.ts';
+import type { ReadFile } from '../rig/file-reader.ts';
+import { libraryOf } from '../rig/include.ts';
+import type { LocatedNode, Path } from '../rig/located.ts';
+import { nodeAt } from '../rig/located.ts';
+import { mistakeList } from '../rig/mistake.ts';
+import type { RigProfiles } from '../rig/compile.ts';
+import { servosOf } from '../rig/servo-list.ts';
+import { hundredth } from './points-report.ts';
+import { type FitProblem, problem } from './problems.ts';
+import type { FitReport, JointReport, MatchReport, PointsReport, ServoReport } from './report.ts';
+
+/** What is to be put into one file. */
+export interface FileEdits {
+  readonly file: string;
+  readonly edits: readonly Edit[];
+}
+
+export interface PlannedEdits {
+  readonly files: readonly FileEdits[];
+  /** Fitted values that have no place of their own. */
+  readonly problems: readonly FitProblem[];
+}
+
+/** Gains are told to a part in ten thousand: less than any joint's play. */
+const tenThousandth = (value: number): number => Math.round(value * 1e4) / 1e4;
+
+/** Where fitted values belong: in the file, and at the path, that the profile's own values come from. */
+export function plannedEdits(
+  rigFile: string,
+  readFile: ReadFile,
+  profiles: RigProfiles,
+  report: FitReport,
+): PlannedEdits {
+  const nodes = memberNodes(rigFile, readFile);
+  const files = new Map<string, Edit[]>();
+  const problems: FitProblem[] = [];
+  const put = (node: LocatedNode, value: Readonly<Record<string, PlainValue>>): void => {
+    const { file, path } = node.place;
+    const edits = files.get(file) ?? [];
+    // Values one by one: a file keeps its order, and a key that is new goes to the end of its map.
+    for (const [key, each] of Object.entries(value)) edits.push({ path: [...editPath(path), key], value: each });
+    files.set(file, edits);
+  };
+
+  for (const joint of report.joints) {
+    const index = profiles.leader.joints.findIndex(({ name }) => name === joint.joint);
+    const node = nodes.leader === null ? null : nodeAt(nodes.leader, ['joints', index]);
+    const values = leaderValues(joint, profiles.leader.joints[index]?.curve, report.date);
+    if (node !== null && Object.keys(values).length > 0) put(node, values);
+  }
+  const putFollower = (arm: string, joint: string, path: Path, value: Readonly<Record<string, PlainValue>>): void => {
+    const member = profiles.followers.findIndex(({ follower }) => follower === arm);
+    const node = nodes.followers[member] === undefined ? null : nodeAt(nodes.followers[member], path);
+    if (node === null) return;
+    const shared = nodes.followers.some((other, i) => i !== member && isSame(nodeAt(other, path), node));
+    if (shared)
+      problems.push(problem('FIT_NOT_HERE', arm, joint, `its joints stand in ${node.place.file}, for others too`));
+    else put(node, value);
+  };
+  for (const servo of report.servos) {
+    const profile = profiles.followers.find(({ follower }) => follower === servo.follower);
+    const listed = servosOf(profile ?? {}).find(({ servo: { channel } }) => channel === servo.channel);
+    if (listed !== undefined) putFollower(servo.follower, servo.joint, listed.path, servoValues(servo, report.date));
+  }
+  for (const match of report.matches) {
+    const profile = profiles.followers.find(({ follower }) => follower === match.follower);
+    const index = profile?.joints.findIndex(({ name }) => name === match.joint) ?? -1;
+    putFollower(match.follower, match.joint, ['joints', index], matchValues(match, report.date));
+  }
+  return { files: [...files].map(([file, edits]) => ({ file, edits })), problems };
+}
+
+function leaderValues(
+  { points, sweep, still }: JointReport,
+  wasCurve: string | undefined,
+  date: string,
+): Record<string, PlainValue> {
+  const noise = still?.noise_counts ?? sweep?.noise_counts;
+  return {
+    ...(points === null ? {} : { points: points.map, ...(points.curve === wasCurve ? {} : { curve: points.curve }) }),
+    ...(sweep === null || sweep.wraps ? {} : { travel_counts: sweep.span_counts.map(Math.round) }),
+    ...(noise === undefined ? {} : { noise_counts: hundredth(noise) }),
+    ...(points === null ? {} : { fitted: note(points, points.curve, date) }),
+  };
+}
+
+function servoValues({ points }: ServoReport, date: string): Record<string, PlainValue> {
+  return { points: points.map.map(([us, deg]) => [deg, us]), fitted: note(points, points.curve, date) };
+}
+
+function matchValues(
+  { gain, direction, was, offset_deg, points }: MatchReport,
+  date: string,
+): Record<string, PlainValue> {
+  return {
+    gain: tenThousandth(gain.is),
+    ...(direction === was ? {} : { direction }),
+    offset_deg: hundredth(offset_deg.is),
+    fitted: note(points, 'match', date),
+  };
+}
+
+function note({ rms_deg, error_95_deg, used }: PointsReport, method: string, date: string): PlainValue {
+  const error = error_95_deg === null ? {} : { error_deg: hundredth(error_95_deg) };
+  return { date, method, residual_deg: hundredth(rms_deg), ...error, points: used };
+}
+
+interface MemberNodes {
+  readonly leader: LocatedNode | null;
+  readonly followers: readonly LocatedNode[];
+}
+
+/** The profiles of a rig that has loaded without mistakes, with the place of every value. */
+function memberNodes(rigFile: string, readFile: ReadFile): MemberNodes {
+  const mistakes = mistakeList();
+  const library = libraryOf(readFile, mistakes);
+  const rig = library.open(rigFile, { file: rigFile, line: 1, column: 1, path: '' });
+  if (rig?.kind !== 'map') return { leader: null, followers: [] };
+  const leader = rig.entries.get('leader')?.value;
+  const followers = rig.entries.get('followers')?.value;
+  return {
+    leader: leader === undefined ? null : library.profile(leader, 'leader'),
+    followers:
+      followers?.kind === 'list' ? followers.items.flatMap((one) => library.profile(one, 'follower') ?? []) : [],
+  };
+}
+
+function isSame(a: LocatedNode | null, b: LocatedNode): boolean {
+  return a !== null && a.place.file === b.place.file && a.place.path === b.place.path;
+}
+
+/** `joints[1].servo` as the steps that lead there. */
+function editPath(path: string): EditPath {
+  return [...path.matchAll(/\[(\d+)\]|([\w-]+)/g)].map(([, index, key]) =>
+    index === undefined ? (key ?? '') : Number(index),
+  );
+}
