@@ -1,3 +1,4 @@
+import type { Burden } from '../follower/burden.ts';
 import { BLOCKS, LIMITS } from '../follower/reasons.ts';
 import type { State } from '../follower/states.ts';
 import { ILLS, type Ill } from '../leader/health.ts';
@@ -52,6 +53,10 @@ export interface FollowerStatus {
     readonly target_deg: number;
     readonly angle_deg: number;
     readonly range_deg: readonly [number, number];
+    /** Torque against what its motor may give; null where the file knows no motor. */
+    readonly load_share: number | null;
+    /** Slow estimate of the motor's warmth, 0 to 1; null where the file knows no motor. */
+    readonly warmth: number | null;
     /** What holds it back, of `LIMITS`. */
     readonly limited_by: readonly (keyof typeof LIMITS)[];
   }[];
@@ -111,9 +116,15 @@ function followerStatus(stage: FollowerStage, common: Shared, nowUs: number): Fo
       target_deg: (arm.targetRad[j] as number) * DEG,
       angle_deg: (arm.governor.x[j] as number) * DEG,
       range_deg: [joint.minRad * DEG, joint.maxRad * DEG] as const,
+      ...carried(arm.burden, j),
       limited_by: named(LIMITS, arm.limits[j] as number),
     })),
   };
+}
+
+function carried(burden: Burden | null, j: number): { load_share: number | null; warmth: number | null } {
+  const share = finite(burden?.shares[j] ?? Number.NaN);
+  return { load_share: share, warmth: share === null ? null : (burden?.warmth[j] ?? null) };
 }
 
 function named<T extends string>(bits: Readonly<Record<T, number>>, value: number): T[] {

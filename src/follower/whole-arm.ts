@@ -1,4 +1,6 @@
-import { BREAKS, certificate, type LoadShares } from '../arm/certificate.ts';
+import { BREAKS, certificate } from '../arm/certificate.ts';
+import { effort } from '../arm/effort.ts';
+import { loads } from '../arm/load.ts';
 import type { Governor } from './governor.ts';
 import { LIMITS } from './reasons.ts';
 import type { WholeArmSpec } from './spec.ts';
@@ -27,10 +29,12 @@ const REASON: Readonly<Record<number, number>> = {
   [BREAKS.load]: LIMITS.load,
 };
 
-/** @param loads torque shares of a pose, where the profile limits load; null: loads are only told */
-export function wholeArm(spec: WholeArmSpec, motion: Governor, loads: LoadShares | null): WholeArm {
+export function wholeArm(spec: WholeArmSpec, motion: Governor): WholeArm {
   const n = motion.x.length;
-  const judge = certificate(spec.arm, n, motion.accel, spec, loads).judge;
+  const worst = spec.limitLoad ? loads(spec.arm, n).worst : null;
+  const judge = certificate(spec.arm, n, motion.accel, spec, worst).judge;
+  const give = spec.limitAccel ? effort(spec.arm, n) : null;
+  const gain = new Float64Array(n);
   const cap = new Float64Array(1);
   const x0 = new Float64Array(n);
   const v0 = new Float64Array(n);
@@ -51,6 +55,29 @@ export function wholeArm(spec: WholeArmSpec, motion: Governor, loads: LoadShares
       motion.x[j] = (stop.x[j] as number) + s * ((far.x[j] as number) - (stop.x[j] as number));
       motion.v[j] = (stop.v[j] as number) + s * ((far.v[j] as number) - (stop.v[j] as number));
     }
+  };
+
+  /**
+   * Speeds up only as hard as the motors can; a joint that brakes is left alone. The milder step lies between coasting
+   * and the governor's, both short of where the joint would have to brake for its range.
+   * @returns true when it was milder
+   */
+  const milder = (dtS: Float64Array, motors: NonNullable<typeof give>): boolean => {
+    const dt = dtS[0] as number;
+    for (let j = 0; j < n; j++) {
+      const faster = Math.abs(motion.v[j] as number) > Math.abs(v0[j] as number);
+      gain[j] = faster && dt > 0 ? ((motion.v[j] as number) - (v0[j] as number)) / dt : 0;
+    }
+    motors.share(x0, v0, gain, share);
+    const s = share[0] as number;
+    if (s >= 1) return false;
+    for (let j = 0; j < n; j++) {
+      if (gain[j] === 0) continue;
+      const coast = (x0[j] as number) + (v0[j] as number) * dt;
+      motion.x[j] = coast + s * ((motion.x[j] as number) - coast);
+      motion.v[j] = (v0[j] as number) + s * ((motion.v[j] as number) - (v0[j] as number));
+    }
+    return true;
   };
 
   const freeOthers = (dtS: Float64Array, weigh: boolean): void => {
@@ -80,8 +107,9 @@ export function wholeArm(spec: WholeArmSpec, motion: Governor, loads: LoadShares
       x0.set(motion.x);
       v0.set(motion.v);
       motion.step(dtS);
+      const mild = give !== null && milder(dtS, give) ? LIMITS.load : 0;
       const broken = judge(x0, motion.x, motion.v, dtS, cap, weigh);
-      if (broken === 0) return 0;
+      if (broken === 0) return mild;
       keep(far);
       brake(dtS);
       keep(stop);
