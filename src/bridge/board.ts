@@ -134,6 +134,11 @@ export function board(plan: CompiledBoard, port: Port, clock: Clock, listener: B
         tell('reboot', parts);
         return;
       case 'stranger':
+        // It has answered: there is nothing to wait or ask for. And nobody may go on to move it.
+        cancelNudge();
+        cancelWaiting();
+        if (is.ready) tell('reboot', parts);
+        is.ready = false;
         listener.say({ kind: 'stranger', address, board: event.board, wanted: plan.plan.boardName ?? '' });
         return;
       case 'send':

@@ -57,11 +57,12 @@ describe('the stamps of readings', () => {
         const arrived = chunks.map(({ afterUs, boardUs }) => ({ atUs: (atUs += afterUs), boardUs }));
         stamped(arrived).forEach((told, i) => {
           const { atUs: nowUs, boardUs } = arrived[i] as (typeof arrived)[number];
+          const earliestUs = arrived[i - 1]?.atUs ?? Number.NEGATIVE_INFINITY;
           expect(told).toHaveLength(boardUs.length);
           for (const us of told) {
             expect(Number.isSafeInteger(us)).toBe(true);
             expect(us).toBeLessThanOrEqual(nowUs);
-            if (i > 0) expect(us).toBeGreaterThanOrEqual(arrived[i - 1]?.atUs as number);
+            expect(us).toBeGreaterThanOrEqual(earliestUs);
           }
         });
       }),
