@@ -1,3 +1,4 @@
+import { followers as makeFollowers } from '../follower/follower.ts';
 import { followerStage, type FollowerStage, type Start } from './follower-stage.ts';
 import { leaderStage, type LeaderStage } from './leader-stage.ts';
 import type { Plan } from './plan.ts';
@@ -28,9 +29,9 @@ export function drive(plan: Plan, starts: readonly Start[], startUs: number): Dr
   );
   const leader = leaderStage(plan, common);
   const onBoard = Array.from(common.busy, (): FollowerStage[] => []);
-  const followers = plan.followers.map((spec, f) => {
+  const followers = makeFollowers(plan.followers).map((arm, f) => {
     const start = starts[f] as Start;
-    return followerStage(spec, f, leader, common, start, onBoard[start.board] as FollowerStage[]);
+    return followerStage(arm, f, leader, common, start, onBoard[start.board] as FollowerStage[]);
   });
   return {
     plan,

@@ -1,5 +1,5 @@
 import { US_PER_MS, US_PER_S } from '../clock/clock.ts';
-import { follower, type Follower } from '../follower/follower.ts';
+import type { Follower } from '../follower/follower.ts';
 import { BLOCKS } from '../follower/reasons.ts';
 import type { FollowerSpec } from '../follower/spec.ts';
 import { authority, STAGGER_US } from './authority.ts';
@@ -56,14 +56,14 @@ const PERIODS_MAX = 2;
 
 /** @param siblings the stages made before on the same board; filled by `drive` as stages are made */
 export function followerStage(
-  spec: FollowerSpec,
+  arm: Follower,
   index: number,
   lead: LeaderStage,
   common: Shared,
   start: Start,
   siblings: FollowerStage[],
 ): FollowerStage {
-  const arm = follower(spec);
+  const { spec } = arm;
   const is = standing();
   const dtS = new Float64Array(1);
   const pending = outbox();

@@ -1,11 +1,16 @@
 import type { Frame } from '../wire/types.ts';
-import { governor, type Governor } from './governor.ts';
+import { burden, type Burden } from './burden.ts';
+import { type Governor, governors } from './governor.ts';
+import { type Outcome, outcome } from './outcome.ts';
 import { LIMITS } from './reasons.ts';
-import { remap } from './remap.ts';
-import { servos } from './servos.ts';
+import { type Remap, remaps } from './remap.ts';
+import { type Rows, rowsOf } from './rows.ts';
+import { type Servos, servos } from './servos.ts';
 import type { FollowerJointSpec, FollowerSpec, TipSpec } from './spec.ts';
+import { type SpeedLimits, speedLimits } from './speed-limits.ts';
 import { tipWish } from './tip-wish.ts';
 import { wholeArm } from './whole-arm.ts';
+import { type Wish, wishes } from './wish.ts';
 
 /**
  * The follower kernel: a pose in, a command out. It keeps what the arm was last told, for the follower's whole life;
@@ -25,6 +30,8 @@ export interface Follower {
   /** Added to what the leader asks, radians; grows while the clutch is out. */
   readonly clutchRad: Float64Array;
   readonly frame: Frame;
+  /** What it carries; null where its geometry is not known. */
+  readonly burden: Burden | null;
   /** Puts the arm, standing, at a pose (clamped to its ranges): what the first pulse will say. */
   place(poseRad: Float64Array): void;
   /** Wishes for where the arm is, and starts the deadband anew from there. */
@@ -36,6 +43,11 @@ export interface Follower {
    * it without lag.
    */
   match(leaderRad: Float64Array, leaderRadS: Float64Array): void;
+  /**
+   * Takes angles of its own instead of a leader's pose, and the speeds that go with them: no deadband, inside the range,
+   * and followed without lag where the limits allow. `clutched` as in `want`.
+   */
+  pursue(anglesRad: Float64Array, speedsRadS: Float64Array, clutched: boolean): void;
   /** Sends every joint home instead. */
   wantRest(): void;
   /** Sets speed limits to `share[0]` of the profile's; `together`: joints slow down so that all arrive at once. */
@@ -63,37 +75,59 @@ export interface Follower {
   passed(withinRad: number): boolean;
 }
 
-/** A command this far outside its range is a bug of ours, not rounding, radians. */
+/** An arm this near its rest pose is there, radians. */
 const ROUNDING_RAD = 1e-9;
 const STOPPED_SHORT = LIMITS.keep_out | LIMITS.load;
 /** Slower than this a joint stands, rad/s. */
 const STANDING_RAD_S = 1e-3;
 /** A tip target left this far away is out of reach, metres. */
 const OUT_OF_REACH_M = 0.001;
-/** A joint counts as moving at its limit from this share of it on. */
-const AT_LIMIT = 0.999;
-/** A joint this close to its target hardly needs a share of the speed, radians. */
-const CLOSE_RAD = 1e-6;
 
-export function follower(spec: FollowerSpec): Follower {
+/** What one arm uses of what is made for all arms together: see `rows.ts`. */
+interface Parts {
+  readonly rows: Rows;
+  readonly motion: Governor;
+  readonly map: Remap;
+  readonly wish: Wish;
+  readonly speeds: SpeedLimits;
+  readonly came: Outcome;
+  readonly gears: Servos;
+}
+
+/** The followers of one drive. */
+export function followers(specs: readonly FollowerSpec[]): readonly Follower[] {
+  const rows = rowsOf(specs.map((spec) => spec.joints.length));
+  const motions = governors(specs.map((spec) => spec.joints));
+  const maps = remaps(specs);
+  const asked = wishes(specs, motions.all);
+  const speeds = speedLimits(specs, motions.all, asked.held);
+  const came = outcome(specs, motions.all, asked.limits);
+  const gears = servos(specs.map((spec) => spec.servos));
+  return specs.map((spec, f) =>
+    follower(spec, {
+      rows: rows[f] as Rows,
+      motion: motions.each[f] as Governor,
+      map: maps[f] as Remap,
+      wish: asked.each[f] as Wish,
+      speeds,
+      came,
+      gears: gears[f] as Servos,
+    }),
+  );
+}
+
+function follower(spec: FollowerSpec, parts: Parts): Follower {
+  const { rows, motion, map, wish, speeds, came, gears } = parts;
   const joints = spec.joints;
   const n = joints.length;
-  const motion = governor(joints);
-  const map = remap(spec);
-  const gears = servos(spec.servos);
   const tip = spec.whole?.tip ? tipWish(spec.whole, spec.whole.tip, joints) : null;
   const feeds = joints.map((joint, j) => feedsOf(joint, tip?.reaches[j] === 1 ? spec.whole?.tip : null));
-  const whole = spec.whole === undefined ? null : wholeArm(spec.whole, motion, null);
+  const whole = spec.whole === undefined ? null : wholeArm(spec.whole, motion);
+  const load = spec.whole === undefined ? null : burden(spec.whole.arm, n);
   const rest = Float64Array.from(joints, (j) => j.restRad);
   const min = Float64Array.from(joints, (j) => j.minRad);
   const max = Float64Array.from(joints, (j) => j.maxRad);
-  const top = Float64Array.from(joints, (j) => j.speedRadS);
-  const wantedRad = Float64Array.from(rest);
-  const mixed = new Float64Array(n);
-  const clutchRad = new Float64Array(n);
-  const clipped = new Uint8Array(n);
-  const held = new Uint8Array(n);
-  const limits = new Uint8Array(n);
+  const { askedRad, wantedRad, clutchRad, held, limits } = wish;
   const frame: Frame = {
     pulsesUs: new Float64Array(spec.servos.length),
     sentUs: new Float64Array(spec.servos.length),
@@ -106,26 +140,10 @@ export function follower(spec: FollowerSpec): Follower {
   /** The motion is a wish, and may be refused for its load; going home may not. */
   let wishing = false;
 
-  /** Writes what holds each joint back, as far as the wish tells, and lets the held ones brake. */
-  const noteLimits = (): void => {
-    const tooFar = tip !== null && (tip.leftM[0] as number) > OUT_OF_REACH_M;
-    for (let j = 0; j < n; j++) {
-      motion.braking[j] = held[j] as number;
-      const inDeadband = target[j] !== wantedRad[j] && clipped[j] === 0;
-      limits[j] =
-        (tooFar && tip?.reaches[j] === 1 ? LIMITS.reach : 0) |
-        (clipped[j] === 1 ? LIMITS.range : 0) |
-        (inDeadband ? LIMITS.deadband : 0) |
-        (held[j] === 1 ? LIMITS.sick : 0);
-    }
-  };
-
-  const check = (): void => {
-    for (let j = 0; j < n; j++) {
-      const x = motion.x[j] as number;
-      const inside = x >= (min[j] as number) - ROUNDING_RAD && x <= (max[j] as number) + ROUNDING_RAD;
-      if (!inside) throw new RangeError(`${spec.name}: joint ${joints[j]?.name} left its range`);
-    }
+  /** Says of the joints that reach for the tip that they cannot. */
+  const noteReach = (): void => {
+    if (tip === null || !((tip.leftM[0] as number) > OUT_OF_REACH_M)) return;
+    for (let j = 0; j < n; j++) if (tip.reaches[j] === 1) limits[j] = (limits[j] as number) | LIMITS.reach;
   };
 
   const self: Follower = {
@@ -137,6 +155,7 @@ export function follower(spec: FollowerSpec): Follower {
     held,
     clutchRad,
     frame,
+    burden: load,
     place(poseRad) {
       for (let j = 0; j < n; j++) {
         motion.x[j] = Math.min(Math.max(poseRad[j] as number, min[j] as number), max[j] as number);
@@ -150,35 +169,45 @@ export function follower(spec: FollowerSpec): Follower {
       wantedRad.set(motion.x);
     },
     want(leaderRad, clutched) {
-      map.mix(leaderRad, mixed);
-      tip?.reach(leaderRad, mixed);
-      for (let j = 0; j < n; j++) {
-        if (held[j] === 1) wantedRad[j] = target[j] as number;
-        else if (clutched) clutchRad[j] = (wantedRad[j] as number) - (mixed[j] as number);
-        else wantedRad[j] = (mixed[j] as number) + (clutchRad[j] as number);
-      }
-      map.settle(wantedRad, target, clipped);
-      motion.targetSpeed.fill(0);
+      map.mix(leaderRad, askedRad);
+      tip?.reach(leaderRad, askedRad);
+      wish.settle(clutched);
+      noteReach();
       wishing = true;
-      noteLimits();
     },
     match(leaderRad, leaderRadS) {
-      map.mix(leaderRad, mixed);
+      map.mix(leaderRad, askedRad);
       map.mixSpeed(leaderRadS, motion.targetSpeed);
       if (tip !== null) {
         // How fast the solved joints will move is not known: they follow with the governor's lag.
-        tip.reach(leaderRad, mixed);
+        tip.reach(leaderRad, askedRad);
         for (let j = 0; j < n; j++) if (tip.reaches[j] === 1) motion.targetSpeed[j] = 0;
       }
       for (let j = 0; j < n; j++) {
-        const wish = held[j] === 1 ? (target[j] as number) : (mixed[j] as number) + (clutchRad[j] as number);
-        wantedRad[j] = wish;
-        target[j] = Math.min(Math.max(wish, min[j] as number), max[j] as number);
-        clipped[j] = target[j] === wish ? 0 : 1;
-        if (clipped[j] === 1) motion.targetSpeed[j] = 0;
+        const want = held[j] === 1 ? (target[j] as number) : (askedRad[j] as number) + (clutchRad[j] as number);
+        const inside = Math.min(Math.max(want, min[j] as number), max[j] as number);
+        wantedRad[j] = want;
+        target[j] = inside;
+        if (inside !== want) motion.targetSpeed[j] = 0;
+        motion.braking[j] = held[j] as number;
+        limits[j] = (inside !== want ? LIMITS.range : 0) | (held[j] === 1 ? LIMITS.sick : 0);
+      }
+      noteReach();
+      wishing = true;
+    },
+    pursue(anglesRad, speedsRadS, clutched) {
+      for (let j = 0; j < n; j++) {
+        const angle = anglesRad[j] as number;
+        if (clutched) clutchRad[j] = (wantedRad[j] as number) - angle;
+        const want = held[j] === 1 ? (target[j] as number) : angle + (clutchRad[j] as number);
+        const inside = Math.min(Math.max(want, min[j] as number), max[j] as number);
+        wantedRad[j] = want;
+        target[j] = inside;
+        motion.targetSpeed[j] = clutched || held[j] === 1 || inside !== want ? 0 : (speedsRadS[j] as number);
+        motion.braking[j] = held[j] as number;
+        limits[j] = (inside !== want ? LIMITS.range : 0) | (held[j] === 1 ? LIMITS.sick : 0);
       }
       wishing = true;
-      noteLimits();
     },
     wantRest() {
       wantedRad.set(rest);
@@ -189,39 +218,23 @@ export function follower(spec: FollowerSpec): Follower {
       motion.braking.fill(0);
     },
     limitSpeed(share, together) {
-      const s = share[0] as number;
       gentle = together;
-      if (!together) {
-        for (let j = 0; j < n; j++) motion.speed[j] = s * (top[j] as number);
-        return;
-      }
-      let longestS = 0;
-      for (let j = 0; j < n; j++) {
-        const away = Math.abs((target[j] as number) - (motion.x[j] as number));
-        if (held[j] === 0) longestS = Math.max(longestS, away / (top[j] as number));
-      }
-      for (let j = 0; j < n; j++) {
-        const away = Math.abs((target[j] as number) - (motion.x[j] as number)) + CLOSE_RAD;
-        motion.speed[j] = s * (longestS > 0 ? Math.min(top[j] as number, away / longestS) : (top[j] as number));
-      }
+      if (together) speeds.together(rows, share);
+      else speeds.open(rows, share);
     },
     step(dtS) {
       let reason = 0;
       if (whole === null) motion.step(dtS);
       else reason = whole.step(dtS, gentle, wishing);
-      check();
-      for (let j = 0; j < n; j++) {
-        if (reason !== 0 && motion.x[j] !== target[j]) limits[j] = (limits[j] as number) | reason;
-        const atLimit = motion.v[j] !== 0 && Math.abs(motion.v[j] as number) >= AT_LIMIT * (motion.speed[j] as number);
-        if (atLimit && motion.braking[j] === 0) limits[j] = (limits[j] as number) | LIMITS.speed;
-      }
+      came.check(rows, spec);
+      came.note(rows, reason);
       gears.pulses(motion.x, frame.pulsesUs);
     },
     brake(dtS) {
       // Braking needs no certificate: each step was taken because the arm can brake from it.
       motion.braking.fill(1);
       motion.step(dtS);
-      check();
+      came.check(rows, spec);
       gears.pulses(motion.x, frame.pulsesUs);
     },
     aim() {

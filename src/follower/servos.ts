@@ -1,26 +1,30 @@
+import type { PointMap } from '../map/points.ts';
+import { type Rows, rowsOf } from './rows.ts';
 import type { ServoSpec } from './spec.ts';
+import { weightedSums } from './weighted.ts';
 
-/** Joint angles to servo pulses, through measured points, never beyond them. */
+/** One arm's joint angles to servo pulses, through measured points, never beyond them. */
 export interface Servos {
   /** pulsesUs[k] = map_k(sum_j weight_kj angle_j). */
   pulses(anglesRad: Float64Array, pulsesUs: Float64Array): void;
 }
 
-export function servos(specs: readonly ServoSpec[]): Servos {
-  const n = specs.length;
-  const turned = new Float64Array(n);
-  return {
-    pulses(anglesRad, pulsesUs) {
-      for (let k = 0; k < n; k++) {
-        const { turns, map } = specs[k] as ServoSpec;
-        let sum = 0;
-        for (let i = 0; i < turns.length; i++) {
-          const turn = turns[i] as (typeof turns)[number];
-          sum += turn.weight * (anglesRad[turn.joint] as number);
-        }
-        turned[k] = sum;
-        map.apply(turned, k, pulsesUs, k);
-      }
-    },
+/** @param arms the servos of each arm */
+export function servos(arms: readonly (readonly ServoSpec[])[]): readonly Servos[] {
+  const all = arms.flat();
+  const maps = all.map((servo) => servo.map);
+  const { first, from, weight } = weightedSums(all.map((servo) => servo.turns));
+  const turned = new Float64Array(1);
+  const turn = (rows: Rows, anglesRad: Float64Array, pulsesUs: Float64Array): void => {
+    for (let r = rows.from; r < rows.to; r++) {
+      let sum = 0;
+      for (let t = first[r] as number; t < (first[r + 1] as number); t++)
+        sum += (weight[t] as number) * (anglesRad[from[t] as number] as number);
+      turned[0] = sum;
+      (maps[r] as PointMap).apply(turned, 0, pulsesUs, r - rows.from);
+    }
   };
+  return rowsOf(arms.map((arm) => arm.length)).map((rows) => ({
+    pulses: (anglesRad, pulsesUs) => turn(rows, anglesRad, pulsesUs),
+  }));
 }

@@ -1,5 +1,5 @@
 import { describe, expect, it } from 'vitest';
-import { type Follower, follower } from '../../src/follower/follower.ts';
+import { type Follower, followers } from '../../src/follower/follower.ts';
 import { LIMITS } from '../../src/follower/reasons.ts';
 import type { FollowerJointSpec } from '../../src/follower/spec.ts';
 import { DEG, followerJoint, followerSpec } from '../plans.ts';
@@ -8,7 +8,7 @@ const SOUND = Uint8Array.of(0, 0);
 const FULL = Float64Array.of(1);
 
 function arm(...joints: FollowerJointSpec[]): Follower {
-  const made = follower(followerSpec(joints.length > 0 ? joints : undefined));
+  const made = followers([followerSpec(joints.length > 0 ? joints : undefined)])[0] as Follower;
   made.hold(SOUND);
   made.limitSpeed(FULL, false);
   return made;

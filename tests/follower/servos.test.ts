@@ -15,7 +15,7 @@ const mirrored = compileMap(
 
 function pulses(specs: readonly ServoSpec[], anglesDeg: readonly number[]): number[] {
   const out = new Float64Array(specs.length);
-  servos(specs).pulses(
+  servos([specs])[0]?.pulses(
     Float64Array.from(anglesDeg, (deg) => deg * DEG),
     out,
   );
