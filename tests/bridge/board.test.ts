@@ -46,22 +46,22 @@ class Desk {
   readonly words: Word[] = [];
   readonly board: Board;
   /** Takes what is written and is busy with it until `idle`. */
-  canTake = true;
+  readonly #way = { canTake: true };
   #listener: PortListener | null = null;
   readonly #stages: readonly FollowerStage[];
 
   constructor(plan: CompiledBoard) {
-    const desk = this;
+    const [way, written] = [this.#way, this.written];
     const port: Port = {
       address: plan.address.text,
       start: (listener) => void (this.#listener = listener),
       get canTake() {
-        return desk.canTake;
+        return way.canTake;
       },
       write(bytes) {
-        if (!desk.canTake) return false;
-        desk.canTake = false;
-        desk.written.push(Buffer.from(bytes).toString('latin1'));
+        if (!way.canTake) return false;
+        way.canTake = false;
+        written.push(Buffer.from(bytes).toString('latin1'));
         return true;
       },
       close: () => Promise.resolve(),
@@ -81,7 +81,7 @@ class Desk {
   }
 
   opens(): this {
-    this.canTake = true;
+    this.#way.canTake = true;
     this.port.opened();
     return this;
   }
@@ -92,13 +92,13 @@ class Desk {
   }
 
   idles(): this {
-    this.canTake = true;
+    this.#way.canTake = true;
     this.port.idle();
     return this;
   }
 
   closes(code: 'PORT_CLOSED' | 'PORT_BUSY' | 'PORT_MISSING'): this {
-    this.canTake = false;
+    this.#way.canTake = false;
     this.port.closed({ code, address: 'sim:arm?name=wren', detail: '' }, 100);
     return this;
   }
