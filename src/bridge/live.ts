@@ -8,7 +8,7 @@ import type { Port, PortFaultCode } from '../port/types.ts';
 import type { CompiledBoard, CompiledRig } from '../rig/compiled.ts';
 import { board as makeBoard, type Board, type Word } from './board.ts';
 import { pipeline } from './pipeline.ts';
-import { eventSource } from './source.ts';
+import { eventSource, type Stamped } from './source.ts';
 import type { WakeMemory } from './wake-memory.ts';
 
 export interface LiveOptions {
@@ -37,6 +37,10 @@ export interface Live {
   readonly events$: Observable<DriveEvent>;
   /** @param value only for `pace`: share of the speed limits, 0 to 1 */
   key(key: Key, follower?: number, value?: number): void;
+  /** Delivers what no board says: a take that leads. */
+  push(event: Stamped): void;
+  /** Moves one servo by pulse, to measure it; NaN microseconds bring it home. See `JogEvent`. */
+  jog(follower: number, servo: number, pulseUs: number): void;
   status(): LiveStatus;
   /** Resolves true as soon as no arm is moving, false after `limitUs`. */
   still(limitUs: number): Promise<boolean>;
@@ -100,6 +104,10 @@ export function live(options: LiveOptions): Live {
     events$: source.events$,
     key(key, follower = ALL, value = 0) {
       source.push({ kind: 'key', tUs: clock.nowUs(), key, follower, value });
+    },
+    push: source.push,
+    jog(follower, servo, pulseUs) {
+      source.push({ kind: 'jog', tUs: clock.nowUs(), follower, servo, pulseUs });
     },
     status: () => ({
       ...driveStatus(drive, clock.nowUs()),
