@@ -215,6 +215,9 @@ export const CAUTIONS: readonly string[] = [
   'Local rules and licensed practice come first.',
 ];
 
+/** Where there is no screen to ask on. */
+export const INTERRUPTED = 'every follower brakes and holds; interrupt once more to leave';
+
 /** How a run ended, by the reason that `--json` names. */
 export const ENDINGS = {
   interrupted: 'interrupted; every follower has braked',

@@ -31,7 +31,7 @@ says what has to be known.
 Exit status: 0 done, 1 the run failed, 2 the input was wrong, 130 interrupted.`;
 
 /** The whole command line. Commands set `process.exitCode`; what commander ends early is thrown to `runProgram`. */
-export function program(): CommandUnknownOpts {
+function program(): CommandUnknownOpts {
   const root = new Command('eidograph')
     .description('Drive several robot arms of different sizes with one hand-held leader arm.')
     .version(version())

@@ -12,15 +12,7 @@ import { rigOrMistakes } from './load.ts';
 import { MISTAKES_MAX, readingsCsv, type ReadingsCsv } from './readings-csv.ts';
 import { startPoses } from './start-poses.ts';
 
-/** Where a trace reads and writes. */
-export interface TraceStreams {
-  /** Text. */
-  readonly input: AsyncIterable<string>;
-  readonly output: Writable;
-  /** Whether the output is closed at the end: standard output is not ours to close. */
-  readonly ownsOutput: boolean;
-}
-
+/** Where a trace reads and writes, and speaks. */
 export interface TraceWorld {
   /** Standard input, or null where somebody's keyboard is. */
   readonly stdin: Readable | null;
@@ -42,7 +34,7 @@ const STEP_US = 10 * US_PER_S;
  * Readings in, commands out, in portions that wait until the last one has left.
  * @param csv afterwards it holds the mistakes, if there are any
  */
-export async function* tracing(
+async function* tracing(
   rig: CompiledRig,
   from: readonly (Float64Array | null)[],
   input: AsyncIterable<string>,

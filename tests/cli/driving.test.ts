@@ -22,6 +22,8 @@ const HEAVY = smallRig({
   ],
 });
 const UNTIL_FAST_MS = 2_500;
+/** A servo gets a new pulse when its board next sends one: every 20 ms. */
+const REFRESH_MS = 20;
 
 interface Driven extends Stage {
   readonly run: Promise<number>;
@@ -128,6 +130,7 @@ describe('A run at a terminal', () => {
     at.type('\x03\x03');
     await at.ended(at.run, 2_000);
     const wren = at.boards.get('wren')?.arms[0];
+    await at.pass(REFRESH_MS);
     const before = wren?.pulseUs(0);
     await at.pass(2_000);
     expect(wren?.pulseUs(0)).toBe(before);
@@ -241,6 +244,7 @@ describe.each([
     happens(at);
     expect(await at.ended(at.run, 1_500)).toBe(0);
     const wren = at.boards.get('wren')?.arms[0];
+    await at.pass(REFRESH_MS);
     const before = wren?.pulseUs(0);
     await at.pass(1_000);
     expect(wren?.pulseUs(0)).toBe(before);
@@ -286,6 +290,17 @@ describe('A run for a time', () => {
     expect(await at.ended(at.run, 20_000)).toBe(1);
     expect(at.err()).toContain('not parked: stork; look to the arm');
     expect(at.out()).toContain('ended: unparked');
+  });
+
+  it('names it again when a terminal has been given back', async () => {
+    const at = drive({ unasked: true, forUs: 6_000_000 });
+    await at.pass(5_000);
+    at.boards.get('stork')?.far.unplug();
+    expect(await at.ended(at.run, 20_000)).toBe(1);
+    expect(at.isOpen()).toBe(false);
+    expect(at.err()).toContain(
+      'not parked: stork; look to the arm before its power goes\nsmall: ended with a follower',
+    );
   });
 
   it('does not wait for ever for an arm whose port takes nothing', async () => {
@@ -343,9 +358,18 @@ describe('A run without a terminal', () => {
     at.signal('SIGINT');
     await at.pass(1_000);
     expect(at.out()).toMatch(/wren: following -> holding: held/);
-    expect(at.err()).toContain('All brake and hold.');
+    expect(at.err()).toContain('every follower brakes and holds; interrupt once more to leave\n');
     at.signal('SIGINT');
     expect(await at.ended(at.run, 1_500)).toBe(130);
+  });
+
+  it('that moves nothing leaves on the first, with status 130', async () => {
+    for (const harmless of [{ real: false }, { dry: true }]) {
+      const at = drive({ unasked: true, ...harmless }, { terminal: false });
+      await at.pass(2_000);
+      at.signal('SIGINT');
+      expect(await at.ended(at.run, 1_500)).toBe(130);
+    }
   });
 
   it('as JSON prints ten lines a second, each a whole status, and why it ended on the last', async () => {

@@ -3,7 +3,7 @@ import { BLOCK_WORDS, CLUTCHED, faultWords, GOING, LIMIT_WORDS, STATE_WORDS, WAK
 import type { FollowerStatus } from '../../drive/status.ts';
 import type { State } from '../../follower/states.ts';
 import { bar } from './bar.ts';
-import { degrees, milliseconds } from './figures.ts';
+import { degrees, milliseconds, percent } from './figures.ts';
 import { columnsFor, fitted, inColumns, type Line, span, wrapped } from './layout.ts';
 import { damage } from './leader-block.ts';
 import { portSpan } from './port-word.ts';
@@ -31,6 +31,8 @@ const SMALL_BAR = 13;
 const BAR_MIN = 10;
 const BAR_MAX = 48;
 const STANDS_DEG = 0.05;
+/** From this share on a motor's load or warmth is shown. */
+const STRAINED = 0.8;
 
 type Joint = FollowerStatus['joints'][number];
 
@@ -99,12 +101,12 @@ const LIMITS_SHOWN = (Object.keys(LIMIT_WORDS) as (keyof typeof LIMIT_WORDS)[]).
 
 /** What limits its joints, deadbands left out: standing in one is as it should be. */
 function limitWords({ joints, state }: FollowerStatus): string {
-  return LIMITS_SHOWN.map((kind) => {
+  const strained = joints.flatMap((joint) => strainWords(joint).map((text) => `${text}: ${joint.joint}`));
+  const limited = LIMITS_SHOWN.map((kind) => {
     const names = joints.filter((joint) => limitsOf(joint, state).includes(kind)).map(({ joint }) => joint);
     return names.length === 0 ? '' : `${LIMIT_WORDS[kind]}: ${names.join(' ')}`;
-  })
-    .filter((text) => text !== '')
-    .join(', ');
+  });
+  return [...strained, ...limited].filter((text) => text !== '').join(', ');
 }
 
 /** Why it does not follow and what to do, one sentence a reason. */
@@ -159,6 +161,14 @@ function limitsOf({ limited_by, angle_deg, target_deg }: Joint, state: State): J
   return limited_by.filter((limit) => (limit === 'deadband' ? follows && stands : follows || limit === 'sick'));
 }
 
+/** A motor near what it may give, or near what it may take in warmth. */
+function strainWords({ load_share, warmth }: Joint): readonly string[] {
+  return [
+    load_share !== null && load_share >= STRAINED ? `load ${percent(load_share)}` : '',
+    warmth !== null && warmth >= STRAINED ? `warmth ${percent(warmth)}` : '',
+  ].filter((text) => text !== '');
+}
+
 /** Name, range and bar, angle, target, limits; on a narrow screen only name, bar and angle, and limits as they fit. */
 function largeJoint(joint: Joint, state: State, nameWidth: number, width: number, shapes: Shapes): Line {
   const wide = width >= 76;
@@ -168,12 +178,13 @@ function largeJoint(joint: Joint, state: State, nameWidth: number, width: number
   const angle = span(` ${degrees(joint.angle_deg)}${shapes.degree}`, 'strong');
   const target = span(wide ? `  ${shapes.target}${degrees(joint.target_deg)}${shapes.degree}` : '', 'moving');
   const limited = limitsOf(joint, state);
-  const limits = limited.map((limit) => LIMIT_WORDS[limit]).join(', ');
+  const strain = strainWords(joint);
+  const limits = [...strain, ...limited.map((limit) => LIMIT_WORDS[limit])].join(', ');
   // Two limits at once where there is room for them; the bar must not jump as limits come and go.
   const limitsRoom = width >= 96 ? 26 : 14;
   const used = INDENT + [left, right, angle, target].reduce((sum, { text }) => sum + text.length, 0) + limitsRoom;
   const barWidth = Math.min(Math.max(width - used, BAR_MIN), BAR_MAX);
-  const onlyDeadband = limited.every((limit) => limit === 'deadband');
+  const onlyDeadband = strain.length === 0 && limited.every((limit) => limit === 'deadband');
   return [
     left,
     ...bar(joint, barWidth, shapes),

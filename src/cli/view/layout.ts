@@ -15,7 +15,7 @@ export function span(text: string, tone: Tone = 'plain'): Span {
 }
 
 /** What comes from a board or a system call must not steer the terminal it is shown on. */
-export function printable(text: string): string {
+function printable(text: string): string {
   return text.replace(/\p{C}/gu, '?');
 }
 

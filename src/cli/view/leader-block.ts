@@ -2,7 +2,7 @@ import type { BoardStatus } from '../../bridge/live.ts';
 import { FROZEN, HEALTH_WORDS, supplyWord } from '../../bridge/words.ts';
 import type { LeaderStatus } from '../../drive/status.ts';
 import { degrees } from './figures.ts';
-import { columnsFor, fitted, inColumns, type Line, padded, span, widthOf, wrapped } from './layout.ts';
+import { columnsFor, fitted, inColumns, type Line, padded, span, type Span, widthOf, wrapped } from './layout.ts';
 import { portSpan } from './port-word.ts';
 import type { Shapes } from './shapes.ts';
 
@@ -43,10 +43,7 @@ function heading(leader: LeaderStatus, port: BoardStatus | null, width: number):
   return fitted(
     [
       { line: [span('leader '), span(leader.leader, 'strong')], matters: 9 },
-      {
-        line: sick === 0 ? [span('every pot sound', 'good')] : [span(`${sick} sick`, 'bad')],
-        matters: sick === 0 ? 3 : 5,
-      },
+      { line: [potsSpan(leader)], matters: sick === 0 ? 3 : 5 },
       ...buttons,
       { line: [portSpan(port)], matters: port?.ready === true ? 1 : 4 },
       { line: [span(damage(port), 'dim')], matters: 0 },
@@ -54,6 +51,13 @@ function heading(leader: LeaderStatus, port: BoardStatus | null, width: number):
     width,
     3,
   );
+}
+
+/** A leader that has said nothing yet has its port to blame, not each of its pots. */
+function potsSpan({ joints, reading_age_us }: LeaderStatus): Span {
+  if (reading_age_us === null) return span('not heard', 'waiting');
+  const sick = joints.filter(({ health }) => health !== 'sound').length;
+  return sick === 0 ? span('every pot sound', 'good') : span(`${sick} sick`, 'bad');
 }
 
 /** Messages of a port that came damaged or not at all; empty where there are none. */
@@ -91,7 +95,6 @@ function careLines(leader: LeaderStatus, width: number, shapes: Shapes): readonl
     if (health !== 'sound') return [`${joint}: ${HEALTH_WORDS[health].join(': ')}`];
     return frozen ? [`${joint}: ${FROZEN.join(': ')}`] : [];
   });
-  // A leader that says nothing at all has its port to blame, not each of its pots.
   const silent = leader.reading_age_us === null;
   const shown = silent ? [] : texts;
   const all = leader.supply_ratio === 1 ? shown : [...shown, supplyWord(leader.supply_ratio)];

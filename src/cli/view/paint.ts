@@ -37,18 +37,30 @@ export function depthOf(env: NodeJS.ProcessEnv): Depth {
 
 export function paintFor(depth: Depth): Paint {
   const codes = new Map<Tone, string>();
-  return (line) =>
-    line
-      .map(({ text, tone }) => {
-        let code = codes.get(tone);
-        if (code === undefined) {
-          code = sgr(tone, depth);
-          codes.set(tone, code);
-        }
-        return code === '' ? text : `\x1b[${code}m${text}\x1b[0m`;
-      })
-      .join('');
+  const codeOf = (tone: Tone): string => {
+    let code = codes.get(tone);
+    if (code === undefined) {
+      code = sgr(tone, depth);
+      codes.set(tone, code);
+    }
+    return code;
+  };
+  return (line) => {
+    let text = '';
+    let open = '';
+    for (const part of line) {
+      if (part.text === '') continue;
+      const code = codeOf(part.tone);
+      // Neighbours of one colour need one switch: the way to the terminal may be slow.
+      if (code !== open) text += `${open === '' ? '' : OFF}${code === '' ? '' : `\x1b[${code}m`}`;
+      text += part.text;
+      open = code;
+    }
+    return open === '' ? text : text + OFF;
+  };
 }
+
+const OFF = '\x1b[0m';
 
 function sgr(tone: Tone, depth: Depth): string {
   const colour = depth === 'none' ? undefined : COLOURS[tone];

@@ -6,5 +6,5 @@ export function portSpan(port: BoardStatus | null): Span {
   if (port === null) return span('port not used', 'dim');
   if (port.ready) return span('port open', 'dim');
   if (port.open) return span('board not heard', 'waiting');
-  return span(port.fault === null ? 'port opening' : 'port closed', 'bad');
+  return port.fault === null ? span('port opening', 'waiting') : span('port closed', 'bad');
 }

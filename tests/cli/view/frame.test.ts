@@ -47,6 +47,8 @@ describe('The live view', () => {
             target_deg: 80,
             angle_deg: -12.34,
             range_deg: [-80, 80],
+            load_share: null,
+            warmth: null,
             limited_by: ['range', 'speed'],
           },
         ],
@@ -92,6 +94,15 @@ describe('The live view', () => {
       expect(picture(withFollower({ joints }), WIDE)).toMatch(/shoulder .*° {2}[a-z]/);
     },
   );
+
+  it('says which motor is near what it may give or take, with or without lines for the joints', () => {
+    const joints = followerStatus().joints.map((joint, j) =>
+      j === 1 ? { ...joint, load_share: 1.125, warmth: 0.79 } : { ...joint, load_share: 0.5, warmth: 0.1 },
+    );
+    expect(picture(withFollower({ joints }), USUAL)).toMatch(/wren .*load 112\.5 %: shoulder/);
+    expect(picture(withFollower({ joints }), WIDE)).toMatch(/shoulder .*° {2}load 112\.5 %/);
+    expect(picture(withFollower({ joints }), WIDE)).not.toContain('warmth');
+  });
 
   it('does not go on showing what limited an arm before it was held, but for a sick pot', () => {
     const joints = followerStatus().joints.map((joint) => ({ ...joint, limited_by: ['speed', 'sick'] as const }));
@@ -208,6 +219,8 @@ describe('Whatever there is to show', () => {
     target_deg: fc.double({ min: -1e3, max: 1e3, noNaN: true }),
     angle_deg: fc.double({ min: -1e3, max: 1e3, noNaN: true }),
     range_deg: fc.constant([-90, 90] as const),
+    load_share: fc.option(fc.double({ min: 0, max: 3, noNaN: true })),
+    warmth: fc.option(fc.double({ min: 0, max: 1, noNaN: true })),
     limited_by: fc.subarray(Object.keys(LIMITS) as (keyof typeof LIMITS)[]),
   });
   const follower = fc.record({

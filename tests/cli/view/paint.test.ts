@@ -25,6 +25,11 @@ describe('Colours', () => {
     expect(paint([span('following', 'good'), span(' wren', 'strong')])).toBe('following\x1b[1m wren\x1b[0m');
   });
 
+  it('are switched once for neighbours of one tone', () => {
+    const line = [span('a', 'dim'), span(''), span('b', 'dim'), span('c', 'strong'), span('d')];
+    expect(paintFor('none')(line)).toBe('\x1b[2mab\x1b[0m\x1b[1mc\x1b[0md');
+  });
+
   it('follow what the terminal says of itself, and NO_COLOR above all', () => {
     expect(depthOf({ TERM: 'xterm-256color', COLORTERM: 'truecolor' })).toBe('full');
     expect(depthOf({ TERM: 'xterm-256color' })).toBe('256');

@@ -44,6 +44,8 @@ export function followerStatus(changes: Partial<FollowerStatus> = {}): FollowerS
       target_deg: 5 * j,
       angle_deg: 5 * j,
       range_deg: [-80, 80] as const,
+      load_share: null,
+      warmth: null,
       limited_by: [],
     })),
     ...changes,
