@@ -1,4 +1,4 @@
-import { filter, map, Observable, type OperatorFunction, pipe, share, Subscription } from 'rxjs';
+import { filter, Observable, type OperatorFunction, type Subscriber, Subscription } from 'rxjs';
 import type { Drive } from '../drive/drive.ts';
 import type { DriveEvent } from '../drive/events.ts';
 import type { FollowerStage } from '../drive/follower-stage.ts';
@@ -15,15 +15,11 @@ export type OnBug = (follower: FollowerStage, bug: unknown) => void;
  * each of which makes its own commands and sends them through one guarded subscription.
  */
 export function pipeline(events$: Observable<DriveEvent>, drive: Drive, send: Send, onBug: OnBug): Subscription {
-  const conditioned$ = events$.pipe(
-    conditioned(drive.leader),
-    // A follower that fails must not start the stream anew for the others.
-    share({ resetOnRefCountZero: false, resetOnComplete: false, resetOnError: false }),
-  );
+  const conditioned$ = events$.pipe(conditioned(drive.leader), shared());
   const all = new Subscription();
   for (const follower of drive.followers) {
     all.add(
-      conditioned$.pipe(followed(follower), delivered(send)).subscribe({
+      conditioned$.pipe(followed(follower, send)).subscribe({
         error(bug) {
           follower.giveUp();
           onBug(follower, bug);
@@ -57,18 +53,41 @@ function conditioned(leader: LeaderStage): OperatorFunction<DriveEvent, DriveEve
     );
 }
 
-/** The commands of one follower: at most one an event, computed only when its port can take it. */
-function followed(follower: FollowerStage): OperatorFunction<DriveEvent, FollowerStage> {
-  return pipe(
-    filter((event) => follower.take(event)),
-    map(() => follower),
-  );
+/**
+ * One subscription for all followers, whoever of them leaves. The stock `share` would make an object for each of them at
+ * every event (RxJS as Node loads it walks subscribers by an iterator), and garbage must not grow with the troupe.
+ */
+function shared<T>(): OperatorFunction<T, T> {
+  return (source$) => {
+    let heard: readonly Subscriber<T>[] = [];
+    let connected = false;
+    return new Observable((out) => {
+      heard = [...heard, out];
+      if (!connected) {
+        connected = true;
+        source$.subscribe({
+          next(value) {
+            const now = heard;
+            for (let k = 0; k < now.length; k++) (now[k] as Subscriber<T>).next(value);
+          },
+          error: (bug) => heard.forEach((one) => one.error(bug)),
+          complete: () => heard.forEach((one) => one.complete()),
+        });
+      }
+      return () => {
+        heard = heard.filter((one) => one !== out);
+      };
+    });
+  };
 }
 
-/** Sending is part of the guarded stream: a wire that throws ends its follower too. */
-function delivered(send: Send): OperatorFunction<FollowerStage, never> {
-  return filter((command: FollowerStage): command is never => {
-    send(command);
+/**
+ * One follower: at most one command an event, computed only when its port can take it, and sent at once. One operator
+ * guards both, so that a stage that throws, or a wire, ends this follower's stream and no other.
+ */
+function followed(follower: FollowerStage, send: Send): OperatorFunction<DriveEvent, never> {
+  return filter((event): event is never => {
+    if (follower.take(event)) send(follower);
     return false;
   });
 }
