@@ -70,9 +70,14 @@ export async function driving(options: DrivingOptions, world: World): Promise<nu
   });
   const cancels = [tellStates(live, show), listenTo(world, hand, show, over, moves)];
   openKeyboard(world, rig.plan.followers.length, hand, show, over);
-  const looking = lookAround(live, hand, show, over, world);
+  const time = { isUp: false };
+  const looking = lookAround(live, hand, show, over, world, time);
   if (options.forUs !== null) {
-    const timeIsUp = (): void => (options.real ? hand.parkAndLeave() : over.because('over'));
+    const timeIsUp = (): void => {
+      time.isUp = true;
+      if (options.real) hand.parkAndLeave();
+      else over.because('over');
+    };
     cancels.push(clock.at(clock.nowUs() + options.forUs, timeIsUp));
   }
 
@@ -137,7 +142,14 @@ function openKeyboard(world: World, followers: number, hand: Operator, { view }:
 }
 
 /** Shows how all stands, ten times a second, and follows arms home that are to be parked before leaving. */
-function lookAround(live: Live, hand: Operator, show: Showing, over: End, { clock }: World): { end(): Look } {
+function lookAround(
+  live: Live,
+  hand: Operator,
+  show: Showing,
+  over: End,
+  { clock }: World,
+  time: { readonly isUp: boolean },
+): { end(): Look } {
   const rate = rates(live.drive.followers.length);
   let outcome: (() => ParkingOutcome) | null = null;
 
@@ -152,7 +164,13 @@ function lookAround(live: Live, hand: Operator, show: Showing, over: End, { cloc
     const found = outcome?.() ?? 'under way';
     if (found === 'under way') return;
     if (found === 'parked') return over.because('parked');
-    show.sayLast({ text: notParked(found.not), weight: 'care' });
+    const sentence = { text: notParked(found.not), weight: 'care' as const };
+    // Whoever asked for it at the keyboard is still there to decide; when the time is up nobody may be.
+    if (!time.isUp) {
+      show.say(sentence);
+      return hand.stay();
+    }
+    show.sayLast(sentence);
     over.because('unparked');
   };
 

@@ -10,6 +10,8 @@ export interface Operator {
   interrupt(): void;
   /** Park everything and then leave, unless something comes between. */
   parkAndLeave(): void;
+  /** Not every arm could be parked: who asked for it is still there to decide. */
+  stay(): void;
 }
 
 export interface OperatorStanding {
@@ -135,6 +137,9 @@ export function operator(followers: number, effects: OperatorEffects): Operator 
       effects.key('hold', ALL, 0);
       is.asked = 'interrupted';
       is.help = false;
+    },
+    stay() {
+      is.asked = null;
     },
     parkAndLeave() {
       effects.key('park', ALL, 0);

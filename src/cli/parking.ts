@@ -2,7 +2,11 @@ import { type Clock, US_PER_S } from '../clock/clock.ts';
 import type { Drive } from '../drive/drive.ts';
 
 /** Whether arms that were asked to park have come to an end, one way or the other. */
-export type ParkingOutcome = 'under way' | 'parked' | { readonly not: readonly string[] };
+export type ParkingOutcome =
+  | 'under way'
+  | 'parked'
+  /** Names of those that are not, each with the state it is in. */
+  | { readonly not: readonly string[] };
 
 /** An arm on its way home whose port takes nothing gets nowhere: after this it is not waited for. */
 const STALL_US = 5 * US_PER_S;
@@ -19,7 +23,9 @@ export function parking(drive: Drive, clock: Clock): () => ParkingOutcome {
       seen[f] = now;
     });
     if (isUnderWay && clock.nowUs() - movedUs < STALL_US) return 'under way';
-    const not = drive.followers.filter((follower) => !isHome(follower)).map(({ spec }) => spec.name);
+    const not = drive.followers
+      .filter((follower) => !isHome(follower))
+      .map(({ spec, is }) => `${spec.name} (${is.state})`);
     return not.length === 0 ? 'parked' : { not };
   };
 }

@@ -153,6 +153,20 @@ describe('A run at a terminal', () => {
     expect(awake.err()).toContain('every follower is parked');
   });
 
+  it('stays where an arm cannot be parked before leaving, and says which', async () => {
+    const at = drive({ unasked: true });
+    await at.pass(9_000);
+    at.type(' ');
+    await at.pass(1_000);
+    at.type('qp');
+    await at.pass(1_000);
+    expect(at.isOpen()).toBe(true);
+    expect(at.screen()).toContain('not parked: wren (stopped), stork (stopped); look to the arm');
+    expect(at.screen()).not.toContain('Parking, then leaving');
+    at.type('qq');
+    expect(await at.ended(at.run, 2_000)).toBe(0);
+  });
+
   it('stops all on the space bar, and goes on after rearm and join only', async () => {
     const at = drive({ unasked: true });
     await at.pass(9_000);
@@ -288,7 +302,7 @@ describe('A run for a time', () => {
     await at.pass(7_000);
     at.boards.get('stork')?.far.unplug();
     expect(await at.ended(at.run, 20_000)).toBe(1);
-    expect(at.err()).toContain('not parked: stork; look to the arm');
+    expect(at.err()).toContain('not parked: stork (absent); look to the arm');
     expect(at.out()).toContain('ended: unparked');
   });
 
@@ -299,7 +313,7 @@ describe('A run for a time', () => {
     expect(await at.ended(at.run, 20_000)).toBe(1);
     expect(at.isOpen()).toBe(false);
     expect(at.err()).toContain(
-      'not parked: stork; look to the arm before its power goes\nsmall: ended with a follower',
+      'not parked: stork (absent); look to the arm before its power goes\nsmall: ended with a follower',
     );
   });
 
@@ -309,7 +323,7 @@ describe('A run for a time', () => {
     expect(at.out()).toContain('wren: joining -> parking');
     at.boards.get('wren')?.far.block();
     expect(await at.ended(at.run, 8_000)).toBe(1);
-    expect(at.err()).toContain('not parked: wren');
+    expect(at.err()).toContain('not parked: wren (absent)');
   });
 
   it('is not ended by arms that the operator never let go', async () => {

@@ -30,6 +30,8 @@ const GAP = 3;
 const SMALL_BAR = 13;
 const BAR_MIN = 10;
 const BAR_MAX = 48;
+/** From this width on a joint's line holds its range, its target and what limits it in words. */
+const WIDE = 76;
 const STANDS_DEG = 0.05;
 /** From this share on a motor's load or warmth is shown. */
 const STRAINED = 0.8;
@@ -85,8 +87,8 @@ function heading(scene: FollowerScene, detail: FollowerDetail, width: number, sh
         ],
         matters: 9,
       },
-      // Where each joint has a line of its own, what limits it stands there.
-      { line: detail === 'joints' ? [] : [span(limitWords(status), 'held')], matters: 5 },
+      // Where each joint has a line of its own and there is room, what limits it stands there.
+      { line: detail === 'joints' && width >= WIDE ? [] : [span(limitWords(status), 'held')], matters: 5 },
       { line: [span(lost, 'held')], matters: 4 },
       { line: [portSpan(port)], matters: port === null || port.ready ? 1 : 6 },
       { line: [span(`${perSecond.toFixed(0)}/s`)], matters: 3 },
@@ -171,7 +173,7 @@ function strainWords({ load_share, warmth }: Joint): readonly string[] {
 
 /** Name, range and bar, angle, target, limits; on a narrow screen only name, bar and angle, and limits as they fit. */
 function largeJoint(joint: Joint, state: State, nameWidth: number, width: number, shapes: Shapes): Line {
-  const wide = width >= 76;
+  const wide = width >= WIDE;
   const [low, high] = joint.range_deg;
   const left = span(wide ? `${joint.joint.padEnd(nameWidth)} ${degrees(low)} ` : `${joint.joint.padEnd(nameWidth)} `);
   const right = span(wide ? ` ${degrees(high).trimStart().padEnd(6)}` : '', 'dim');
@@ -181,7 +183,7 @@ function largeJoint(joint: Joint, state: State, nameWidth: number, width: number
   const strain = strainWords(joint);
   const limits = [...strain, ...limited.map((limit) => LIMIT_WORDS[limit])].join(', ');
   // Two limits at once where there is room for them; the bar must not jump as limits come and go.
-  const limitsRoom = width >= 96 ? 26 : 14;
+  const limitsRoom = width >= 96 ? 26 : wide ? 14 : 2;
   const used = INDENT + [left, right, angle, target].reduce((sum, { text }) => sum + text.length, 0) + limitsRoom;
   const barWidth = Math.min(Math.max(width - used, BAR_MIN), BAR_MAX);
   const onlyDeadband = strain.length === 0 && limited.every((limit) => limit === 'deadband');
@@ -191,6 +193,8 @@ function largeJoint(joint: Joint, state: State, nameWidth: number, width: number
     right,
     angle,
     target,
-    span(limits === '' ? '' : `  ${limits}`, onlyDeadband ? 'dim' : 'held'),
+    wide
+      ? span(limits === '' ? '' : `  ${limits}`, onlyDeadband ? 'dim' : 'held')
+      : span(onlyDeadband ? '' : ` ${shapes.care}`, 'held'),
   ];
 }

@@ -95,6 +95,17 @@ describe('The live view', () => {
     },
   );
 
+  it('marks a limited joint where there is no room for words, and tells it beside the state', () => {
+    const joints = followerStatus().joints.map((joint, j) =>
+      j === 1 ? { ...joint, limited_by: ['speed' as const] } : joint,
+    );
+    const status = liveStatus({ followers: [followerStatus({ joints, lag_us: null })] });
+    const shown = picture({ status }, { columns: 56, rows: 24 });
+    expect(shown).toMatch(/wren ► following +full speed: shoulder/);
+    expect(shown).toMatch(/shoulder ├.*° ▲$/m);
+    expect(shown).toMatch(/base +├.*°$/m);
+  });
+
   it('says which motor is near what it may give or take, with or without lines for the joints', () => {
     const joints = followerStatus().joints.map((joint, j) =>
       j === 1 ? { ...joint, load_share: 1.125, warmth: 0.79 } : { ...joint, load_share: 0.5, warmth: 0.1 },
