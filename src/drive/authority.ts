@@ -45,6 +45,7 @@ export function authority(
   const board = common.boardOf[index] as number;
   const wakesByItself = parts.unasked || spec.wake !== 'ask';
   let healthSeen = -1;
+  let leadSeen = 0;
 
   const raise = (event: StateEvent): void => {
     const next = nextState(is.state, event);
@@ -236,6 +237,10 @@ export function authority(
       if (lead.holding) is.blocks |= BLOCKS.pedal;
       is.clutched = is.clutchKey || lead.clutched;
       if (healthSeen !== lead.healthVersion) noteHealth();
+      if (leadSeen !== lead.leadVersion) {
+        leadSeen = lead.leadVersion;
+        raise('healed');
+      }
       if (!is.present) raise('down');
       else if (!is.pulsed) raise('unpulsed');
       const ignored = is.state === 'parking' && is.parkStale ? BLOCKS.stale : 0;

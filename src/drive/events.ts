@@ -3,7 +3,15 @@
  * the same plan, start poses and events give the same commands. Sources may reuse event objects: one is valid until
  * its delivery returns.
  */
-export type DriveEvent = ReadingEvent | PoseEvent | TickEvent | KeyEvent | BoardEvent | JogEvent;
+export type DriveEvent =
+  | ReadingEvent
+  | PoseEvent
+  | TargetEvent
+  | LeadEvent
+  | TickEvent
+  | KeyEvent
+  | BoardEvent
+  | JogEvent;
 
 /** One timed set of raw counts from the leader. */
 export interface ReadingEvent {
@@ -18,6 +26,26 @@ export interface PoseEvent {
   readonly kind: 'pose';
   readonly tUs: number;
   readonly poseRad: Float64Array;
+}
+
+/** Where one follower is to be, and how fast, at this instant: commands of a take being played again. */
+export interface TargetEvent {
+  readonly kind: 'target';
+  readonly tUs: number;
+  readonly follower: number;
+  /** In joint order, radians and rad/s. */
+  readonly anglesRad: Float64Array;
+  readonly speedsRadS: Float64Array;
+}
+
+/** Who leads from now on; every arm then joins gently, because the new leader may be anywhere. */
+export interface LeadEvent {
+  readonly kind: 'lead';
+  readonly tUs: number;
+  /** 1 for each of the leader's joints that `pose` events lead, 0 for those that stay in the hand. */
+  readonly posed: Uint8Array;
+  /** Followers go where `target` events say, whatever the leader's pose. */
+  readonly targets: boolean;
 }
 
 /** An instant at which something is due; made from `Drive.dueUs`, never from the moment a timer happened to fire. */

@@ -3,7 +3,7 @@ import type { Follower } from '../follower/follower.ts';
 import { BLOCKS } from '../follower/reasons.ts';
 import type { FollowerSpec } from '../follower/spec.ts';
 import { authority, STAGGER_US } from './authority.ts';
-import { ALL, type DriveEvent } from './events.ts';
+import { ALL, type BoardEvent, type DriveEvent, type TargetEvent } from './events.ts';
 import { jog } from './jog.ts';
 import type { LeaderStage } from './leader-stage.ts';
 import { outbox, type CommandKind } from './outbox.ts';
@@ -70,7 +70,18 @@ export function followerStage(
   const share = shares(spec.joinShare);
   const jogging = jog(spec.servos.length);
   const rule = authority(is, index, arm, lead, common, { share, pending, jogging, unasked: start.unasked });
-  const steer = steering(is, index, arm, lead, common, { share, jogging, raise: rule.raise, cutPower: rule.cutPower });
+  const aim = {
+    atUs: Number.NEGATIVE_INFINITY,
+    anglesRad: arm.governor.x.slice(),
+    speedsRadS: new Float64Array(spec.joints.length),
+  };
+  const steer = steering(is, index, arm, lead, common, {
+    share,
+    jogging,
+    aim,
+    raise: rule.raise,
+    cutPower: rule.cutPower,
+  });
   const now = common.nowUs;
 
   const emit = (kind: CommandKind): true => {
@@ -78,6 +89,16 @@ export function followerStage(
     self.commands++;
     common.taken[start.board] = 1;
     return true;
+  };
+
+  /** What is no number moves nothing. */
+  const takeAim = ({ tUs, anglesRad, speedsRadS }: TargetEvent): void => {
+    for (let j = 0; j < spec.joints.length; j++) {
+      if (Number.isNaN(anglesRad[j]) || !Number.isFinite(speedsRadS[j])) continue;
+      aim.anglesRad[j] = anglesRad[j] as number;
+      aim.speedsRadS[j] = speedsRadS[j] as number;
+    }
+    aim.atUs = tUs;
   };
 
   const wake = (): boolean => {
@@ -94,9 +115,12 @@ export function followerStage(
     return emit('move');
   };
 
+  /** A target of its own is awaited a little: a command made just before it came would be a period behind it. */
+  const periodNowUs = (): number => (lead.byTargets ? Math.round(spec.periodUs * (1 + EARLY_SHARE)) : spec.periodUs);
+
   const move = (early: boolean): boolean => {
     const sinceUs = (now[0] as number) - is.lastUs;
-    if (sinceUs < spec.periodUs * (early ? 1 - EARLY_SHARE : 1)) return false;
+    if (sinceUs < (early ? spec.periodUs * (1 - EARLY_SHARE) : periodNowUs())) return false;
     if (!is.owed && !is.moving && sinceUs < KEEP_ALIVE_US) return false;
     is.owed = false;
     const gap = sinceUs > PERIODS_MAX * spec.periodUs;
@@ -111,6 +135,11 @@ export function followerStage(
     } else {
       dtS[0] = (gap ? PERIODS_MAX * spec.periodUs : sinceUs) / US_PER_S;
       steer.step(dtS);
+    }
+    if (arm.burden !== null) {
+      // The whole pause counts here: a still arm that is told where it is twice a second warms all the same.
+      dtS[0] = Math.min(sinceUs, KEEP_ALIVE_US) / US_PER_S;
+      arm.burden.bear(arm.governor.x, is.moving, dtS);
     }
     is.lastUs = now[0] as number;
     self.readingAgeUs = (now[0] as number) - lead.lastUs;
@@ -137,13 +166,19 @@ export function followerStage(
       return pending.some;
     },
     take(event) {
-      const reading = event.kind === 'reading' || event.kind === 'pose';
+      const isMine = event.kind === 'target' && event.follower === index;
+      const reading = lead.fresh || isMine;
       if (reading) is.owed = true;
-      else if (event.kind === 'key') {
+      if (event.kind === 'target') {
+        if (isMine) takeAim(event);
+      } else if (event.kind === 'lead') {
+        aim.anglesRad.set(arm.governor.x);
+        aim.speedsRadS.fill(0);
+      } else if (event.kind === 'key') {
         if (event.follower === ALL || event.follower === index) rule.key(event);
       } else if (event.kind === 'jog') {
         if (event.follower === index) rule.jog(event);
-      } else if (event.kind !== 'tick' && common.boardOf[event.follower] === start.board) rule.board(event);
+      } else if (isOfBoard(event) && common.boardOf[event.follower] === start.board) rule.board(event);
       rule.weigh();
       // Several ports may become busy in one instant, and are told one by one: this board's own word may be yet to come.
       if (event.kind === 'blocked') return false;
@@ -159,7 +194,7 @@ export function followerStage(
       if (pending.some) return now[0] as number;
       if (is.state === 'waking') return is.going ? is.nextPulseUs : Number.POSITIVE_INFINITY;
       if (!is.pulsed) return Number.POSITIVE_INFINITY;
-      return is.lastUs + (is.owed || is.moving ? spec.periodUs : KEEP_ALIVE_US);
+      return is.lastUs + (is.owed || is.moving ? periodNowUs() : KEEP_ALIVE_US);
     },
     giveUp: rule.giveUp,
   };
@@ -177,4 +212,17 @@ export function followerStage(
   }
   siblings.push(self);
   return self;
+}
+
+function isOfBoard(event: DriveEvent): event is BoardEvent {
+  switch (event.kind) {
+    case 'ready':
+    case 'down':
+    case 'reboot':
+    case 'blocked':
+    case 'free':
+      return true;
+    default:
+      return false;
+  }
 }

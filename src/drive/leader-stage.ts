@@ -1,7 +1,7 @@
 import { leader, type Leader } from '../leader/leader.ts';
 import { ILLS } from '../leader/health.ts';
 import type { ButtonDuty } from '../leader/spec.ts';
-import { ALL, LEADER, type DriveEvent, type Key, type KeyEvent } from './events.ts';
+import { ALL, LEADER, type DriveEvent, type Key, type KeyEvent, type PoseEvent } from './events.ts';
 import type { Plan } from './plan.ts';
 import type { Shared } from './shared.ts';
 import { unison, type Unison } from './unison.ts';
@@ -21,6 +21,12 @@ export interface LeaderStage {
   readonly clutched: boolean;
   /** True while a hold button is held. */
   readonly holding: boolean;
+  /** Followers go where `target` events say. */
+  readonly byTargets: boolean;
+  /** The event being handled says anew where the leader is. */
+  readonly fresh: boolean;
+  /** Grows whenever somebody else leads. */
+  readonly leadVersion: number;
   /** Grows whenever the set of sick joints changes. */
   readonly healthVersion: number;
   /** Instant of the last reading or pose, integer microseconds; -Infinity before the first. */
@@ -55,6 +61,10 @@ export function leaderStage(plan: Plan, common: Shared): LeaderStage {
     value: 0,
   }));
 
+  const posed = new Uint8Array(health.length);
+  const takenRad = new Float64Array(health.length);
+  const heard = { handUs: Number.NEGATIVE_INFINITY, takeUs: Number.NEGATIVE_INFINITY };
+
   const readButtons = (tUs: number): void => {
     self.enabled = !hasEnable;
     self.clutched = false;
@@ -83,6 +93,31 @@ export function leaderStage(plan: Plan, common: Shared): LeaderStage {
     }
   };
 
+  const takePose = ({ tUs, poseRad }: PoseEvent): void => {
+    if (posed.includes(1)) {
+      takenRad.set(poseRad);
+      imposeTaken();
+      heard.takeUs = tUs;
+    } else {
+      adopt(poseRad);
+      heard.handUs = tUs;
+    }
+  };
+
+  /** Joints that a take leads keep its angles, whatever the hand does meanwhile. */
+  const imposeTaken = (): void => {
+    for (let j = 0; j < health.length; j++) {
+      if (posed[j] === 1) kernel.poseRad[j] = takenRad[j] as number;
+      if (posed[j] === 1 || self.byTargets) health[j] = 0;
+    }
+  };
+
+  const noteSources = (): void => {
+    const isAll = self.byTargets || !posed.includes(0);
+    const isNone = !self.byTargets && !posed.includes(1);
+    self.lastUs = isNone ? heard.handUs : isAll ? heard.takeUs : Math.min(heard.handUs, heard.takeUs);
+  };
+
   const noteHealth = (): void => {
     for (let j = 0; j < health.length; j++) {
       if (health[j] === healthBefore[j]) continue;
@@ -100,6 +135,9 @@ export function leaderStage(plan: Plan, common: Shared): LeaderStage {
     enabled: !hasEnable,
     clutched: false,
     holding: false,
+    byTargets: false,
+    fresh: false,
+    leadVersion: 0,
     healthVersion: 0,
     lastUs: Number.NEGATIVE_INFINITY,
     pressed,
@@ -108,6 +146,7 @@ export function leaderStage(plan: Plan, common: Shared): LeaderStage {
       common.nowUs[0] = event.tUs;
       common.taken.fill(0);
       self.pressedCount = 0;
+      self.fresh = !self.byTargets && (event.kind === 'pose' || (event.kind === 'reading' && posed.includes(0)));
       // The virtual leader first moves towards what was known until now.
       if (virtual !== null) {
         virtual.limit(common.following, common.opened, common.pace);
@@ -115,19 +154,29 @@ export function leaderStage(plan: Plan, common: Shared): LeaderStage {
       }
       if (event.kind === 'reading') {
         kernel.take(event.tUs, event.counts);
-        self.lastUs = event.tUs;
+        imposeTaken();
+        heard.handUs = event.tUs;
         readButtons(event.tUs);
         noteHealth();
       } else if (event.kind === 'pose') {
-        adopt(event.poseRad);
-        self.lastUs = event.tUs;
+        takePose(event);
+        noteHealth();
+      } else if (event.kind === 'target') {
+        heard.takeUs = event.tUs;
+      } else if (event.kind === 'lead') {
+        posed.set(event.posed);
+        self.byTargets = event.targets;
+        self.leadVersion++;
+        takenRad.set(kernel.poseRad);
+        imposeTaken();
         noteHealth();
       } else if (event.kind === 'key' && event.key === 'pace') {
         // A share, whoever sends it: never over the profile's limits, and never what is no number.
         if (!Number.isNaN(event.value)) common.pace[0] = Math.min(Math.max(event.value, 0), 1);
       } else if (event.kind === 'down' && event.follower === LEADER) {
-        self.lastUs = Number.NEGATIVE_INFINITY;
+        heard.handUs = Number.NEGATIVE_INFINITY;
       }
+      noteSources();
       virtual?.meet(kernel.poseRad);
       const age = event.tUs - self.lastUs;
       self.stale = age > plan.leader.timeoutUs || age === Number.POSITIVE_INFINITY;

@@ -1,3 +1,4 @@
+import { US_PER_S } from '../clock/clock.ts';
 import type { Follower } from '../follower/follower.ts';
 import type { StateEvent } from '../follower/states.ts';
 import type { Jog } from './jog.ts';
@@ -15,6 +16,8 @@ export interface Steering {
 }
 
 const MET_RAD = (1 * Math.PI) / 180;
+/** A target is followed on for this many periods of the arm after its instant, and no longer. */
+const AHEAD_PERIODS = 2;
 const WAIT_RAD = (3 * Math.PI) / 180;
 
 export function steering(
@@ -26,16 +29,34 @@ export function steering(
   parts: {
     readonly share: Shares;
     readonly jogging: Jog;
+    /** What the last `target` event said. */
+    readonly aim: { readonly atUs: number; readonly anglesRad: Float64Array; readonly speedsRadS: Float64Array };
     readonly raise: (event: StateEvent) => void;
     readonly cutPower: () => void;
   },
 ): Steering {
-  const { share, jogging, raise } = parts;
+  const { share, jogging, raise, aim } = parts;
+  const standing = new Float64Array(aim.speedsRadS.length);
+  const ahead = new Float64Array(aim.speedsRadS.length);
   const now = common.nowUs;
   const shareNow = new Float64Array(1);
 
+  /** On its way from the last target the take goes on as fast as it then did, for as long as the next one may take. */
+  const pursue = (): void => {
+    if (is.state !== 'following') {
+      arm.pursue(aim.anglesRad, standing, is.clutched);
+      return;
+    }
+    const aheadS = Math.min((now[0] as number) - aim.atUs, AHEAD_PERIODS * arm.spec.periodUs) / US_PER_S;
+    for (let j = 0; j < ahead.length; j++)
+      ahead[j] = (aim.anglesRad[j] as number) + aheadS * (aim.speedsRadS[j] as number);
+    arm.pursue(ahead, aim.speedsRadS, is.clutched);
+  };
+
   const wish = (): void => {
-    if (lead.speedRadS !== null && is.state === 'following' && !is.clutched) arm.match(lead.poseRad, lead.speedRadS);
+    if (lead.byTargets) pursue();
+    else if (lead.speedRadS !== null && is.state === 'following' && !is.clutched)
+      arm.match(lead.poseRad, lead.speedRadS);
     else arm.want(lead.poseRad, is.clutched);
   };
 

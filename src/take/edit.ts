@@ -137,7 +137,7 @@ function momentOf(take: Take, atUs: number, fromUs: number, toUs: number): Momen
 }
 
 /** Rows of a stretch, on a time of their own. */
-function* stretched(take: Take, { fromUs, toUs }: Stretch, speed: number, startUs: number): Generator<Row> {
+export function* stretched(take: Take, { fromUs, toUs }: Stretch, speed: number, startUs: number): Generator<Row> {
   for (const row of take.readFrom(fromUs)) {
     if (row.tUs < fromUs) continue;
     if (row.tUs > toUs) return;

@@ -147,6 +147,13 @@ function fillEvent(row: Row, event: DriveEvent): void {
       row.follower = event.follower;
       row.kept = event.kept ? 1 : 0;
       return;
+    case 'target':
+      row.follower = event.follower;
+      return;
+    case 'lead':
+      row.kept = event.targets ? 1 : 0;
+      row.value = event.posed.reduce((bits, on, j) => bits + on * 2 ** j, 0);
+      return;
     case 'pose':
     case 'tick':
       return;
