@@ -83,6 +83,8 @@ function captureOf(
     knownDeg: number('known_deg'),
     tMs: number('t_ms'),
     noiseCounts: number('noise_counts'),
+    channel: number('channel'),
+    attempt: number('attempt'),
   };
   const has: Readonly<Record<string, number>> = {
     counts: capture.counts,
@@ -120,8 +122,8 @@ export const CAPTURES_HEADER = `${CAPTURE_COLUMNS.join(',')}\n`;
 
 /** One capture as a line, with its end. Numbers in shortest round-trip form. */
 export function captureLine(capture: Capture): string {
-  const { step, arm, joint, counts, pulseUs, knownDeg, tMs, noiseCounts } = capture;
-  const cells = [counts, pulseUs, knownDeg, tMs, noiseCounts].map((value) =>
+  const { step, arm, joint, counts, pulseUs, knownDeg, tMs, noiseCounts, channel, attempt } = capture;
+  const cells = [counts, pulseUs, knownDeg, tMs, noiseCounts, channel, attempt].map((value) =>
     Number.isNaN(value) ? '' : String(value),
   );
   return `${[step, arm, joint, ...cells].join(',')}\n`;

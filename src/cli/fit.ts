@@ -1,17 +1,23 @@
 import { Command, InvalidArgumentError } from '@commander-js/extra-typings';
 import type { CommandUnknownOpts } from '@commander-js/extra-typings';
+import { existsSync } from 'node:fs';
+import { realClock } from '../clock/clock.ts';
+import type { CompiledRig } from '../rig/compiled.ts';
 import { loadRig } from '../rig/load.ts';
 import { mistakeLine } from '../rig/mistake.ts';
 import { metres } from '../rig/units.ts';
 import { filesOnDisk, type FitFiles } from './fit-files.ts';
+import { keeper } from './fit-keeper.ts';
 import { capturesOf, checkAgainst, type FitFlags, fitInto, type Printer } from './fit-offline.ts';
+import { type FitTable, measure } from './fit-session.ts';
+import { portOf } from './port-of.ts';
 
 export interface FitOptions extends FitFlags {
   readonly from: string | undefined;
   readonly check: string | undefined;
 }
 
-/** Fits, or checks, from recorded captures; resolves with the exit status. */
+/** Fits, or checks, from recorded captures; the exit status. */
 export function fitFromCaptures(file: string, options: FitOptions, files: FitFiles, printer: Printer): number {
   const loaded = loadRig(file, files.readRig);
   if ('mistakes' in loaded) {
@@ -22,6 +28,48 @@ export function fitFromCaptures(file: string, options: FitOptions, files: FitFil
   if (captures === null) return 2;
   if (options.check !== undefined) return checkAgainst(loaded, captures, options.json, printer);
   return fitInto(file, loaded, captures, options, files, printer);
+}
+
+const NO_TERMINAL = 'there is no terminal to ask at; say --from captures.csv to fit what was recorded before';
+
+/** Where a rig's session keeps its captures unless told otherwise: beside the rig. */
+export function capturesBeside(rigFile: string): string {
+  return `${rigFile.replace(/\.ya?ml$/i, '')}.captures.csv`;
+}
+
+/**
+ * Measures at a terminal, then fits; resolves with the exit status.
+ * @param tableFor null: nobody sits at a terminal
+ */
+export async function fitMeasured(
+  file: string,
+  options: FitFlags & { readonly captures: string | undefined },
+  tableFor: ((rig: CompiledRig) => FitTable) | null,
+  files: FitFiles,
+  printer: Printer,
+): Promise<number> {
+  const loaded = loadRig(file, files.readRig);
+  if ('mistakes' in loaded) {
+    printer.err(loaded.mistakes.map((mistake) => `${mistakeLine(mistake)}\n`).join(''));
+    return 2;
+  }
+  if (tableFor === null) {
+    printer.err(`error: ${NO_TERMINAL}\n`);
+    return 2;
+  }
+  const at = options.captures ?? capturesBeside(file);
+  const former = existsSync(at) ? capturesOf(at, files, printer) : [];
+  if (former === null) return 2;
+  const keeping = keeper(at);
+  const ending = await measure(loaded, former, keeping, tableFor(loaded.rig));
+  if (ending !== 'fit') {
+    printer.err(
+      `\nThe profiles are as they were. What was captured is in ${at}; the same command goes on from there.\n`,
+    );
+    return ending === 'quit' ? 0 : 130;
+  }
+  const captures = capturesOf(at, files, printer);
+  return captures === null ? 1 : fitInto(file, loaded, captures, options, files, printer);
 }
 
 const JITTER_MM = 0.5;
@@ -54,6 +102,7 @@ export function fitCommand(
     .description('measure pots and servos, fit their maps with the error stated, and write them into the profiles')
     .argument('<rig>', 'the rig file')
     .option('--from <file>', 'fit from captures recorded before, without a person')
+    .option('--captures <file>', 'where the session keeps its captures; beside the rig when left out')
     .option('--check <file>', 'say whether the maps in the profiles have drifted from new captures')
     .option('--dry-run', 'show what would change in the profiles, and write nothing')
     .option('--partly', 'write what could be fitted even when some joint could not')
@@ -67,7 +116,7 @@ export function fitCommand(
     )
     .option('--lag <ms>', 'longest delay that the suggested smoothing may add', quantityOption('ms'), LAG_MS)
     .addHelpText('after', EXPLAINED)
-    .action((file, given) => {
+    .action(async (file, given) => {
       const { from, check, report, jitter, lag } = given;
       const options: FitOptions = {
         from,
@@ -83,6 +132,23 @@ export function fitCommand(
         process.exitCode = 2;
         return;
       }
-      process.exitCode = fitFromCaptures(file, options, files, printer);
+      if (from !== undefined || check !== undefined) {
+        process.exitCode = fitFromCaptures(file, options, files, printer);
+        return;
+      }
+      process.exitCode = await fitMeasured(file, { ...options, captures: given.captures }, realTable(), files, printer);
     });
+}
+
+function realTable(): ((rig: CompiledRig) => FitTable) | null {
+  const { stdin, stdout } = process;
+  if (!stdin.isTTY || !stdout.isTTY) return null;
+  const clock = realClock();
+  return (rig) => ({
+    clock,
+    openPort: (board) => portOf(rig, board, clock),
+    input: stdin,
+    output: stdout,
+    isTerminal: process.env['TERM'] !== 'dumb',
+  });
 }

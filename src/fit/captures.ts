@@ -12,6 +12,10 @@ export interface Capture {
   readonly tMs: number;
   /** Of a hold that was averaged: its standard deviation in counts; NaN: a single reading. */
   readonly noiseCounts: number;
+  /** Channel of the board it was read from; NaN: the profile's. */
+  readonly channel: number;
+  /** A step that is done anew has a higher number, and its captures replace the former ones; NaN: the first. */
+  readonly attempt: number;
 }
 
 /** Steps and what each row of them has to hold. */
@@ -34,6 +38,8 @@ export const CAPTURE_COLUMNS = [
   'known_deg',
   't_ms',
   'noise_counts',
+  'channel',
+  'attempt',
 ] as const;
 
 /** The captures of one joint, step by step, in the order in which they were made. */
@@ -43,6 +49,7 @@ export interface JointCaptures {
   readonly of: Readonly<Record<CaptureStep, readonly Capture[]>>;
 }
 
+/** Only the last attempt at each step counts. */
 export function byJoint(captures: readonly Capture[]): readonly JointCaptures[] {
   const joints = new Map<string, { arm: string; joint: string; of: Record<CaptureStep, Capture[]> }>();
   for (const capture of captures) {
@@ -57,7 +64,33 @@ export function byJoint(captures: readonly Capture[]): readonly JointCaptures[] 
       };
       joints.set(key, found);
     }
-    found.of[step].push(capture);
+    const same = found.of[step];
+    const attempt = attemptOf(capture);
+    const last = same[0] === undefined ? attempt : attemptOf(same[0]);
+    if (attempt > last) same.length = 0;
+    if (attempt >= last) same.push(capture);
   }
   return [...joints.values()];
+}
+
+/** Number of the attempt that a capture belongs to, from 1. */
+export function attemptOf({ attempt }: Capture): number {
+  return Number.isNaN(attempt) ? 1 : attempt;
+}
+
+/** A capture with nothing but its step, arm and joint. */
+export function emptyCapture(step: CaptureStep, arm: string, joint: string): Capture {
+  const none = Number.NaN;
+  return {
+    step,
+    arm,
+    joint,
+    counts: none,
+    pulseUs: none,
+    knownDeg: none,
+    tMs: none,
+    noiseCounts: none,
+    channel: none,
+    attempt: none,
+  };
 }

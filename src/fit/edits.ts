@@ -47,7 +47,7 @@ export function plannedEdits(
   for (const joint of report.joints) {
     const index = profiles.leader.joints.findIndex(({ name }) => name === joint.joint);
     const node = nodes.leader === null ? null : nodeAt(nodes.leader, ['joints', index]);
-    const values = leaderValues(joint, profiles.leader.joints[index]?.curve, report.date);
+    const values = leaderValues(joint, profiles.leader.joints[index], report.date);
     if (node !== null && Object.keys(values).length > 0) put(node, values);
   }
   const putFollower = (arm: string, joint: string, path: Path, value: Readonly<Record<string, PlainValue>>): void => {
@@ -73,13 +73,14 @@ export function plannedEdits(
 }
 
 function leaderValues(
-  { points, sweep, still }: JointReport,
-  wasCurve: string | undefined,
+  { channel, points, sweep, still }: JointReport,
+  was: { readonly curve: string; readonly channel: number } | undefined,
   date: string,
 ): Record<string, PlainValue> {
   const noise = still?.noise_counts ?? sweep?.noise_counts;
   return {
-    ...(points === null ? {} : { points: points.map, ...(points.curve === wasCurve ? {} : { curve: points.curve }) }),
+    ...(channel === was?.channel ? {} : { channel }),
+    ...(points === null ? {} : { points: points.map, ...(points.curve === was?.curve ? {} : { curve: points.curve }) }),
     ...(sweep === null || sweep.wraps ? {} : { travel_counts: sweep.span_counts.map(Math.round) }),
     ...(noise === undefined ? {} : { noise_counts: hundredth(noise) }),
     ...(points === null ? {} : { fitted: note(points, points.curve, date) }),

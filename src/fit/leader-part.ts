@@ -93,7 +93,7 @@ export function fitLeaderJoint(profile: LeaderProfile, index: number, captures: 
     report: {
       leader: arm,
       joint: joint.name,
-      channel: joint.channel,
+      channel: channelOf(captures) ?? joint.channel,
       still: stillReport,
       sweep: sweepReport,
       points: fitted,
@@ -134,4 +134,12 @@ function holds(rows: readonly Capture[], noise: number): Points {
     from = to;
   }
   return { points, rejected };
+}
+
+/** The channel that the wiring step has found the joint on. */
+function channelOf({ of }: JointCaptures): number | null {
+  const told = Object.values(of)
+    .flatMap((rows) => rows.slice(0, 1))
+    .find(({ channel }) => !Number.isNaN(channel));
+  return told?.channel ?? null;
 }

@@ -57,7 +57,7 @@ function feedsOf(profile: FollowerProfile): readonly (NamedFeed & { readonly fro
     const weights = typeof joint.from === 'string' ? { [joint.from]: 1 } : (joint.from ?? {});
     // What stretch makes of the gain is at most its range over the leader's travel; without that it is left out.
     if (leverM === 0 || joint.stretch) return [];
-    return Object.entries(weights).map(([from, weight = 0]) => ({
+    return Object.entries(weights).map(([from, weight]) => ({
       from,
       follower,
       joint: joint.name,
