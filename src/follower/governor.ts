@@ -41,6 +41,8 @@ export interface JointLimits {
 
 /** Below this a remaining distance is rounding, radians. */
 const REST_RAD = 1e-12;
+/** The bare name `Infinity` is a variable to the engine, and choosing between it and a number would make garbage. */
+const FOREVER_S = Number.POSITIVE_INFINITY;
 
 /** Governors of several arms, and the tables that hold all their joints, arm after arm. */
 export interface Governors {
@@ -104,7 +106,7 @@ export function governors(arms: readonly (readonly JointLimits[])[]): Governors 
       const t1 = Math.abs(peak - u) / A;
       const d1 = 0.5 * (u + peak) * t1;
       const left = D - d1;
-      const t2 = peak > 0 ? Math.max(0, left - (0.5 * peak * peak) / A) / peak : left > REST_RAD ? Infinity : 0;
+      const t2 = peak > 0 ? Math.max(0, left - (0.5 * peak * peak) / A) / peak : left > REST_RAD ? FOREVER_S : 0;
       const T = t1 + t2 + peak / A;
       if (dt <= t1) {
         x[j] = x0 + s * (u * dt + 0.5 * a * dt * dt) + vt * dt;
