@@ -32,8 +32,8 @@ export interface PotHealth {
   readonly state: Uint8Array;
   /** 1 while this reading's value must not be used. */
   readonly suspect: Uint8Array;
-  /** Judges joint `j` at `tUs`. `counts` may hold NaN: no value came. `angle` is the joint's angle before smoothing, radians. */
-  judge(j: number, tUs: number, counts: Float64Array, angle: Float64Array): void;
+  /** Judges joint `j` at nowUs[0]. `counts` may hold NaN: no value came. `angle` is the joint's angle before smoothing, radians. */
+  judge(j: number, nowUs: Float64Array, counts: Float64Array, angle: Float64Array): void;
 }
 
 export function potHealth(spec: LeaderSpec): PotHealth {
@@ -59,25 +59,28 @@ export function potHealth(spec: LeaderSpec): PotHealth {
   const travelLow = Float64Array.from(spec.joints, (j) => j.travelMin - slack(j));
   const travelHigh = Float64Array.from(spec.joints, (j) => j.travelMax + slack(j));
 
-  const countJump = (j: number, tUs: number, angle: number): void => {
+  const countJump = (j: number, nowUs: Float64Array, angle: Float64Array): void => {
+    const tUs = nowUs[0] as number;
+    const now = angle[j] as number;
     const dtUs = Math.max(tUs - (lastUs[j] as number), JUMP_DT_MIN_US);
-    const step = Math.abs(angle - (lastAngle[j] as number));
+    const step = Math.abs(now - (lastAngle[j] as number));
     if (step > JUMP_RAD_S * dtUs * 1e-6) {
       jumpUs[j * JUMPS + (jumpNext[j] as number)] = tUs;
       jumpNext[j] = ((jumpNext[j] as number) + 1) % JUMPS;
     }
-    lastAngle[j] = angle;
+    lastAngle[j] = now;
     lastUs[j] = tUs;
   };
 
-  const jumping = (j: number, tUs: number): boolean =>
+  const jumping = (j: number, nowUs: Float64Array): boolean =>
     // The slot to be overwritten next holds the oldest of the last three jumps.
-    tUs - (jumpUs[j * JUMPS + (jumpNext[j] as number)] as number) <= JUMPS_WITHIN_US;
+    (nowUs[0] as number) - (jumpUs[j * JUMPS + (jumpNext[j] as number)] as number) <= JUMPS_WITHIN_US;
 
   return {
     state,
     suspect,
-    judge(j, tUs, counts, angle) {
+    judge(j, nowUs, counts, angle) {
+      const tUs = nowUs[0] as number;
       const value = counts[j] as number;
       if (Number.isNaN(value)) {
         suspect[j] = 1;
@@ -88,10 +91,10 @@ export function potHealth(spec: LeaderSpec): PotHealth {
         return;
       }
       heardUs[j] = tUs;
-      countJump(j, tUs, angle[j] as number);
+      countJump(j, nowUs, angle);
       const atRail = value <= (railLow[j] as number) || value >= (railHigh[j] as number);
       const beyond = value < (travelLow[j] as number) || value > (travelHigh[j] as number);
-      const jumps = jumping(j, tUs);
+      const jumps = jumping(j, nowUs);
       if (!atRail && !beyond && !jumps) {
         suspect[j] = 0;
         symptomSinceUs[j] = Number.NaN;

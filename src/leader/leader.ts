@@ -26,6 +26,8 @@ export function leader(spec: LeaderSpec): Leader {
   const countsNow = new Float64Array(n).fill(Number.NaN);
   const read = new Float64Array(n);
   const clean = new Float64Array(n);
+  // In an array, or handing it on for each joint would box it anew.
+  const nowUs = new Float64Array(1);
   const angle = new Float64Array(n);
   const pressed = new Float64Array(spec.buttons.length);
   const median = despike(joints.map((j) => j.despike));
@@ -41,6 +43,7 @@ export function leader(spec: LeaderSpec): Leader {
     notices: notice,
     countsNow,
     take(tUs, counts) {
+      nowUs[0] = tUs;
       for (let j = 0; j < n; j++) {
         const joint = joints[j] as (typeof joints)[number];
         const raw = counts[joint.input] as number;
@@ -52,12 +55,12 @@ export function leader(spec: LeaderSpec): Leader {
           median.push(j, read, clean);
           joint.map.apply(clean, j, angle, j);
         }
-        health.judge(j, tUs, clean, angle);
+        health.judge(j, nowUs, clean, angle);
         // A reading that leaves the joint out says nothing against it.
         if (!came) continue;
         // What a suspect pot says must neither move an arm nor stay in the filter's memory.
         if (health.suspect[j] === 1) smooth.reset(j);
-        else if (health.state[j] === 0) smooth.push(j, tUs, angle, poseRad);
+        else if (health.state[j] === 0) smooth.push(j, nowUs, angle, poseRad);
       }
       for (let b = 0; b < pressed.length; b++)
         pressed[b] = counts[(spec.buttons[b] as (typeof spec.buttons)[number]).input] as number;

@@ -8,8 +8,8 @@ import type { OneEuroSpec } from './spec.ts';
  * taken from the previous *filtered* value, as the authors' code does since August 2023; many copies still use the raw one.
  */
 export interface OneEuro {
-  /** output[j] = filtered input[j] at `tUs`; the first value passes through, a stamp that does not advance keeps the rate. */
-  push(j: number, tUs: number, input: Float64Array, output: Float64Array): void;
+  /** output[j] = filtered input[j] at nowUs[0]; the first value passes through, a stamp that does not advance keeps the rate. */
+  push(j: number, nowUs: Float64Array, input: Float64Array, output: Float64Array): void;
   /** Forgets joint `j`'s past: the next value passes through. */
   reset(j: number): void;
 }
@@ -28,7 +28,8 @@ export function oneEuro(specs: readonly (OneEuroSpec | null)[]): OneEuro {
   const lastUs = new Float64Array(n);
   const rateHz = new Float64Array(n).fill(RATE_HZ_DEFAULT);
   return {
-    push(j, tUs, input, output) {
+    push(j, nowUs, input, output) {
+      const tUs = nowUs[0] as number;
       const x = input[j] as number;
       const before = value[j] as number;
       if (Number.isNaN(cutoffHz[j] as number)) {

@@ -50,15 +50,18 @@ class CompiledMap implements PointMap {
   }
 
   value(input: number): number {
-    const { rows } = this;
-    let row = 0;
-    // Maps have few points: the next one is nearer than the middle one.
-    while (row + ROW < rows.length && at(rows, row + ROW) <= input) row += ROW;
-    return valueIn(rows, row, input);
+    const cell = Float64Array.of(input);
+    this.apply(cell, 0, cell, 0);
+    return at(cell, 0);
   }
 
   apply(input: Float64Array, i: number, output: Float64Array, j: number): void {
-    output[j] = this.value(at(input, i));
+    const { rows } = this;
+    const x = at(input, i);
+    let row = 0;
+    // Maps have few points: the next one is nearer than the middle one.
+    while (row + ROW < rows.length && at(rows, row + ROW) <= x) row += ROW;
+    output[j] = valueIn(rows, row, x);
   }
 
   inverse(output: number): number {

@@ -13,7 +13,7 @@ function filtered(spec: OneEuroSpec | null, values: readonly number[], stepUs = 
   return values.map((value, i) => {
     if (i === resetAt) filter.reset(0);
     input[0] = value;
-    filter.push(0, i * stepUs, input, output);
+    filter.push(0, Float64Array.of(i * stepUs), input, output);
     return output[0] as number;
   });
 }
@@ -56,7 +56,7 @@ describe('the one-euro filter', () => {
       [20_000, 4],
     ] as const) {
       cell[0] = value;
-      filter.push(0, tUs, cell, cell);
+      filter.push(0, Float64Array.of(tUs), cell, cell);
       said.push(cell[0]);
     }
     expect(said.every((v) => Number.isFinite(v) && v >= 0 && v <= 4)).toBe(true);

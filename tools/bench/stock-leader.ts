@@ -81,8 +81,8 @@ export function mapped(spec: LeaderSpec) {
 export function judged(spec: LeaderSpec) {
   const judge = (was: Health, tUs: number, count: number, angle: number, j: number): Health => {
     const { travelMin, travelMax } = spec.joints[j] as LeaderSpec['joints'][number];
-    const dtUs = tUs - was.tUs;
-    const jumped = dtUs > 0 && Math.abs(angle - was.angle) > ((1000 * Math.PI) / 180) * dtUs * 1e-6;
+    const dtUs = Math.max(tUs - was.tUs, 5_000);
+    const jumped = Math.abs(angle - was.angle) > ((1000 * Math.PI) / 180) * dtUs * 1e-6;
     const jumpsUs = (jumped ? [...was.jumpsUs, tUs] : was.jumpsUs).filter((at) => tUs - at <= US_PER_S).slice(-3);
     const slack = 0.05 * (travelMax - travelMin);
     const jumping = jumpsUs.length === 3;

@@ -22,6 +22,7 @@ const JUMPING = 2;
 const BEYOND = 3;
 const SILENT = 4;
 const JUMP_RAD_US = ((1000 * Math.PI) / 180) * 1e-6;
+const JUMP_DT_MIN_US = 5_000;
 const JUMPS = 3;
 
 /** Decoded counts to a conditioned pose: despike, map, health, one-euro, and what is only worth a notice. */
@@ -78,7 +79,7 @@ export function tightLeader(spec: LeaderSpec): TightLeader {
 
   const take = (nowUs: Float64Array, counts: Float64Array): void => {
     const now = nowUs[0] as number;
-    const dtUs = now - (lastUs[0] as number);
+    const dtUs = Math.max(now - (lastUs[0] as number), JUMP_DT_MIN_US);
     lastUs[0] = now;
     watch(nowUs);
     count = count < WINDOW ? count + 1 : WINDOW;
@@ -97,7 +98,7 @@ export function tightLeader(spec: LeaderSpec): TightLeader {
       while (i < last && clean >= (xs[i + 1] as number)) i++;
       const angle = (ys[i] as number) + (clean - (xs[i] as number)) * (slopes[i] as number);
 
-      if (dtUs > 0 && Math.abs(angle - (lastAngle[j] as number)) > JUMP_RAD_US * dtUs) {
+      if (Math.abs(angle - (lastAngle[j] as number)) > JUMP_RAD_US * dtUs) {
         jumpUs[j * JUMPS + (jumpNext[j] as number)] = now;
         jumpNext[j] = ((jumpNext[j] as number) + 1) % JUMPS;
       }
