@@ -1,6 +1,7 @@
 import { chain } from './chain.ts';
 import { reachM } from './extent.ts';
 import type { ArmSpec } from './spec.ts';
+import { spread } from './spread.ts';
 
 /** Lowest and highest angle of a joint. */
 export interface JointRange {
@@ -10,8 +11,6 @@ export interface JointRange {
 
 /** Poses looked at. One generic pose would do; a few more cost nothing and allow for narrow ranges. */
 const POSES = 16;
-/** 1 / golden ratio: its multiples fall everywhere and never in step with a joint's ends. */
-const SPREAD = 0.618_033_988_749_895;
 /** A joint that moves the tip by less than this share of the reach a radian does not move it. */
 const NOTHING = 1e-9;
 
@@ -21,9 +20,10 @@ export function reaching(arm: ArmSpec, joints: readonly JointRange[]): readonly 
   const pose = new Float64Array(joints.length);
   const jacobian = new Float64Array(3 * poser.links);
   const most = new Float64Array(poser.links);
+  const places = spread(joints.length);
   for (let look = 1; look <= POSES; look++) {
     for (const [j, { minRad, maxRad }] of joints.entries()) {
-      pose[j] = minRad + ((look * (j + 1) * SPREAD) % 1) * (maxRad - minRad);
+      pose[j] = minRad + places.at(look, j) * (maxRad - minRad);
     }
     poser.pose(pose);
     poser.jacobian(poser.at, 3 * poser.links, poser.links - 1, jacobian);

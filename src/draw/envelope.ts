@@ -3,6 +3,7 @@ import { reachM } from '../arm/extent.ts';
 import { reaching } from '../arm/reaching.ts';
 import type { JointRange } from '../arm/reaching.ts';
 import type { ArmSpec } from '../arm/spec.ts';
+import { spread } from '../arm/spread.ts';
 import { contours, simplified } from './contour.ts';
 import type { Point } from './contour.ts';
 
@@ -58,32 +59,21 @@ export function envelopes(arm: ArmSpec, ranges: readonly JointRange[]): Envelope
   return { side: traced(marked.side, centreZ), plan: traced(marked.plan, 0) };
 }
 
-/**
- * Poses spread over the ranges by the additive recurrence of the generalised golden ratio (M. Roberts, 2018, "The
- * unreasonable effectiveness of quasirandom sequences"), closer together near the ends, where outlines are.
- */
+/** Poses all over the ranges, closer together near the ends, where outlines are. */
 function everywhere(
   ranges: readonly JointRange[],
   moving: readonly number[],
   pose: Float64Array,
   look: () => void,
 ): void {
-  const ratio = goldenRatio(moving.length);
+  const places = spread(moving.length);
   for (let n = 1; n <= POSES; n++) {
     for (const [k, joint] of moving.entries()) {
       const { minRad, maxRad } = ranges[joint] as JointRange;
-      const even = (n * ratio ** -(k + 1)) % 1;
-      pose[joint] = minRad + 0.5 * (1 - Math.cos(Math.PI * even)) * (maxRad - minRad);
+      pose[joint] = minRad + 0.5 * (1 - Math.cos(Math.PI * places.at(n, k))) * (maxRad - minRad);
     }
     look();
   }
-}
-
-/** The positive root of x^(d+1) = x + 1. */
-function goldenRatio(dimensions: number): number {
-  let x = 2;
-  for (let step = 0; step < 32; step++) x = (1 + x) ** (1 / (dimensions + 1));
-  return x;
 }
 
 /** One joint at a time, finely, while each other one stands at its lowest, its highest, its middle or at zero. */
@@ -129,10 +119,10 @@ function centre(ranges: readonly JointRange[], pose: Float64Array): void {
  * to have an outline, one cell outside.
  */
 function closed(cells: Uint8Array, size: number): Uint8Array {
-  return spread(spread(cells, size, 1, GAP), size, 0, GAP - 1);
+  return grown(grown(cells, size, 1, GAP), size, 0, GAP - 1);
 }
 
-function spread(cells: Uint8Array, size: number, what: 0 | 1, by: number): Uint8Array {
+function grown(cells: Uint8Array, size: number, what: 0 | 1, by: number): Uint8Array {
   const out = cells.slice();
   for (let y = by; y < size - by; y++) {
     for (let x = by; x < size - by; x++) {

@@ -6,6 +6,8 @@ export interface Template {
   readonly kind: 'template';
   /** Length of the longest line it can write. */
   readonly bytesMax: number;
+  /** The numbers it writes, in order. */
+  readonly fields: readonly TemplateField[];
   /** Writes the line of one command and `frame.sentUs`; returns its length. */
   write(frame: Frame, out: Uint8Array): number;
 }
@@ -30,12 +32,16 @@ const MINUS = 0x2d;
 const POINT = 0x2e;
 const PLACEHOLDER = /^([^{}]+)\.(us|deg)(?::(\d+))?$/;
 
-/** One number of the line and the text that follows it. */
-interface Field {
+/** One number of the line. */
+export interface TemplateField {
   readonly unit: 'us' | 'deg';
   /** Index of the servo (us) or of the joint (deg). */
   readonly index: number;
   readonly decimals: number;
+}
+
+/** With the text that follows it. */
+interface Field extends TemplateField {
   readonly scale: number;
   readonly after: Uint8Array;
 }
@@ -148,6 +154,7 @@ function assemble(before: Uint8Array, fields: readonly Field[], output: OutputWi
 
   return {
     kind: 'template',
+    fields,
     bytesMax: fields.reduce((sum, field) => sum + fieldBytesMax(field, output) + field.after.length, before.length),
     write(frame, out) {
       // A servo that is only told by its joint's angle is turned by the board: no pulse of ours is rounded.
