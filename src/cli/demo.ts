@@ -6,13 +6,14 @@ import { driving } from './driving.ts';
 import { rigOrMistakes } from './load.ts';
 import { durationOption } from './options.ts';
 import { portOf } from './port-of.ts';
-import { logOption } from './run.ts';
+import { logOption, type MakeRecording, recordingMaker } from './run.ts';
 import { realWorld, type World } from './world.ts';
 
 export interface DemoOptions {
   readonly for: number | undefined;
   readonly json: boolean;
   readonly log: LogLevel;
+  readonly record?: MakeRecording;
 }
 
 /** From `src/cli` and from `dist/cli` alike. */
@@ -23,6 +24,8 @@ export async function demo(options: DemoOptions, world: World): Promise<number> 
   const loaded = rigOrMistakes(RIG, world.err.write);
   if (loaded === null) return 1;
   const { rig } = loaded;
+  const companion = options.record?.(rig, loaded.profiles);
+  if (companion === null) return 2;
   return driving(
     {
       rig,
@@ -35,6 +38,7 @@ export async function demo(options: DemoOptions, world: World): Promise<number> 
       json: options.json,
       logLevel: options.log,
       logFile: null,
+      ...(companion === undefined ? {} : { companion }),
     },
     world,
   );
@@ -50,9 +54,14 @@ export function demoCommand(world: () => World = realWorld): CommandUnknownOpts 
     .description('drive three simulated arms by a simulated hand: no hardware, nothing real moves')
     .option('--for <time>', 'end after this time (10s, 2min)', durationOption)
     .option('--json', 'print the status as JSON, ten lines a second')
+    .option('--take <name>', 'record the run as a take; m marks, t ends it')
+    .option('--count-in <time>', 'begin the recording only after this time', durationOption)
+    .option('--takes <folder>', 'where takes live')
     .addOption(logOption())
     .addHelpText('after', EXPLAINED)
-    .action(async ({ for: forUs, json, log }) => {
-      process.exitCode = await demo({ for: forUs, json: json === true, log }, world());
+    .action(async ({ for: forUs, json, log, take, takes, countIn }) => {
+      const at = world();
+      const record = await recordingMaker({ take, takes, countIn }, at);
+      process.exitCode = await demo({ for: forUs, json: json === true, log, record }, at);
     });
 }

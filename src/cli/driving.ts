@@ -6,6 +6,7 @@ import { type Cancel, US_PER_MS } from '../clock/clock.ts';
 import type { Port } from '../port/types.ts';
 import type { CompiledBoard, CompiledRig } from '../rig/compiled.ts';
 import { watchStates } from './changes.ts';
+import type { Companion } from './companion.ts';
 import type { Look } from './display.ts';
 import { broughtToStand, end, type End, exitStatus } from './ending.ts';
 import { keyReader } from './keys.ts';
@@ -33,6 +34,8 @@ export interface DrivingOptions {
   readonly json: boolean;
   readonly logLevel: LogLevel;
   readonly logFile: string | null;
+  /** What goes along: a recording, a take that plays. */
+  readonly companion?: Companion;
 }
 
 const LOOK_US = 100 * US_PER_MS;
@@ -40,7 +43,7 @@ const FLUSH_US = 500 * US_PER_MS;
 
 /** Drives a rig until somebody or something ends it; resolves with the exit status. */
 export async function driving(options: DrivingOptions, world: World): Promise<number> {
-  const { rig, dry } = options;
+  const { rig, dry, companion } = options;
   const { clock, out, err } = world;
   const moves = options.real && !dry;
   warm(rig);
@@ -59,6 +62,7 @@ export async function driving(options: DrivingOptions, world: World): Promise<nu
     unasked: options.unasked,
     dry,
     say: show.hear,
+    ...(companion === undefined ? {} : { onStart: companion.onStart }),
     onBug: (follower, bug) => show.log.error({ follower, err: bug }, `${follower} is given up: ${String(bug)}`),
   });
   const over = end();
@@ -67,7 +71,10 @@ export async function driving(options: DrivingOptions, world: World): Promise<nu
     pace: () => live.drive.common.pace[0] as number,
     awake: () => moves && live.drive.followers.some(({ is }) => is.present && is.pulsed),
     leave: over.because,
+    companion: (key) => companion?.key(key),
   });
+  const { say } = show;
+  companion?.begin({ live, clock, say, parkAndLeave: hand.parkAndLeave, leave: () => over.because('over') });
   const cancels = [tellStates(live, show), listenTo(world, hand, show, over, moves)];
   openKeyboard(world, rig.plan.followers.length, hand, show, over);
   const time = { isUp: false };
@@ -85,13 +92,14 @@ export async function driving(options: DrivingOptions, world: World): Promise<nu
   const still = await broughtToStand(live, why, over.hurried);
   const last = looking.end();
   await live.close();
+  const isWell = (await companion?.end()) ?? true;
   await show.display.end(last, why);
   if (show.view !== null) err.write(`${show.epilogue()}${rig.name}: ${ENDINGS[why]}\n`);
   const holding = live.drive.followers.filter(({ is }) => is.present && is.pulsed).map(({ spec }) => spec.name);
   if (moves && holding.length > 0) err.write(`${leftHolding(holding, still)}\n`);
   await Promise.all([out.flush(FLUSH_US), err.flush(FLUSH_US)]);
   for (const cancel of cancels) cancel();
-  return exitStatus(why, still);
+  return isWell ? exitStatus(why, still) : Math.max(1, exitStatus(why, still));
 }
 
 function wakesAt(rig: CompiledRig, memory: WakeMemory | null): readonly WakesAt[] {

@@ -1,9 +1,11 @@
 import type { Key } from '../drive/events.ts';
+import type { CompanionKey } from './companion.ts';
 
 /** What a key of the live view does. */
 export type Action =
   | { readonly kind: 'ask'; readonly key: Exclude<Key, 'pace' | 'mark'> }
   | { readonly kind: 'pace'; readonly step: 1 | -1 }
+  | { readonly kind: 'companion'; readonly key: CompanionKey }
   /** Index in the rig. */
   | { readonly kind: 'select'; readonly follower: number }
   | { readonly kind: 'select_all' | 'help' | 'back' | 'quit' | 'interrupt' };
@@ -88,6 +90,27 @@ export const BINDINGS: readonly KeyBinding[] = [
     help: 'park, then end the pulses: what the arm then does is its own matter',
     bytes: ['l'],
     action: { kind: 'ask', key: 'limp' },
+  },
+  {
+    sign: 'm',
+    label: 'mark',
+    help: 'name this moment in the take that is being recorded',
+    bytes: ['m'],
+    action: { kind: 'companion', key: 'mark' },
+  },
+  {
+    sign: 't',
+    label: 'take',
+    help: 'begin a recording under the next free name, or end it',
+    bytes: ['t'],
+    action: { kind: 'companion', key: 'record' },
+  },
+  {
+    sign: 'o',
+    label: 'hand over',
+    help: 'while a take plays: the hand leads from here, or the take again',
+    bytes: ['o'],
+    action: { kind: 'companion', key: 'hand_over' },
   },
   {
     sign: '0',

@@ -1,5 +1,6 @@
 import type { Key } from '../drive/events.ts';
 import { ALL } from '../drive/events.ts';
+import type { CompanionKey } from './companion.ts';
 import type { Action } from './keys.ts';
 
 /** What an operator's hand on the keyboard comes to: keys for the drive, and when to leave. It keeps no time. */
@@ -32,6 +33,8 @@ export interface OperatorEffects {
   /** True while leaving would leave an arm behind that has pulses. */
   awake(): boolean;
   leave(why: 'interrupted' | 'quit'): void;
+  /** Keys of what goes along with the run. */
+  companion(key: CompanionKey): void;
 }
 
 /** The steps that the pace keys take: shares of the speed limits, rising. */
@@ -111,6 +114,8 @@ export function operator(followers: number, effects: OperatorEffects): Operator 
           return ask(action.key);
         case 'pace':
           return setPace(action.step);
+        case 'companion':
+          return effects.companion(action.key);
         case 'select':
           return select(action.follower);
         case 'select_all':

@@ -6,6 +6,9 @@ import { withFollowers } from '../bridge/selection.ts';
 import { wakeMemory, wakeMemoryFile } from '../bridge/wake-memory.ts';
 import { CAUTIONS } from '../bridge/words.ts';
 import type { CompiledRig } from '../rig/compiled.ts';
+import type { LoadedRig } from '../rig/load.ts';
+import { takesFolder } from '../take/folder.ts';
+import type { Companion } from './companion.ts';
 import { driving } from './driving.ts';
 import { rigOrMistakes } from './load.ts';
 import { chosenFollowers, durationOption, logLevelOption, namesOption, paceOption } from './options.ts';
@@ -22,6 +25,8 @@ export interface RunOptions {
   readonly json: boolean;
   readonly log: LogLevel;
   readonly logFile: string | undefined;
+  /** Makes the recording that goes along; absent: none can. */
+  readonly record?: MakeRecording;
 }
 
 const NEEDS_JOIN = 'there is no terminal to ask for the go; say --join to let the arms start without asking, or --dry';
@@ -42,6 +47,8 @@ export async function run(file: string, options: RunOptions, world: World): Prom
     return 2;
   }
   const { rig } = chosen;
+  const companion = options.record?.(rig, loaded.profiles);
+  if (companion === null) return 2;
   return driving(
     {
       rig,
@@ -54,9 +61,27 @@ export async function run(file: string, options: RunOptions, world: World): Prom
       json: options.json,
       logLevel: options.log,
       logFile: options.logFile ?? null,
+      ...(companion === undefined ? {} : { companion }),
     },
     world,
   );
+}
+
+/** Makes a recording, begun or not; null: it cannot be, and has said why. */
+export type MakeRecording = (rig: CompiledRig, profiles: LoadedRig['profiles']) => Companion | null;
+
+export interface RecordOptions {
+  readonly take: string | undefined;
+  readonly takes: string | undefined;
+  readonly countIn: number | undefined;
+}
+
+/** What records is loaded here, before anything moves: it takes a tenth of a second. */
+export async function recordingMaker({ take, takes, countIn }: RecordOptions, world: World): Promise<MakeRecording> {
+  const { recording } = await import('./take-recording.ts');
+  const folder = takesFolder(takes, world.env);
+  return (rig, profiles) =>
+    recording({ folder, name: take ?? null, countInUs: countIn ?? 0, rig, profiles }, world.err.write);
 }
 
 function chosenRig(
@@ -96,11 +121,17 @@ export function runCommand(world: () => World = realWorld): CommandUnknownOpts {
     .option('--for <time>', 'after this time (500ms, 10s, 2min) park every follower and leave', durationOption)
     .option('--json', 'print the status as JSON, ten lines a second')
     .addOption(logOption())
+    .option('--take <name>', 'record the run as a take; m marks, t ends it')
+    .option('--count-in <time>', 'begin the recording only after this time', durationOption)
+    .option('--takes <folder>', 'where takes live')
     .option('--log-file <file>', 'write the log there rather than to standard error')
     .addHelpText('after', EXPLAINED)
-    .action(async (file, { join, pace, only, without, dry, for: forUs, json, log, logFile }) => {
+    .action(async (file, { join, pace, only, without, dry, for: forUs, json, log, logFile, take, takes, countIn }) => {
       const flags = { join: join === true, dry: dry === true, json: json === true };
-      process.exitCode = await run(file, { ...flags, pace, only, without, for: forUs, log, logFile }, world());
+      const rest = { pace, only, without, for: forUs, log, logFile };
+      const at = world();
+      const record = await recordingMaker({ take, takes, countIn }, at);
+      process.exitCode = await run(file, { ...flags, ...rest, record }, at);
     });
 }
 

@@ -5,12 +5,14 @@ import { ALL, type Key } from '../../src/drive/events.ts';
 function at(keyboard: { followers?: number; awake?: boolean; pace?: number } = {}) {
   const asked: (readonly [Key, number] | readonly [Key, number, number])[] = [];
   const left: string[] = [];
+  const companions: string[] = [];
   const state = { pace: keyboard.pace ?? 1, awake: keyboard.awake ?? true };
   const hand = operator(keyboard.followers ?? 3, {
     key(key, follower, value) {
       asked.push(key === 'pace' ? [key, follower, value] : [key, follower]);
       if (key === 'pace') state.pace = value;
     },
+    companion: (key) => void companions.push(key),
     pace: () => state.pace,
     awake: () => state.awake,
     leave: (why) => left.push(why),
@@ -18,8 +20,17 @@ function at(keyboard: { followers?: number; awake?: boolean; pace?: number } = {
   const press = (...keys: Exclude<Key, 'pace' | 'mark'>[]): void => {
     for (const key of keys) hand.act({ kind: 'ask', key });
   };
-  return { hand, asked, left, press };
+  return { hand, asked, left, press, companions };
 }
+
+describe('Keys of a take', () => {
+  it('go to what goes along with the run, and to no arm', () => {
+    const { hand, asked, companions } = at();
+    hand.act({ kind: 'companion', key: 'mark' });
+    hand.act({ kind: 'companion', key: 'record' });
+    expect([asked, companions]).toEqual([[], ['mark', 'record']]);
+  });
+});
 
 describe('Keys', () => {
   it('are for every follower until some are selected', () => {
