@@ -50,7 +50,7 @@ describe('the pipeline', () => {
           expect(bugs).toEqual([]);
           expect(lines).toEqual(toldBy(on));
         }),
-        { numRuns: 100 },
+        { numRuns: 50 },
       );
     },
     LONG_MS,
@@ -83,7 +83,7 @@ describe('the pipeline', () => {
           source.runTo(on.nowUs - 1);
           expect(lines).toEqual(toldBy(on));
         }),
-        { numRuns: 100 },
+        { numRuns: 50 },
       );
     },
     LONG_MS,

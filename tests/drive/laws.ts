@@ -146,8 +146,10 @@ function delayFaults(record: Record, follower: number): string[] {
     if (event.tUs - movingSinceUs > periodUs)
       faults.push(`was kept waiting from ${movingSinceUs} us to ${event.tUs} us`);
     if (isOfBoard(record, event, follower)) movingSinceUs = Number.POSITIVE_INFINITY;
+    // A jogged servo is no moving arm: it may be left where it is.
     for (const each of record.told.slice(seen, told))
-      if (each.follower === follower) movingSinceUs = each.moving ? each.tUs : Number.POSITIVE_INFINITY;
+      if (each.follower === follower)
+        movingSinceUs = each.moving && each.state !== 'jogging' ? each.tUs : Number.POSITIVE_INFINITY;
     seen = told;
   }
   return faults;
