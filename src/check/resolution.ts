@@ -49,12 +49,14 @@ const PLACES = 256;
 export function resolutionOf(subject: FollowerSubject, j: number): Resolution {
   const { profile, spec, leader } = subject;
   const joint = spec.joints[j] as FollowerJointSpec;
+  // A joint that reaches for a tip copies no pot.
+  const reaches = spec.whole?.tip?.reaching.includes(j) === true;
   const servos = spec.servos.map((servo, index) => ({ servo, index, weight: weightOf(servo, j) }));
   const turning = servos.filter(({ weight }) => weight !== 0);
   const servoRad = turning.map(({ servo, weight }) => (servo.deadbandUs * radPerUs(servo.map)) / Math.abs(weight));
   const wireRad = turning.map(({ servo, index, weight }) => wireStepRad(profile, index, j, servo, weight));
   return {
-    ...potChain(joint, leader),
+    ...(reaches ? NO_POT : potChain(joint, leader)),
     deadband_deg: degreesOf(joint.deadbandRad),
     wire_deg: wireRad.includes(null) ? null : degreesOf(Math.max(...wireRad.map((step) => step ?? 0))),
     servo_deg: degreesOf(Math.max(...servoRad)),

@@ -59,14 +59,14 @@ function sizeLines({ reach_mm, scale, time_factor, ...rest }: CheckedFollower): 
       : `, ${brief(scale)} times the leader's; it moves and loads alike in ${brief(time_factor)} times the time`;
   const { end_speed_max_mm_s: speed, end_speed_uncapped_mm_s: uncapped, end_speed_cap_mm_s: cap, stopping_mm } = rest;
   const capped = cap === null ? '' : `, capped from ${fixed(uncapped, 0)}`;
-  const { tip_followed_share: tip, tip_left_mm: left } = rest;
+  const { tip_followed_share: tip, tip_left_mm: left, tip_mm_per_count: count } = rest;
   return [
     `  reach ${fixed(reach_mm, 0)} mm${size}`,
     `  no link end is faster than ${fixed(speed, 0)} mm/s${capped}; all of it stops within ${fixed(stopping_mm, 0)} mm`,
     ...(tip === null
       ? []
       : [
-          `  its tip follows the leader's in ${percent(tip)} of its places, and stays up to ${fixed(left, 0)} mm behind`,
+          `  its tip follows the leader's in ${percent(tip)} of its places, and stays up to ${fixed(left, 0)} mm behind; a count moves it by up to ${fixed(count, 2)} mm`,
         ]),
   ];
 }
