@@ -49,7 +49,7 @@ function incompleteBeta(x: number, a: number, b: number): number {
 }
 
 /** Probability that Student's t of `dof` degrees of freedom is further from zero than `t`, on either side. */
-function studentTails(t: number, dof: number): number {
+export function studentTails(t: number, dof: number): number {
   return incompleteBeta(dof / (dof + t * t), dof / 2, 0.5);
 }
 

@@ -1,5 +1,5 @@
 import { curveThrough } from './curves.ts';
-import { fisherTail, studentT } from './distributions.ts';
+import { fisherTail, studentT, studentTails } from './distributions.ts';
 import { type Polynomial, polynomials } from './least-squares.ts';
 import { type Suspect, suspect, wrongPoint } from './wrong-point.ts';
 
@@ -152,11 +152,15 @@ function chosen(
     // A bend can look like a wrong point to the line: then leaving that point out does not help much.
     if (asked !== fit.used && spread(again.used, noise) > HELPS * spread(fit.used, noise)) continue;
     const second = wrongPoint(again.used, rest, noise);
-    if (second !== null) return { why: 'wrong points', at: [x[wrong.index] as number, rest[second.index] as number] };
+    if (second !== null && rest.length * studentTails(second.sigmas, again.used.dof - 1) < BEYOND_CHANCE)
+      return { why: 'wrong points', at: [x[wrong.index] as number, rest[second.index] as number] };
     return turning(again, rest) ?? { fit: again, wrong: placed(wrong, again.used, x, y) };
   }
   return turning(fit, x) ?? { fit, wrong: null };
 }
+
+/** So seldom does scatter alone make a second point stand out; a few points are easily unlucky. */
+const BEYOND_CHANCE = 1e-6;
 
 /** Leaving a wrong point out takes the spread down to this share or less. */
 const HELPS = 0.7;
