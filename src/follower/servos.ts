@@ -1,4 +1,4 @@
-import type { PointMap } from '../map/points.ts';
+import { packMaps } from '../map/pack.ts';
 import { type Rows, rowsOf } from './rows.ts';
 import type { ServoSpec } from './spec.ts';
 import { weightedSums } from './weighted.ts';
@@ -12,7 +12,7 @@ export interface Servos {
 /** @param arms the servos of each arm */
 export function servos(arms: readonly (readonly ServoSpec[])[]): readonly Servos[] {
   const all = arms.flat();
-  const maps = all.map((servo) => servo.map);
+  const maps = packMaps(all.map((servo) => servo.map));
   const { first, from, weight } = weightedSums(all.map((servo) => servo.turns));
   const turned = new Float64Array(1);
   const turn = (rows: Rows, anglesRad: Float64Array, pulsesUs: Float64Array): void => {
@@ -21,7 +21,7 @@ export function servos(arms: readonly (readonly ServoSpec[])[]): readonly Servos
       for (let t = first[r] as number; t < (first[r + 1] as number); t++)
         sum += (weight[t] as number) * (anglesRad[from[t] as number] as number);
       turned[0] = sum;
-      (maps[r] as PointMap).apply(turned, 0, pulsesUs, r - rows.from);
+      maps.apply(r, turned, 0, pulsesUs, r - rows.from);
     }
   };
   return rowsOf(arms.map((arm) => arm.length)).map((rows) => ({

@@ -1,13 +1,8 @@
 import { monotoneSlopes } from './monotone.ts';
 import type { PointMap } from './points.ts';
+import { type Beyond, readTable, ROW, tableOf, valueIn } from './table.ts';
 
 export type Curve = 'straight' | 'monotone';
-
-/** What a map does outside its outer points: go on along the end's slope, or stay at the outer value. */
-export type Beyond = 'extend' | 'clamp';
-
-/** A row of the table: where it starts, then its coefficients: y = c0 + d (c1 + d (c2 + d c3)), d = x - start. */
-const ROW = 5;
 
 /** Halvings that bring a segment below one part in 2^52 of its width: no more can be told apart. */
 const BISECTIONS = 52;
@@ -34,9 +29,8 @@ class CompiledMap implements PointMap {
   readonly yMin: number;
   readonly yMax: number;
   readonly falling: boolean;
+  readonly table: Float64Array;
   private readonly straight: boolean;
-  /** A row before the first point, one for each segment, one from the last point on. */
-  private readonly rows: Float64Array;
 
   constructor(x: Float64Array, y: Float64Array, curve: Curve, beyond: Beyond) {
     const last = x.length - 1;
@@ -46,7 +40,7 @@ class CompiledMap implements PointMap {
     this.yMin = at(y, this.falling ? last : 0);
     this.yMax = at(y, this.falling ? 0 : last);
     this.straight = curve === 'straight';
-    this.rows = table(x, y, this.straight ? null : monotoneSlopes(x, y), beyond);
+    this.table = tableOf(x, y, this.straight ? null : monotoneSlopes(x, y), beyond);
   }
 
   value(input: number): number {
@@ -56,16 +50,12 @@ class CompiledMap implements PointMap {
   }
 
   apply(input: Float64Array, i: number, output: Float64Array, j: number): void {
-    const { rows } = this;
-    const x = at(input, i);
-    let row = 0;
-    // Maps have few points: the next one is nearer than the middle one.
-    while (row + ROW < rows.length && at(rows, row + ROW) <= x) row += ROW;
-    output[j] = valueIn(rows, row, x);
+    const { table } = this;
+    readTable(table, 0, table.length - ROW, input, i, output, j);
   }
 
   inverse(output: number): number {
-    const { rows, falling } = this;
+    const { table: rows, falling } = this;
     let row = 0;
     const reached = (start: number): boolean => (falling ? start >= output : start <= output);
     while (row + ROW < rows.length && reached(at(rows, row + ROW + 1))) row += ROW;
@@ -78,20 +68,15 @@ class CompiledMap implements PointMap {
 
   /** The cubic is monotone inside a segment, and near a flat end Newton would leave it. */
   private bisect(row: number, output: number): number {
-    let low = at(this.rows, row);
-    let high = at(this.rows, row + ROW);
+    let low = at(this.table, row);
+    let high = at(this.table, row + ROW);
     for (let step = 0; step < BISECTIONS; step++) {
       const middle = 0.5 * (low + high);
-      if (valueIn(this.rows, row, middle) < output !== this.falling) low = middle;
+      if (valueIn(this.table, row, middle) < output !== this.falling) low = middle;
       else high = middle;
     }
     return 0.5 * (low + high);
   }
-}
-
-function valueIn(rows: Float64Array, row: number, input: number): number {
-  const d = input - at(rows, row);
-  return at(rows, row + 1) + d * (at(rows, row + 2) + d * (at(rows, row + 3) + d * at(rows, row + 4)));
 }
 
 function refuseBadPoints(x: Float64Array, y: Float64Array): void {
@@ -101,29 +86,6 @@ function refuseBadPoints(x: Float64Array, y: Float64Array): void {
     const turns = rises ? !(at(y, i) > at(y, i - 1)) : !(at(y, i) < at(y, i - 1));
     if (!(at(x, i) > at(x, i - 1)) || turns) throw new RangeError('points of a map turn back or repeat');
   }
-}
-
-/** One polynomial a segment; straight where `slopes` is null, the cubic Hermite through the slopes otherwise. */
-function table(x: Float64Array, y: Float64Array, slopes: Float64Array | null, beyond: Beyond): Float64Array {
-  const last = x.length - 1;
-  const rows = new Float64Array((x.length + 1) * ROW);
-  for (let i = 0; i < last; i++) {
-    const h = at(x, i + 1) - at(x, i);
-    const secant = (at(y, i + 1) - at(y, i)) / h;
-    // A straight segment is exactly straight: no rounding crumbs in the upper coefficients.
-    if (slopes === null) rows.set([at(x, i), at(y, i), secant], (i + 1) * ROW);
-    else {
-      const from = at(slopes, i);
-      const to = at(slopes, i + 1);
-      const square = (3 * secant - 2 * from - to) / h;
-      rows.set([at(x, i), at(y, i), from, square, (from + to - 2 * secant) / (h * h)], (i + 1) * ROW);
-    }
-  }
-  const slope = (i: number): number =>
-    beyond === 'clamp' ? 0 : slopes === null ? at(rows, i * ROW + 2) : at(slopes, i);
-  rows.set([at(x, 0), at(y, 0), slope(slopes === null ? 1 : 0)], 0);
-  rows.set([at(x, last), at(y, last), slope(last)], (last + 1) * ROW);
-  return rows;
 }
 
 function at(list: Float64Array, i: number): number {

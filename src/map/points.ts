@@ -13,4 +13,6 @@ export interface PointMap {
   readonly yMin: number;
   readonly yMax: number;
   readonly falling: boolean;
+  /** The map as rows of polynomials (`table.ts`), for whoever packs many of them together. */
+  readonly table: Float64Array;
 }
