@@ -21,12 +21,15 @@ import {
   u16,
   u32,
 } from './frames-layout.ts';
-import { pulseGrid, pulseSteps } from './pulse-grid.ts';
-import type { BoardPlan, Emit, Garble, OutputWiring, ServoWiring, WireSession } from './types.ts';
+import { type PulseGrid, pulseGrid, pulseSteps } from './pulse-grid.ts';
+import type { BoardPlan, Emit, Frame, Garble, OutputWiring, ServoWiring, WireSession } from './types.ts';
 
 const WRAP_US = 2 ** 32;
 /** Board time that steps back by less is a frame that came late (UDP reorders), by more a board that restarted. */
 const LATE_US = 1_000_000;
+
+/** Where a payload is put together before it is sealed: one for all sessions, because each call is done with it. */
+const outgoing = new Uint8Array(PAYLOAD_BYTES_MAX);
 
 /** The host's side of the `frames` wire. Layout and rules: README.md. */
 export function framesSession(plan: BoardPlan): WireSession {
@@ -39,7 +42,6 @@ export function framesSession(plan: BoardPlan): WireSession {
   }
 
   const reader = frameReader();
-  const outgoing = new Uint8Array(PAYLOAD_BYTES_MAX);
   const greeting = new Uint8Array(1 + sealedBytes(HOST_HEAD));
   const reading = { kind: 'reading' as const, counts: new Float64Array(channels.length), boardUs: Number.NaN };
   const garbled = { kind: 'garbled' as const, bytes: 0, why: 'cut' as Garble };
@@ -198,18 +200,7 @@ export function framesSession(plan: BoardPlan): WireSession {
     },
     encode(output, frame, out) {
       const { servos } = plan.outputs[output] as OutputWiring;
-      const grid = grids[output] as (typeof grids)[number];
-      let at = head(FROM_HOST.command);
-      for (let servo = 0; servo < servos.length; servo++) {
-        const steps = pulseSteps(grid, servo, frame.pulsesUs[servo] as number);
-        frame.sentUs[servo] = steps / PULSE_STEPS_PER_US;
-        if (servo >= frame.pulsing) continue;
-        outgoing[at] = (servos[servo] as ServoWiring).channel;
-        outgoing[at + 1] = steps & 0xff;
-        outgoing[at + 2] = steps >>> 8;
-        at += SERVO_BYTES;
-      }
-      return seal(outgoing, at, out, 0);
+      return putCommand(head(FROM_HOST.command), servos, grids[output] as PulseGrid, frame, out);
     },
     limp(output, out) {
       let at = head(FROM_HOST.limp);
@@ -231,4 +222,25 @@ export function framesSession(plan: BoardPlan): WireSession {
       return seal(outgoing, at + 2, out, 0);
     },
   };
+}
+
+/** Puts the servos of a command behind its head of `at` bytes and seals it into `out`; returns its length there. */
+function putCommand(
+  at: number,
+  servos: readonly ServoWiring[],
+  grid: PulseGrid,
+  { pulsesUs, sentUs, pulsing }: Frame,
+  out: Uint8Array,
+): number {
+  let end = at;
+  for (let servo = 0; servo < servos.length; servo++) {
+    const steps = pulseSteps(grid, servo, pulsesUs[servo] as number);
+    sentUs[servo] = steps / PULSE_STEPS_PER_US;
+    if (servo >= pulsing) continue;
+    outgoing[end] = (servos[servo] as ServoWiring).channel;
+    outgoing[end + 1] = steps & 0xff;
+    outgoing[end + 2] = steps >>> 8;
+    end += SERVO_BYTES;
+  }
+  return seal(outgoing, end, out, 0);
 }
