@@ -226,8 +226,7 @@ function follower(spec: FollowerSpec, parts: Parts): Follower {
       let reason = 0;
       if (whole === null) motion.step(dtS);
       else reason = whole.step(dtS, gentle, wishing);
-      came.check(rows, spec);
-      came.note(rows, reason);
+      came.note(rows, spec, reason);
       gears.pulses(motion.x, frame.pulsesUs);
     },
     brake(dtS) {

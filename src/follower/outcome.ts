@@ -3,12 +3,12 @@ import { LIMITS } from './reasons.ts';
 import type { Rows } from './rows.ts';
 import type { FollowerSpec } from './spec.ts';
 
-/** What a step came to. */
+/** What a step came to. Either throws where a joint has left its range: the governor never lets one, it is our bug. */
 export interface Outcome {
-  /** Throws where a joint has left its range: the governor never lets one, so it is a bug of ours. */
+  /** Adds to `limits` which joints run at their speed limit, and the bits of `reason` where one has not arrived. */
+  note(rows: Rows, spec: FollowerSpec, reason: number): void;
+  /** Only looks at the range. */
   check(rows: Rows, spec: FollowerSpec): void;
-  /** Adds to `limits` which joints run at their speed limit, and the bit `reason` where one has not arrived. */
-  note(rows: Rows, reason: number): void;
 }
 
 /** A command this far outside its range is a bug of ours, not rounding, radians. */
@@ -22,21 +22,24 @@ export function outcome(specs: readonly FollowerSpec[], motion: Motion, limits: 
   const least = Float64Array.from(joints, (j) => j.minRad - ROUNDING_RAD);
   const most = Float64Array.from(joints, (j) => j.maxRad + ROUNDING_RAD);
   const { x, v, speed, target, braking } = motion;
+  const isOut = (r: number): boolean =>
+    !((x[r] as number) >= (least[r] as number) && (x[r] as number) <= (most[r] as number));
   return {
-    check({ from, to }, { name, joints: own }) {
-      for (let r = from; r < to; r++) {
-        const at = x[r] as number;
-        const inside = at >= (least[r] as number) && at <= (most[r] as number);
-        if (!inside) throw new RangeError(`${name}: joint ${own[r - from]?.name} left its range`);
-      }
-    },
-    note({ from, to }, reason) {
+    note(rows, spec, reason) {
       const { speed: running } = LIMITS;
-      for (let r = from; r < to; r++) {
+      for (let r = rows.from; r < rows.to; r++) {
+        if (isOut(r)) throw bug(spec, r - rows.from);
         if (reason !== 0 && x[r] !== target[r]) limits[r] = (limits[r] as number) | reason;
         const atLimit = v[r] !== 0 && Math.abs(v[r] as number) >= AT_LIMIT * (speed[r] as number);
         if (atLimit && braking[r] === 0) limits[r] = (limits[r] as number) | running;
       }
     },
+    check(rows, spec) {
+      for (let r = rows.from; r < rows.to; r++) if (isOut(r)) throw bug(spec, r - rows.from);
+    },
   };
+}
+
+function bug({ name, joints }: FollowerSpec, j: number): RangeError {
+  return new RangeError(`${name}: joint ${joints[j]?.name} left its range`);
 }
