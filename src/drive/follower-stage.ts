@@ -94,7 +94,7 @@ export function followerStage(
   /** What is no number moves nothing. */
   const takeAim = ({ tUs, anglesRad, speedsRadS }: TargetEvent): void => {
     for (let j = 0; j < spec.joints.length; j++) {
-      if (Number.isNaN(anglesRad[j]) || !Number.isFinite(speedsRadS[j])) continue;
+      if (!Number.isFinite(anglesRad[j]) || !Number.isFinite(speedsRadS[j])) continue;
       aim.anglesRad[j] = anglesRad[j] as number;
       aim.speedsRadS[j] = speedsRadS[j] as number;
     }

@@ -63,6 +63,8 @@ export function leaderStage(plan: Plan, common: Shared): LeaderStage {
 
   const posed = new Uint8Array(health.length);
   const takenRad = new Float64Array(health.length);
+  /** What the hand says of every joint, whoever leads. */
+  const handRad = new Float64Array(health.length).fill(Number.NaN);
   const heard = { handUs: Number.NEGATIVE_INFINITY, takeUs: Number.NEGATIVE_INFINITY };
 
   const readButtons = (tUs: number): void => {
@@ -83,14 +85,16 @@ export function leaderStage(plan: Plan, common: Shared): LeaderStage {
     }
   };
 
+  const impose = (j: number, poseRad: Float64Array): void => {
+    const angle = poseRad[j] as number;
+    const known = Number.isFinite(angle);
+    if (known) kernel.poseRad[j] = angle;
+    health[j] = known ? 0 : SILENT;
+  };
+
   /** A pose is sound as far as it goes; a joint it has no angle for is not heard. */
   const adopt = (poseRad: Float64Array): void => {
-    for (let j = 0; j < health.length; j++) {
-      const angle = poseRad[j] as number;
-      const known = Number.isFinite(angle);
-      if (known) kernel.poseRad[j] = angle;
-      health[j] = known ? 0 : SILENT;
-    }
+    for (let j = 0; j < health.length; j++) impose(j, poseRad);
   };
 
   const takePose = ({ tUs, poseRad }: PoseEvent): void => {
@@ -100,15 +104,18 @@ export function leaderStage(plan: Plan, common: Shared): LeaderStage {
       heard.takeUs = tUs;
     } else {
       adopt(poseRad);
+      handRad.set(kernel.poseRad);
       heard.handUs = tUs;
     }
   };
 
-  /** Joints that a take leads keep its angles, whatever the hand does meanwhile. */
+  /** Joints that a take leads keep its angles, whatever the hand does meanwhile; one it has no angle for is not heard. */
   const imposeTaken = (): void => {
     for (let j = 0; j < health.length; j++) {
-      if (posed[j] === 1) kernel.poseRad[j] = takenRad[j] as number;
-      if (posed[j] === 1 || self.byTargets) health[j] = 0;
+      if (posed[j] === 1) impose(j, takenRad);
+      else if (self.byTargets) health[j] = 0;
+      // Under the take's commands it was called sound, but the hand has not said it yet.
+      else if (Number.isNaN(kernel.poseRad[j] as number)) health[j] = SILENT;
     }
   };
 
@@ -116,6 +123,8 @@ export function leaderStage(plan: Plan, common: Shared): LeaderStage {
     const isAll = self.byTargets || !posed.includes(0);
     const isNone = !self.byTargets && !posed.includes(1);
     self.lastUs = isNone ? heard.handUs : isAll ? heard.takeUs : Math.min(heard.handUs, heard.takeUs);
+    // A pedal that is not heard is not held, whoever leads.
+    if (hasEnable && (common.nowUs[0] as number) - heard.handUs > plan.leader.timeoutUs) self.enabled = false;
   };
 
   const noteHealth = (): void => {
@@ -153,7 +162,9 @@ export function leaderStage(plan: Plan, common: Shared): LeaderStage {
         virtual.advance(kernel.poseRad, common.nowUs);
       }
       if (event.kind === 'reading') {
+        kernel.poseRad.set(handRad);
         kernel.take(event.tUs, event.counts);
+        handRad.set(kernel.poseRad);
         imposeTaken();
         heard.handUs = event.tUs;
         readButtons(event.tUs);
@@ -168,6 +179,7 @@ export function leaderStage(plan: Plan, common: Shared): LeaderStage {
         self.byTargets = event.targets;
         self.leadVersion++;
         takenRad.set(kernel.poseRad);
+        kernel.poseRad.set(handRad);
         imposeTaken();
         noteHealth();
       } else if (event.kind === 'key' && event.key === 'pace') {
@@ -183,7 +195,8 @@ export function leaderStage(plan: Plan, common: Shared): LeaderStage {
     },
     dueUs() {
       // One microsecond past the timeout is the first integer instant at which the reading is too old.
-      return self.stale ? Number.POSITIVE_INFINITY : self.lastUs + plan.leader.timeoutUs + 1;
+      const sinceUs = hasEnable && self.enabled ? Math.min(self.lastUs, heard.handUs) : self.lastUs;
+      return self.stale ? Number.POSITIVE_INFINITY : sinceUs + plan.leader.timeoutUs + 1;
     },
     giveUp() {
       self.lastUs = Number.NEGATIVE_INFINITY;
