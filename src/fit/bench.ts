@@ -84,6 +84,8 @@ export function* numberOrNothing(asked: Prompt): Step<number | null> {
 
 /** Half a second at the usual hundred readings a second. */
 const HOLD_READINGS = 50;
+/** Nearer to an end of the converter's range, a reading is no measure. */
+const RAIL_COUNTS = 1;
 
 /** Takes readings of one input, as they come. Lines meanwhile are not heard. */
 export function* readings(shown: Prompt, input: number, n: number): Step<readonly number[]> {
@@ -99,7 +101,11 @@ export function* readings(shown: Prompt, input: number, n: number): Step<readonl
 /** One hold of a leader joint, judged. */
 export function* hold(bench: Bench, joint: number): Step<Hold> {
   const counts = yield* readings(prompt(['Hold still ...']), bench.inputOf[joint] as number, HOLD_READINGS);
-  return judgeHold(counts, restNoise(bench, joint));
+  const found = judgeHold(counts, restNoise(bench, joint));
+  const [lowest, highest] = bench.profiles.leader.counts;
+  // At a rail nothing is measured: the pot is beyond its end, or the wiper has lost its track.
+  const isRail = found.still && (found.mean <= lowest + RAIL_COUNTS || found.mean >= highest - RAIL_COUNTS);
+  return isRail ? { still: false, why: 'rail', n: found.n } : found;
 }
 
 export function holdRefused(found: Exclude<Hold, { still: true }>): string {

@@ -1,6 +1,7 @@
 import { curveThrough } from './curves.ts';
 import { fisherTail, studentT, studentTails } from './distributions.ts';
 import { type Polynomial, polynomials } from './least-squares.ts';
+import { standingApart } from './theil-sen.ts';
 import { type Suspect, suspect, wrongPoint } from './wrong-point.ts';
 
 /** A joint's map from measured pairs, with its error: x is known well (counts, microseconds), y with a reading error. */
@@ -46,7 +47,7 @@ export type NoMap =
   | { readonly why: 'coincident' }
   | { readonly why: 'flat' }
   | { readonly why: 'turns back'; readonly at: readonly [number, number] }
-  /** With one point left out, another still stands out as far: nobody can say which are right. */
+  /** Two points or more stand out: nobody can say which are right. */
   | { readonly why: 'wrong points'; readonly at: readonly [number, number] };
 
 const TAILS = 0.05;
@@ -156,6 +157,8 @@ function chosen(
       return { why: 'wrong points', at: [x[wrong.index] as number, rest[second.index] as number] };
     return turning(again, rest) ?? { fit: again, wrong: placed(wrong, again.used, x, y) };
   }
+  const [a, b] = standingApart(x, y, noise);
+  if (a !== undefined && b !== undefined) return { why: 'wrong points', at: [x[a] as number, x[b] as number] };
   return turning(fit, x) ?? { fit, wrong: null };
 }
 

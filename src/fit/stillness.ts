@@ -1,7 +1,7 @@
 /** Readings of one joint that is held still, or why they are not that. */
 export type Hold =
   | { readonly still: true; readonly mean: number; readonly noise: number; readonly n: number }
-  | { readonly still: false; readonly why: 'few' | 'moving' | 'noisy'; readonly n: number };
+  | { readonly still: false; readonly why: 'few' | 'moving' | 'noisy' | 'rail'; readonly n: number };
 
 /** A hold needs this many readings: a quarter of a second at the usual hundred a second. */
 const READINGS_MIN = 12;

@@ -88,6 +88,8 @@ export function holdWords(hold: Exclude<Hold, { still: true }>): string {
       return 'it was still moving; rest it against something and hold again';
     case 'noisy':
       return 'it was not still enough; support the joint, or look to its wiring, and hold again';
+    case 'rail':
+      return 'it reads at the end of the converter’s range; the pot has lost its track there, or is turned too far';
   }
 }
 

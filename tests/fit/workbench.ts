@@ -177,6 +177,8 @@ export function replies(person: Person, { stopsDeg, sweepS }: PersonOptions): (a
         /\w+ (\w+) goes to/.exec(before.split('\n').findLast((l) => l.includes('goes to')) ?? '')?.[1] ?? '';
       const horn = hornOf(joint);
       const { source, deg } = person.alike(joint, horn.deg(horn.pulseUs()));
+      // Further than the leader turns: nobody can set it so.
+      if (deg < stopsDeg[0] || deg > stopsDeg[1]) return at('next');
       source.go(deg + error(), 0.3);
       return at('', source.doneUs + 1e5);
     }

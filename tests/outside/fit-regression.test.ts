@@ -3,6 +3,7 @@ import { fisherTail, studentT } from '../../src/fit/distributions.ts';
 import { type Polynomial, polynomials } from '../../src/fit/least-squares.ts';
 import { fitMap } from '../../src/fit/map-fit.ts';
 import { effectiveBits, noiseOf, QUANTISATION_COUNTS } from '../../src/fit/noise.ts';
+import { theilSen } from '../../src/fit/theil-sen.ts';
 import { suspect, wrongPoint } from '../../src/fit/wrong-point.ts';
 import { random } from '../../src/sim/random.ts';
 
@@ -119,6 +120,15 @@ describe('A wrong point', () => {
     expect(found?.index).toBe(at);
     expect(found?.away).toBeCloseTo(away, 9);
     expect(found?.sigmas).toBeCloseTo(Math.abs(away) / error, 9);
+  });
+});
+
+describe('The robust line', () => {
+  it('is the Theil-Sen line of NIST’s Norris data that SciPy and ml-regression-theil-sen give', () => {
+    // scipy.stats.theilslopes(method='joint') 1.17 and ml-regression-theil-sen: slope and median residual.
+    const { slope, offset } = theilSen(NORRIS.x, NORRIS.y);
+    expect(slope).toBeCloseTo(1.0021968365553604, 12);
+    expect(offset).toBeCloseTo(-0.3010984182776848, 12);
   });
 });
 
