@@ -2,7 +2,7 @@ import type { RigProfiles } from '../rig/compile.ts';
 import type { LeaderJoint } from '../rig/schema/leader.ts';
 import { servosOf } from '../rig/servo-list.ts';
 import { attemptOf, byJoint, type Capture, type CaptureStep, emptyCapture, type JointCaptures } from './captures.ts';
-import { noiseOf } from './noise.ts';
+import { assumedNoise, noiseOf } from './noise.ts';
 import type { Prompt, SessionEffect, SessionEvent } from './prompt.ts';
 import { type Hold, judgeHold } from './stillness.ts';
 import { holdWords } from './words.ts';
@@ -112,11 +112,12 @@ export function holdRefused(found: Exclude<Hold, { still: true }>): string {
   return `Not taken: ${holdWords(found)}.`;
 }
 
-/** The joint's noise at rest, in counts; 0 before it was measured. */
+/** The joint's noise at rest, in counts; a usual pot's before it was measured. */
 function restNoise(bench: Bench, joint: number): number {
   const { leader } = bench.profiles;
   const still = capturesOf(bench, leader.leader, (leader.joints[joint] as LeaderJoint).name).of['leader-still'];
-  return still.length < 2 ? 0 : noiseOf(still.map(({ counts }) => counts)).counts;
+  const [lowest, highest] = leader.counts;
+  return still.length < 2 ? assumedNoise(highest - lowest) : noiseOf(still.map(({ counts }) => counts)).counts;
 }
 
 export function capturesOf(bench: Bench, arm: string, joint: string): JointCaptures {

@@ -2,7 +2,7 @@ import type { LeaderJoint, LeaderProfile } from '../rig/schema/leader.ts';
 import type { Capture, JointCaptures } from './captures.ts';
 import { leaderCurve } from './curves.ts';
 import { fitMap } from './map-fit.ts';
-import { noiseOf, QUANTISATION_COUNTS } from './noise.ts';
+import { assumedNoise, noiseOf, QUANTISATION_COUNTS } from './noise.ts';
 import { pointsReport } from './points-report.ts';
 import { type FitProblem, noMapProblem, problem } from './problems.ts';
 import type { JointReport, PointsReport, StillReport, SweepReport } from './report.ts';
@@ -50,7 +50,10 @@ export function fitLeaderJoint(profile: LeaderProfile, index: number, captures: 
   if (sweep?.wraps === true)
     complain(problem('FIT_WRAPS', arm, joint.name, 'the pot runs over the end of its track inside the travel'));
 
-  const { points, rejected } = holds(captures.of['leader-point'], rest?.counts ?? sweep?.noiseCounts ?? 0);
+  const { points, rejected } = holds(
+    captures.of['leader-point'],
+    rest?.counts ?? sweep?.noiseCounts ?? assumedNoise(width),
+  );
   for (const [deg, why] of rejected)
     complain(problem('FIT_NEVER_STILL', arm, joint.name, `the hold at ${deg} deg: ${why}`));
   const x = points.map(({ counts }) => counts);

@@ -15,7 +15,7 @@ const DRIFT_SIGMAS = 4;
 /**
  * Judges readings of one hold.
  * @param counts in order of time
- * @param noise standard deviation of the joint at rest, in counts; 0: not measured
+ * @param noise standard deviation of the joint at rest, in counts
  */
 export function judgeHold(counts: ArrayLike<number>, noise: number): Hold {
   const n = counts.length;

@@ -1,4 +1,4 @@
-import { existsSync, readFileSync } from 'node:fs';
+import { readFileSync } from 'node:fs';
 import { afterAll, describe, expect, it } from 'vitest';
 import { virtualClock } from '../../src/clock/virtual.ts';
 import { capturesBeside } from '../../src/cli/fit.ts';
@@ -72,6 +72,22 @@ function load() {
   return loaded;
 }
 
+/** Types answers by what is asked; what no answer stands for ends the test. */
+const typing =
+  (answers: readonly (readonly [RegExp, string | (() => string | null)])[]) =>
+  (ask: string): { text: string; untilUs: number } | null => {
+    const found = answers.find(([asked]) => asked.test(ask));
+    if (found === undefined) throw new Error(`nobody knows what to answer: ${ask}`);
+    const text = typeof found[1] === 'string' ? found[1] : found[1]();
+    return text === null ? null : { text, untilUs: 0 };
+  };
+
+/** Answers of a list, one after another. */
+const inTurn = (...texts: readonly (string | null)[]): (() => string | null) => {
+  const left = [...texts];
+  return () => left.shift() ?? null;
+};
+
 describe('A session', () => {
   it('takes a person through every step, and what it keeps gives back the planted truth', async () => {
     const { clock, leader, horns, seat } = bench();
@@ -109,5 +125,122 @@ describe('A session', () => {
     expect(report.matches[0]?.gain.is).toBeCloseTo(0.7, 1);
     expect(report.matches[0]?.offset_deg.is).toBeCloseTo(5, 0);
     expect(seat.printed()).toContain('elbow turns against its points');
+  });
+
+  it('keeps captures as they are made, and goes on from them after a crash', async () => {
+    const at = files.path('crash.csv');
+    const first = bench();
+    first.leader[0]?.go(30, 0);
+    const crashed = measure(load(), [], keeper(at), first.seat.table);
+    // The crash: nobody answers any more, and nothing is closed.
+    const typed = typing([
+      [/a number: that step/, '10'],
+      [/^Angle of base/, inTurn('30', '31', null)],
+    ]);
+    await expect(play(first.clock, first.seat, crashed, typed, 5)).rejects.toThrow('has not ended');
+    const kept = readCaptures(readFileSync(at, 'utf8'));
+    if ('mistakes' in kept) throw new Error(JSON.stringify(kept.mistakes));
+    expect(kept.captures.map(({ knownDeg }) => knownDeg)).toEqual([30, 31]);
+
+    const second = bench();
+    second.leader[0]?.go(-40, 0);
+    const again = measure(load(), kept.captures, keeper(at), second.seat.table);
+    const more = typing([
+      [/a number: that step/, inTurn('10', 'quit')],
+      [/^Angle of base/, inTurn('-40', '')],
+    ]);
+    expect(await play(second.clock, second.seat, again, more, 20)).toBe('quit');
+    expect(second.seat.printed()).toContain('2 captures of an earlier session are taken up.');
+    expect(second.seat.printed()).toMatch(/10 {2}points of stick base +done/);
+    const all = readCaptures(readFileSync(at, 'utf8'));
+    if ('mistakes' in all) throw new Error(JSON.stringify(all.mistakes));
+    // Done anew: a new attempt, which replaces the former one.
+    expect(all.captures.map(({ knownDeg, attempt }) => [knownDeg, attempt])).toEqual([
+      [30, 1],
+      [31, 1],
+      [-40, 2],
+    ]);
+  });
+
+  it('refuses a hold that moves, with the reason, and takes it when it is still', async () => {
+    const { clock, leader, seat } = bench();
+    const at = files.path('moving.csv');
+    const ended = measure(load(), [], keeper(at), seat.table);
+    const typed = typing([
+      [/a number: that step/, inTurn('10', 'quit')],
+      [/^Angle of base/, inTurn('20', '20', '20', '20', '')],
+    ]);
+    leader[0]?.go(20, 1.2);
+    expect(await play(clock, seat, ended, typed, 20)).toBe('quit');
+    expect(seat.printed()).toContain('Not taken: it was still moving');
+    expect(seat.printed()).toMatch(/Point 1: 22[56]\d\.\d counts at 20 deg/);
+  });
+
+  it('moves no servo before the arm is said to be safe', async () => {
+    const { clock, seat, pulses } = bench();
+    const ended = measure(load(), [], keeper(files.path('safe.csv')), seat.table);
+    const typed = typing([
+      [/a number: that step/, inTurn('1', 'quit')],
+      [/^Type yes/, inTurn('no', '', 'list')],
+    ]);
+    expect(await play(clock, seat, ended, typed, 20)).toBe('quit');
+    expect(pulses().every(Number.isNaN)).toBe(true);
+    expect(seat.printed()).toContain('Take the horns off');
+  });
+
+  it('tells when a port vanishes halfway, leaves the step, and loses nothing', async () => {
+    const { clock, seat, arm } = bench();
+    const ended = measure(load(), [], keeper(files.path('vanish.csv')), seat.table);
+    let angles = 0;
+    const typed = typing([
+      [/a number: that step/, inTurn('12', 'quit')],
+      [/^Type yes/, 'yes'],
+      [
+        /^Angle at/,
+        () => {
+          if (++angles === 2) arm.far.unplug();
+          return angles > 2 ? null : String(angles);
+        },
+      ],
+    ]);
+    expect(await play(clock, seat, ended, typed, 60)).toBe('quit');
+    expect(seat.printed()).toContain('wren has lost its pulses. The step was left');
+    expect(seat.printed()).toMatch(/wren: tcp wren:1 was closed/);
+    const read = readCaptures(readFileSync(files.path('vanish.csv'), 'utf8'));
+    expect('captures' in read && read.captures.length).toBeGreaterThan(0);
+  });
+
+  it('ends as interrupted when its terminal goes, and moves nothing', async () => {
+    const { clock, seat, pulses } = bench();
+    const ended = measure(load(), [], keeper(files.path('gone.csv')), seat.table);
+    let standing: number[] = [];
+    const typed = typing([
+      [/a number: that step/, '12'],
+      [/^Type yes/, 'yes'],
+      [
+        /^Angle at (\d+)/,
+        () => {
+          if (pulses()[0] === 1500) return '0';
+          standing = pulses();
+          seat.input.end();
+          return null;
+        },
+      ],
+    ]);
+    expect(await play(clock, seat, ended, typed, 60)).toBe('interrupted');
+    expect(standing[0]).toBe(1600);
+    expect(pulses()).toEqual(standing);
+  });
+
+  it('brings a servo home that was away when its operator leaves', async () => {
+    const { clock, seat, pulses } = bench();
+    const ended = measure(load(), [], keeper(files.path('home.csv')), seat.table);
+    const typed = typing([
+      [/a number: that step/, '12'],
+      [/^Type yes/, 'yes'],
+      [/^Angle at/, () => (pulses()[0] === 1500 ? '0' : 'quit')],
+    ]);
+    expect(await play(clock, seat, ended, typed, 60)).toBe('quit');
+    expect(pulses()).toEqual([1500, 1500]);
   });
 });
