@@ -17,7 +17,7 @@ export function leversM(spec: ArmSpec): Float64Array {
   const n = spec.links.length;
   const levers = new Float64Array(n * (n + 1));
   spec.links.forEach((link, i) => {
-    let sum = besideM(link);
+    let sum = besideM(link.axis, link.toM);
     for (let k = i + 1; k <= n; k++) {
       levers[i * (n + 1) + k] = sum;
       if (k < n) sum += length((spec.links[k] as LinkSpec).toM);
@@ -26,8 +26,8 @@ export function leversM(spec: ArmSpec): Float64Array {
   return levers;
 }
 
-/** How far a link's end is beside its axis. */
-function besideM({ axis: [ax, ay, az], toM: [x, y, z] }: LinkSpec): number {
+/** How far a point is beside an axis through the origin. */
+export function besideM([ax, ay, az]: Vec3, [x, y, z]: Vec3): number {
   return Math.hypot(ay * z - az * y, az * x - ax * z, ax * y - ay * x);
 }
 

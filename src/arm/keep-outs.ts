@@ -44,11 +44,12 @@ export function keepOuts(places: readonly KeepOut[]): KeepOuts {
     depth[p] = deepest > TOUCHING_M ? deepest : 0;
   };
 
+  /** What stands on a floor is not near it: the first axis does not count. */
   const distance = (at: Float64Array, place: KeepOut): number => {
     let nearest = Number.POSITIVE_INFINITY;
     for (let i = 0; i < links; i++) {
       if (place.kind === 'box') distanceTo(at, i, place, one);
-      else one[0] = Math.min(at[3 * i + 2] as number, at[3 * i + 5] as number) - place.zM;
+      else one[0] = (at[3 * i + 5] as number) - place.zM;
       nearest = Math.min(nearest, one[0] as number);
     }
     return nearest;

@@ -1,5 +1,6 @@
 import { bodies, GRAVITY_MS2 } from './bodies.ts';
 import { chain as makeChain, rowTimes } from './chain.ts';
+import { loadBounds } from './load-bounds.ts';
 import { passive } from './passive.ts';
 import type { ArmSpec, LinkSpec } from './spec.ts';
 
@@ -21,6 +22,9 @@ export interface Loads {
   shares(anglesRad: Float64Array, holding: boolean, out: Float64Array): void;
   /** out[j] = the greater of both shares: an arm must be able to go on, and to stop anywhere. */
   worst(anglesRad: Float64Array, out: Float64Array): void;
+  /** How quickly the shares of `worst` can change: see `LoadBounds`, as shares instead of newton metres. */
+  readonly slope: Float64Array;
+  readonly bend: Float64Array;
 }
 
 /** @param joints how many the profile has */
@@ -37,6 +41,15 @@ export function loads(spec: ArmSpec, joints: number): Loads {
   const holdNm = limitOf(({ holdUse }) => holdUse);
   const moveNm = limitOf(({ use }) => use);
   const dragNm = Float64Array.from(spec.links, (link) => link.dragNm);
+  const bounds = loadBounds(spec, joints);
+  const slope = new Float64Array(joints).fill(Number.NaN);
+  const bend = new Float64Array(joints).fill(Number.NaN);
+  for (let i = 0; i < links; i++) {
+    const j = joint[i] as number;
+    const least = Math.min(holdNm[i] as number, moveNm[i] as number);
+    slope[j] = (bounds.slopeNm[j] as number) / least;
+    bend[j] = (bounds.bendNm[j] as number) / least;
+  }
 
   const hold = (anglesRad: Float64Array): void => {
     chain.pose(anglesRad);
@@ -67,6 +80,8 @@ export function loads(spec: ArmSpec, joints: number): Loads {
   };
 
   return {
+    slope,
+    bend,
     torqueNm(anglesRad, out) {
       hold(anglesRad);
       out.fill(0);

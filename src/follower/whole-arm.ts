@@ -31,8 +31,8 @@ const REASON: Readonly<Record<number, number>> = {
 
 export function wholeArm(spec: WholeArmSpec, motion: Governor): WholeArm {
   const n = motion.x.length;
-  const worst = spec.limitLoad ? loads(spec.arm, n).worst : null;
-  const judge = certificate(spec.arm, n, motion.accel, spec, worst).judge;
+  const load = spec.limitLoad ? loads(spec.arm, n) : null;
+  const judge = certificate(spec.arm, n, motion.accel, spec, load).judge;
   const give = spec.limitAccel ? effort(spec.arm, n) : null;
   const gain = new Float64Array(n);
   const cap = new Float64Array(1);
