@@ -70,18 +70,17 @@ export function authority(
         return;
       case 'joining':
         arm.settleHere();
-        share.begin(now);
+        share.begin();
         is.meeting = spec.joinMeet === 'move';
         return;
       case 'following':
-        share.meet(now);
-        common.opened[index] = share.opened[0] as number;
+        share.meet();
         return;
       case 'holding':
         if (event === 'rested' || event === 'jogged') is.blocks |= BLOCKS.held;
         return;
       case 'parking':
-        share.begin(now);
+        share.begin();
         letClutchIn();
         return;
       case 'limp':

@@ -65,9 +65,8 @@ export function followerStage(
 ): FollowerStage {
   const { spec } = arm;
   const is = standing();
-  const dtS = new Float64Array(1);
   const pending = outbox();
-  const share = shares(spec.joinShare);
+  const share = shares(spec.joinShare, index, common);
   const jogging = jog(spec.servos.length);
   const rule = authority(is, index, arm, lead, common, { share, pending, jogging, unasked: start.unasked });
   const aim = {
@@ -75,14 +74,14 @@ export function followerStage(
     anglesRad: arm.governor.x.slice(),
     speedsRadS: new Float64Array(spec.joints.length),
   };
-  const steer = steering(is, index, arm, lead, common, {
+  const steer = steering(is, arm, lead, common, {
     share,
     jogging,
     aim,
     raise: rule.raise,
     cutPower: rule.cutPower,
   });
-  const now = common.nowUs;
+  const { nowUs: now, dtS } = common;
 
   const emit = (kind: CommandKind): true => {
     self.kind = kind;
@@ -208,7 +207,7 @@ export function followerStage(
     is.meeting = spec.joinMeet === 'move';
     is.lastUs = (now[0] as number) - spec.periodUs;
     arm.frame.pulsing = spec.servos.length;
-    share.begin(now);
+    share.begin();
   }
   siblings.push(self);
   return self;

@@ -10,6 +10,12 @@ export interface Shared {
   readonly following: Uint8Array;
   /** Share of its speed limits that each follower may use while it follows, pace apart. */
   readonly opened: Float64Array;
+  /**
+   * Of the step being made, one for all, because they are made one after another: its time in seconds, and its share of
+   * the speed limits, pace included.
+   */
+  readonly dtS: Float64Array;
+  readonly share: Float64Array;
   /** The board each follower hangs on, in rig order. */
   readonly boardOf: readonly number[];
   /** 1 for each board that has been given a command in the event being handled. */
@@ -28,6 +34,8 @@ export function shared(startUs: number, boardOf: readonly number[], pace: number
     inrushFreeUs: new Float64Array([Number.NEGATIVE_INFINITY]),
     following: new Uint8Array(boardOf.length),
     opened: new Float64Array(boardOf.length),
+    dtS: new Float64Array(1),
+    share: new Float64Array(1),
     boardOf,
     taken: new Uint8Array(boards),
     busy: new Uint8Array(boards),

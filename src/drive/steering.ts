@@ -22,7 +22,6 @@ const WAIT_RAD = (3 * Math.PI) / 180;
 
 export function steering(
   is: Standing,
-  index: number,
   arm: Follower,
   lead: LeaderStage,
   common: Shared,
@@ -39,7 +38,6 @@ export function steering(
   const standing = new Float64Array(aim.speedsRadS.length);
   const ahead = new Float64Array(aim.speedsRadS.length);
   const now = common.nowUs;
-  const shareNow = new Float64Array(1);
 
   /** On its way from the last target the take goes on as fast as it then did, for as long as the next one may take. */
   const pursue = (): void => {
@@ -67,11 +65,11 @@ export function steering(
       arm.brake(dtS);
       return;
     }
-    share.joining(now, common.pace, shareNow);
-    arm.limitSpeed(shareNow, true);
+    share.joining();
+    arm.limitSpeed(common.share, true);
     arm.step(dtS);
     // A leader that never stands is met once the arm, with patience gone, is as near as its limits let it follow.
-    if (arm.near(MET_RAD, share.impatient(now))) raise('met');
+    if (arm.near(MET_RAD, share.impatient())) raise('met');
   };
 
   const settle = (): void => {
@@ -94,9 +92,8 @@ export function steering(
       switch (is.state) {
         case 'following':
           wish();
-          share.following(now, common.pace, shareNow);
-          common.opened[index] = share.opened[0] as number;
-          arm.limitSpeed(shareNow, false);
+          share.following();
+          arm.limitSpeed(common.share, false);
           arm.step(dtS);
           break;
         case 'joining':
@@ -104,8 +101,8 @@ export function steering(
           break;
         case 'parking':
           arm.wantRest();
-          share.parking(common.pace, shareNow);
-          arm.limitSpeed(shareNow, true);
+          share.parking();
+          arm.limitSpeed(common.share, true);
           arm.step(dtS);
           break;
         case 'jogging': {
