@@ -3,6 +3,7 @@ import { fileURLToPath } from 'node:url';
 import { beforeAll, describe, expect, it } from 'vitest';
 import { straight, within } from './by-hand.ts';
 import { median } from './solo.ts';
+import { COMMAND_US, US_PER_DEG } from './timing.ts';
 import { effort, trainOf, widthsOf } from './trains.ts';
 import { troupe } from './troupe.ts';
 import type { Troupe } from './troupe.ts';
@@ -52,7 +53,6 @@ followers:
         accel_deg_s2: 400
         servo: { channel: 11, points: [[-90, 2440], [90, 560]] }
 `;
-const US_PER_DEG = 1880 / 180;
 
 const pot = (counts: number): number =>
   straight(
@@ -124,7 +124,7 @@ describe('one board with both ends', () => {
   });
 
   it('keeps the limits of every servo while its own pots stream', () => {
-    const limits = { speed: 90 * US_PER_DEG, accel: 400 * US_PER_DEG, commandUs: 22_000 };
+    const limits = { speed: 90 * US_PER_DEG, accel: 400 * US_PER_DEG, commandUs: COMMAND_US };
     for (const pin of [9, 10, 11]) {
       const { speed, accel, speedShown } = effort(trainOf(board, pin, goUs), 10, limits);
       expect(speed, `pin ${pin}`).toBeLessThanOrEqual(1);
@@ -167,7 +167,7 @@ describe('the starters for firmata', () => {
       const train = trainOf(board, pin, metUs);
       expect(Math.abs((train[0]?.widthUs ?? Number.NaN) - 1500), `pin ${pin}`).toBeLessThanOrEqual(10);
       expect(Math.abs((train.at(-1)?.widthUs ?? Number.NaN) - us), `pin ${pin}`).toBeLessThanOrEqual(10);
-      const slow = { speed: 0.25 * 60 * US_PER_DEG, accel: 240 * US_PER_DEG, commandUs: 22_000 };
+      const slow = { speed: 0.25 * 60 * US_PER_DEG, accel: 240 * US_PER_DEG, commandUs: COMMAND_US };
       expect(effort(train, 15, slow).speed, `pin ${pin}`).toBeLessThanOrEqual(1);
     }
   });

@@ -1,6 +1,8 @@
 /** What an operator asks of a running arm: hold, clutch, pace, the enable pedal, parking. Judged from the pins. */
 import { beforeAll, describe, expect, it } from 'vitest';
-import { calm, effort, pulseAt, settledUs, trainOf, widthsOf } from './trains.ts';
+import { expectBrakeAndHold, expectInsideLimits, expectStill, LIMITS, SPEED_US_S } from './braking.ts';
+import { NEAR_US, READING_US, US_PER_DEG } from './timing.ts';
+import { effort, pulseAt, trainOf, widthsOf } from './trains.ts';
 import { troupe, voltsOf } from './troupe.ts';
 import type { Troupe } from './troupe.ts';
 import type { UnoBoard } from './uno.ts';
@@ -34,18 +36,6 @@ const PIN = 9;
 const PEDAL = 5;
 const PRESSED_VOLTS = 0.5;
 const RELEASED_VOLTS = 4;
-const US_PER_DEG = 1880 / 180;
-const SPEED_US_S = 60 * US_PER_DEG;
-const LIMITS = { speed: SPEED_US_S, accel: 240 * US_PER_DEG, commandUs: 22_000 };
-/** v^2 / 2A = 60^2 / 480 = 7.5 degrees, in 60 / 240 = 0.25 s. */
-const BRAKING_US = 7.5 * US_PER_DEG;
-const BRAKING_TIME_US = 250_000;
-const READING_US = 10_000 + 2_000;
-/** Until a command is on the pin: its period, the line, the frame. */
-const LATEST_US = 20_000 + 3_000 + 20_000;
-const NEAR_US = 10;
-const STILL_US = 2;
-
 /** Counts of the leader at an angle: 0.3 degrees a count, zero in the middle. */
 const countsOf = (deg: number): number => Math.round(512 + deg / 0.3);
 
@@ -55,33 +45,6 @@ describe('an arm in the operator’s hands', () => {
   const now = (): number => all.clock.nowUs();
   const pulse = (): number => pulseAt(board, PIN, now()).widthUs;
   const follows = (): boolean => all.state('wren') === 'following';
-
-  const expectStill = (fromUs: number): void => {
-    const train = trainOf(board, PIN, fromUs);
-    expect(train.length).toBeGreaterThan(10);
-    for (const { widthUs } of train) expect(Math.abs(widthUs - (train[0]?.widthUs ?? 0))).toBeLessThanOrEqual(NEAR_US);
-  };
-
-  const expectInsideLimits = (fromUs: number): void => {
-    for (const frames of [5, 10]) {
-      const { speed, accel } = effort(trainOf(board, PIN, fromUs), frames, LIMITS);
-      expect(speed).toBeLessThanOrEqual(1);
-      expect(accel).toBeLessThanOrEqual(1);
-    }
-  };
-
-  /** From full speed it comes to a stand inside its limits, and stays there. */
-  const expectBrakeAndHold = (askedUs: number, latestUs: number): void => {
-    const before = pulseAt(board, PIN, askedUs).widthUs;
-    const train = trainOf(board, PIN, askedUs - 300_000);
-    const goneUs = Math.abs((train.at(-1)?.widthUs ?? Number.NaN) - before);
-    expect(goneUs).toBeGreaterThan(BRAKING_US - NEAR_US);
-    expect(goneUs).toBeLessThan(BRAKING_US + (SPEED_US_S * latestUs) / 1e6 + NEAR_US);
-    const stoodUs = settledUs(calm(train), STILL_US);
-    expect(stoodUs - askedUs).toBeLessThan(latestUs + BRAKING_TIME_US);
-    expectStill(stoodUs + 20_000);
-    expectInsideLimits(askedUs - 300_000);
-  };
 
   beforeAll(() => {
     all = troupe(RIG);
@@ -102,13 +65,13 @@ describe('an arm in the operator’s hands', () => {
     const heldUs = now();
     all.key('hold');
     all.wait(700_000);
-    expectBrakeAndHold(heldUs, LATEST_US);
+    expectBrakeAndHold(board, PIN, heldUs, [0, 0]);
     all.key('join');
     all.until('wren follows', 4_000_000, follows);
     all.wait(300_000);
     // 80 degrees are 738.67 counts; 739 read as 80.1 degrees: 1500 + 80.1 * 10.444 = 2336.6 us.
     expect(Math.abs(pulse() - 2337)).toBeLessThanOrEqual(NEAR_US);
-    expectInsideLimits(heldUs);
+    expectInsideLimits(trainOf(board, PIN, heldUs));
   });
 
   it('brakes and holds when the enable pedal is let go, and joins by itself when it is pressed again', () => {
@@ -118,11 +81,11 @@ describe('an arm in the operator’s hands', () => {
     const releasedUs = now();
     all.sway(PEDAL, () => RELEASED_VOLTS);
     all.wait(600_000);
-    expectBrakeAndHold(releasedUs, READING_US + LATEST_US);
+    expectBrakeAndHold(board, PIN, releasedUs, [0, READING_US]);
     expect(all.state('wren')).toBe('holding');
     all.sway(PEDAL, () => PRESSED_VOLTS);
     all.until('wren follows', 4_000_000, follows);
-    expectInsideLimits(releasedUs);
+    expectInsideLimits(trainOf(board, PIN, releasedUs));
   });
 
   it('stands while the clutch is out, and takes the hand from where both are, without a jump', () => {
@@ -134,17 +97,17 @@ describe('an arm in the operator’s hands', () => {
     all.wait(60_000);
     all.sway(0, (atUs) => voltsOf(512 + Math.min((atUs - outUs) / 4_000, 150)));
     all.wait(800_000);
-    expectStill(outUs);
+    expectStill(board, PIN, outUs);
     const inUs = now();
     all.key('clutch');
     all.wait(300_000);
-    expectStill(outUs);
+    expectStill(board, PIN, outUs);
     // The hand was moved by 150 counts, 45 degrees; it now goes back by 20, and so does the arm.
     all.turn(512 + 150 - 67);
     all.wait(900_000);
     // 67 counts are 20.1 degrees: 1500 - 20.1 * 10.444 = 1290.1 us.
     expect(Math.abs(pulse() - 1290)).toBeLessThanOrEqual(NEAR_US);
-    expectInsideLimits(inUs);
+    expectInsideLimits(trainOf(board, PIN, inUs));
   });
 
   it('goes a quarter as fast at pace 25 %', () => {
@@ -173,7 +136,7 @@ describe('an arm in the operator’s hands', () => {
     const sinceUs = now();
     all.sway(0, (atUs) => voltsOf(512 + 200 * Math.sin((atUs - sinceUs) / 2e5)));
     all.wait(500_000);
-    expectStill(restUs);
+    expectStill(board, PIN, restUs);
     // Rest is -20 degrees: 1500 - 208.9 = 1291.1 us.
     expect(Math.abs(pulse() - 1291)).toBeLessThanOrEqual(NEAR_US);
     all.key('join');

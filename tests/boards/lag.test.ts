@@ -4,6 +4,7 @@
  */
 import { beforeAll, describe, expect, it } from 'vitest';
 import { median } from './solo.ts';
+import { COMMAND_US, FRAME_US, KNOWN_US, READING_US, US_PER_DEG } from './timing.ts';
 import { pulseAt, trainOf } from './trains.ts';
 import { troupe } from './troupe.ts';
 import type { Troupe } from './troupe.ts';
@@ -44,7 +45,6 @@ followers:
 const JOINTS = ['plain', 'smoothed'] as const;
 type Joint = (typeof JOINTS)[number];
 const PINS: Readonly<Record<Joint, number>> = { plain: 9, smoothed: 10 };
-const US_PER_DEG = 1880 / 180;
 
 const STAGES = ['sampling', 'despike', 'smoothing', 'governor', 'frame'] as const;
 type Stage = (typeof STAGES)[number];
@@ -54,9 +54,9 @@ type Budget = Readonly<Record<Stage, number>> & { readonly total: number; readon
 /** Of each kind of step; 100 counts are a jump of 30 degrees, 5 are 1.5 degrees: a hand that begins to move. */
 const STEPS = { large: 100, small: 5 } as const;
 type Size = keyof typeof STEPS;
-const PHASES = 12;
-/** Goes through the phases of the sampling interval, 10 ms, in strides of 0.42 ms. */
-const BETWEEN_US = 640_420;
+const PHASES = 10;
+/** Goes through the phases of the sampling interval, 10 ms, in strides of half a millisecond. */
+const BETWEEN_US = 640_500;
 /**
  * An Uno's resonator is a ceramic one, good to half a percent (from memory). So readings meet every phase of the commands,
  * here in 10 ms / 0.2 % = 5 s, and commands every phase of the servos' frame, in 20 ms / 0.3 % = 6.7 s; at exactly 16 MHz
@@ -125,7 +125,7 @@ describe('the lag from a pot to a pin', () => {
   /** End of the first pulse from which on none is what the pulses were before. */
   const changedUs = (pin: number, startUs: number): number => {
     const before = median(trainOf(board, pin, startUs - 200_000, startUs).map(({ widthUs }) => widthUs));
-    const train = trainOf(board, pin, startUs - 20_000);
+    const train = trainOf(board, pin, startUs - FRAME_US);
     const last = train.findLastIndex(({ widthUs }) => Math.abs(widthUs - before) <= SHOWN_US);
     const first = train[last + 1];
     return first === undefined ? Number.NaN : first.startUs + first.widthUs;
@@ -199,8 +199,7 @@ describe('the lag from a pot to a pin', () => {
   });
 
   it('is never more than its parts can add up to', () => {
-    // Two sampling intervals and the line; one command period and a tenth; the line, one frame, and the pulse itself.
-    const mostUs = 2 * 10_000 + 2_000 + 22_000 + 3_000 + 20_000 + 2_440;
+    const mostUs = 2 * READING_US + COMMAND_US + KNOWN_US;
     for (const { total } of [...budgets.large.plain, ...budgets.small.plain]) expect(total).toBeLessThan(mostUs);
   });
 

@@ -1,6 +1,8 @@
 /** A board that restarts in mid-run (a reset button, a dip of its supply), and the other arm meanwhile: judged from the pins. */
 import { beforeAll, describe, expect, it } from 'vitest';
-import { effort, PULSE_ERROR_US, trainOf, unsteadiness } from './trains.ts';
+import { expectInsideLimits, SPEED_US_S } from './braking.ts';
+import { COMMAND_US, FRAME_US, NEAR_US, US_PER_DEG } from './timing.ts';
+import { PULSE_ERROR_US, trainOf, unsteadiness } from './trains.ts';
 import { troupe } from './troupe.ts';
 import type { Troupe } from './troupe.ts';
 import type { UnoBoard } from './uno.ts';
@@ -43,12 +45,6 @@ joints:
 };
 const SHOULDER = 3;
 const ELBOW = 5;
-const US_PER_DEG = 1880 / 180;
-const SPEED_US_S = 60 * US_PER_DEG;
-const LIMITS = { speed: SPEED_US_S, accel: 240 * US_PER_DEG, commandUs: 22_000 };
-const FRAME_US = 20_000;
-const PER_FRAME_US = (SPEED_US_S * FRAME_US) / 1e6;
-const NEAR_US = 10;
 /** The firmware says nothing for 1.88 s after a reset (it blinks its version first), then its name, in 46 bytes. */
 const SILENT_US = 1_950_000;
 
@@ -89,7 +85,7 @@ describe('a follower’s board that restarts in mid-run', () => {
   it('does not disturb the other arm, which moves on frame by frame', () => {
     const train = trainOf(stork, SHOULDER, resetUs, now());
     expect(train.length).toBeGreaterThan(90);
-    expect(unsteadiness(train, -SPEED_US_S)).toBeLessThanOrEqual(PER_FRAME_US + 2 * PULSE_ERROR_US);
+    expect(unsteadiness(train, -SPEED_US_S)).toBeLessThan((SPEED_US_S * COMMAND_US) / 1e6 + 2 * PULSE_ERROR_US);
   });
 
   it('has no pulses until the operator’s go', () => {
@@ -111,11 +107,7 @@ describe('a follower’s board that restarts in mid-run', () => {
     expect(apartUs).toBeLessThan(100_000 + FRAME_US);
     all.until('wren follows', 4_000_000, () => all.state('wren') === 'following');
     all.wait(300_000);
-    for (const pin of [SHOULDER, ELBOW]) {
-      const { speed, accel } = effort(trainOf(wren, pin, goUs), 8, LIMITS);
-      expect(speed).toBeLessThanOrEqual(1);
-      expect(accel).toBeLessThanOrEqual(1);
-    }
+    for (const pin of [SHOULDER, ELBOW]) expectInsideLimits(trainOf(wren, pin, goUs));
     // 120 counts are -117.6 degrees, cut to -85, and half of it the other way: 1500 + 58.8 * 10.444.
     const ends = [SHOULDER, ELBOW].map((pin) => wren.pulses(pin).at(-1)?.widthUs ?? Number.NaN);
     expect(Math.abs((ends[0] as number) - 612)).toBeLessThanOrEqual(NEAR_US);
