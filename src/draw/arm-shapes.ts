@@ -158,7 +158,8 @@ export function poseShape(
     );
   // Words run toward the middle where the frame ends, and above or below the arm as it points.
   const leftward = tip[0] > frame.x + 0.65 * frame.width;
-  const beside: Point = [tip[0] + (leftward ? -1.6 : 1.6), tip[1] + (tip[1] < before[1] ? -1 : 3)];
+  const above = view === 'side' ? tip[1] < before[1] : i === 0;
+  const beside: Point = [tip[0] + (leftward ? -1.6 : 1.6), tip[1] + (above ? -1 : 3)];
   return element(
     'g',
     {},

@@ -5,7 +5,6 @@ import type { Member } from './rules/between.ts';
 import { followerConnectionRules, leaderConnectionRules } from './rules/connection.ts';
 import { followerRules } from './rules/follower.ts';
 import { leaderRules } from './rules/leader.ts';
-import { notEnforcedRules } from './rules/not-enforced.ts';
 import { noteIn } from './rules/note.ts';
 import { rateRule, samplingRule } from './rules/rates.ts';
 import { servoRules } from './rules/servos.ts';
@@ -48,7 +47,6 @@ export function judgeFollower(node: LocatedNode, entry: LocatedNode, mistakes: M
   separatorRule(loose, note);
   armRules(loose, note);
   geometryRules(loose, note);
-  notEnforcedRules(loose, note);
   if (whole !== null) poseRules(whole, note);
   rateRule(loose, note);
   return { whole, loose, entry, note };

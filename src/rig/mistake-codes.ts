@@ -163,10 +163,6 @@ export const MISTAKE_CODES = {
     means: 'follow: tip of a leader whose geometry is not known',
     remedy: 'give arm: in the leader file, or use follow: joints',
   },
-  RIG_NOT_ENFORCED: {
-    means: 'a limit that this version does not yet enforce',
-    remedy: 'remove it, and keep the speed down with speed_deg_s',
-  },
 } as const satisfies Record<string, { readonly means: string; readonly remedy: string }>;
 
 export type MistakeCode = keyof typeof MISTAKE_CODES;

@@ -6,7 +6,6 @@ import { ARM_CASES } from './cases/arm.ts';
 import { BOARD_CASES } from './cases/board.ts';
 import type { MistakeCase } from './cases/case.ts';
 import { CONTRADICTION_CASES } from './cases/contradiction.ts';
-import { NOT_ENFORCED_CASES } from './cases/not-enforced.ts';
 import { READING_CASES } from './cases/reading.ts';
 import { SHAPE_CASES } from './cases/shape.ts';
 import { WHOLE_ARM_CASES } from './cases/whole-arm.ts';
@@ -20,7 +19,6 @@ const GROUPS: Readonly<Record<string, readonly MistakeCase[]>> = {
   'boards that cannot do what is asked': BOARD_CASES,
   'arms that cannot be': ARM_CASES,
   'what an arm is asked that it cannot keep': WHOLE_ARM_CASES,
-  'limits that nothing keeps yet': NOT_ENFORCED_CASES,
 };
 
 /** What other files of the cases name. */

@@ -73,14 +73,17 @@ describe('the Lantern Yard', () => {
     }
   });
 
-  it('keeps the stork’s tip under 250 mm/s with all joints at full speed', () => {
-    const [, , stork] = profiles.followers;
-    const speed = (name: string): number =>
-      stork?.joints.find((joint) => joint.name === name)?.speed_deg_s ?? Number.NaN;
-    // Farthest the tip can be from each axis, mm: all links beyond it in line; twist turns about its own link.
-    const farthest = { base: 1800, shoulder: 1800, elbow: 900, nod: 200, twist: 0 };
-    const tip = Object.entries(farthest).reduce((sum, [name, mm]) => sum + ((speed(name) * Math.PI) / 180) * mm, 0);
-    expect(tip).toBeGreaterThan(200);
-    expect(tip).toBeLessThan(250);
+  it('hangs the stork over people’s heads, and caps it at 250 mm/s', () => {
+    const whole = rig.plan.followers[2]?.whole;
+    expect(whole).toMatchObject({ endSpeedMS: 0.25, keepOut: [{ kind: 'below', zM: 1.32 }] });
+    // Turned about x by half a turn: what is up in its profile hangs down.
+    expect(whole?.arm.base.tiltRad).toEqual([Math.PI, 0]);
+  });
+
+  it('lets the heron’s tip follow the leader’s, half as far again, and its twist and grip copy joints', () => {
+    const heron = rig.plan.followers[1];
+    // 600 mm of reach against 400.
+    expect(heron?.whole?.tip?.scale).toBeCloseTo(1.5, 12);
+    expect(heron?.whole?.tip?.reaching.map((j) => heron.joints[j]?.name)).toEqual(['base', 'shoulder', 'elbow', 'nod']);
   });
 });

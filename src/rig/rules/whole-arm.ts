@@ -23,13 +23,6 @@ export function geometryRules(follower: LooseFollower, note: Note): void {
     motorRule(follower, note);
     return;
   }
-  for (const { key, what } of askedOfArm(follower)) {
-    note('RIG_ARM_MISSING', [key], `${what} needs the arm's geometry`, `give its links, such as ${EXAMPLE}`);
-  }
-}
-
-/** Which keys only an arm whose geometry is known can keep. */
-export function askedOfArm(follower: LooseFollower): readonly { readonly key: string; readonly what: string }[] {
   const asked: readonly (readonly [boolean, string, string])[] = [
     [follower.follow === 'tip', 'follow', 'follow: tip'],
     [follower.tip_speed_mm_s !== undefined, 'tip_speed_mm_s', 'tip_speed_mm_s'],
@@ -37,7 +30,9 @@ export function askedOfArm(follower: LooseFollower): readonly { readonly key: st
     [follower.load === 'limit', 'load', 'load: limit'],
     [follower.moving_load === 'limit', 'moving_load', 'moving_load: limit'],
   ];
-  return asked.flatMap(([is, key, what]) => (is ? [{ key, what }] : []));
+  for (const [is, key, what] of asked) {
+    if (is) note('RIG_ARM_MISSING', [key], `${what} needs the arm's geometry`, `give its links, such as ${EXAMPLE}`);
+  }
 }
 
 /** A load can only be over something. */
