@@ -119,12 +119,15 @@ export function leaderStage(plan: Plan, common: Shared): LeaderStage {
     }
   };
 
+  /** What was never heard, or went down with its port, is too old even for a board that speaks on change only. */
+  const isTooOld = (ageUs: number): boolean => ageUs > plan.leader.timeoutUs || ageUs === Number.POSITIVE_INFINITY;
+
   const noteSources = (): void => {
     const isAll = self.byTargets || !posed.includes(0);
     const isNone = !self.byTargets && !posed.includes(1);
     self.lastUs = isNone ? heard.handUs : isAll ? heard.takeUs : Math.min(heard.handUs, heard.takeUs);
     // A pedal that is not heard is not held, whoever leads.
-    if (hasEnable && (common.nowUs[0] as number) - heard.handUs > plan.leader.timeoutUs) self.enabled = false;
+    if (isTooOld((common.nowUs[0] as number) - heard.handUs)) self.enabled = !hasEnable;
   };
 
   const noteHealth = (): void => {
@@ -190,8 +193,7 @@ export function leaderStage(plan: Plan, common: Shared): LeaderStage {
       }
       noteSources();
       virtual?.meet(kernel.poseRad);
-      const age = event.tUs - self.lastUs;
-      self.stale = age > plan.leader.timeoutUs || age === Number.POSITIVE_INFINITY;
+      self.stale = isTooOld(event.tUs - self.lastUs);
     },
     dueUs() {
       // One microsecond past the timeout is the first integer instant at which the reading is too old.

@@ -24,7 +24,7 @@ export function driveFaults(record: Record): string[] {
       ...pulseFaults(spec, told),
       ...unbroken(spec, told).flatMap((sequence) => motionFaults(sequence, spec.joints)),
       ...rateFaults(spec, told),
-      ...staleFaults(record, told),
+      ...staleFaults(record, follower),
       ...latchFaults(record, follower),
       ...delayFaults(record, follower),
     ].map((fault) => `${spec.name}: ${fault}`);
@@ -73,37 +73,61 @@ function rateFaults(spec: FollowerSpec, told: readonly Told[]): string[] {
   );
 }
 
-/** Once readings are too old the arm only gets slower; parking that was asked for without a leader is no such motion. */
-function staleFaults(record: Record, told: readonly Told[]): string[] {
-  const stale = told.map((each) => each.tUs - lastReadingUs(record.happened, each) > record.plan.leader.timeoutUs);
-  return told.flatMap((each, i) => {
-    const [before, first] = [told[i - 1], told[i - 2]];
-    if (before === undefined || first === undefined || !stale[i] || !stale[i - 1]) return [];
-    if (each.state === 'parking' || before.state === 'parking' || each.kind !== 'move') return [];
-    const fasterAt = each.anglesRad.findIndex((x, j) => {
-      const speed = (x - (before.anglesRad[j] as number)) / (each.tUs - before.tUs);
-      const speedBefore = ((before.anglesRad[j] as number) - (first.anglesRad[j] as number)) / (before.tUs - first.tUs);
-      return Math.abs(speed) > Math.abs(speedBefore) + 1e-12;
+/** Once what leads is too old the arm only gets slower; parking that was asked for without a leader is no such motion. */
+function staleFaults(record: Record, follower: number): string[] {
+  const { told, happened, plan } = record;
+  const heard = new Heard(plan.leader.joints.length);
+  const mine: { each: Told; stale: boolean }[] = [];
+  let seen = 0;
+  for (const { event, told: upTo } of happened) {
+    heard.hears(event);
+    const stale = event.tUs - heard.lastUs > plan.leader.timeoutUs;
+    for (const each of told.slice(seen, upTo)) if (each.follower === follower) mine.push({ each, stale });
+    seen = upTo;
+  }
+  return mine.flatMap(({ each, stale }, i) => {
+    const before = mine[i - 1];
+    const first = mine[i - 2];
+    if (before === undefined || first === undefined || !stale || !before.stale) return [];
+    if (each.state === 'parking' || before.each.state === 'parking' || each.kind !== 'move') return [];
+    const fasterAt = each.anglesRad.findIndex((_, j) => {
+      const speed = speedBetween(before.each, each, j);
+      return Math.abs(speed) > Math.abs(speedBetween(first.each, before.each, j)) + 1e-9;
     });
     return fasterAt < 0 ? [] : [`joint ${fasterAt} sped up at ${each.tUs} us with readings too old`];
   });
 }
 
-/** Instant of the last reading or pose delivered before a command, or with it; -Infinity when the leader is down. */
-function lastReadingUs(happened: readonly Happened[], command: Told): number {
-  let low = 0;
-  let high = happened.length - 1;
-  while (low < high) {
-    const middle = (low + high + 1) >>> 1;
-    if ((happened[middle] as Happened).event.tUs <= command.tUs) low = middle;
-    else high = middle - 1;
+/** Mean speed of a joint between two commands, rad/s. */
+function speedBetween(a: Told, b: Told, j: number): number {
+  return ((b.anglesRad[j] as number) - (a.anglesRad[j] as number)) / ((b.tUs - a.tUs) / 1e6);
+}
+
+/** When what leads was last heard of: the hand, a take, or the older of both where they share the joints. */
+class Heard {
+  lastUs = Number.NEGATIVE_INFINITY;
+  #handUs = Number.NEGATIVE_INFINITY;
+  #takeUs = Number.NEGATIVE_INFINITY;
+  #posed: Uint8Array;
+  #targets = false;
+
+  constructor(joints: number) {
+    this.#posed = new Uint8Array(joints);
   }
-  for (let i = low; i >= 0; i--) {
-    const { event } = happened[i] as Happened;
-    if (event.kind === 'reading' || event.kind === 'pose') return event.tUs;
-    if (event.kind === 'down' && event.follower === LEADER) return Number.NEGATIVE_INFINITY;
+
+  hears(event: DriveEvent): void {
+    const isTake = event.kind === 'target' || (event.kind === 'pose' && this.#posed.includes(1));
+    if (isTake) this.#takeUs = event.tUs;
+    else if (event.kind === 'reading' || event.kind === 'pose') this.#handUs = event.tUs;
+    else if (event.kind === 'down' && event.follower === LEADER) this.#handUs = Number.NEGATIVE_INFINITY;
+    else if (event.kind === 'lead') {
+      this.#posed = event.posed;
+      this.#targets = event.targets;
+    }
+    const onlyTake = this.#targets || !this.#posed.includes(0);
+    const onlyHand = !this.#targets && !this.#posed.includes(1);
+    this.lastUs = onlyHand ? this.#handUs : onlyTake ? this.#takeUs : Math.min(this.#handUs, this.#takeUs);
   }
-  return Number.NEGATIVE_INFINITY;
 }
 
 /** After a stop, once it stands, nothing moves until `rearm`, and then a key that asks for motion. */
@@ -138,12 +162,13 @@ function latchFaults({ happened, told }: Record, follower: number): string[] {
 /** A moving arm is told again within its period, whatever the ports of the others do; boards that take a while are let off. */
 function delayFaults(record: Record, follower: number): string[] {
   if (record.busyUs > 0) return [];
-  const { periodUs } = record.plan.followers[follower] as FollowerSpec;
+  // Under a take's commands a tenth of the period may pass in waiting for the next one.
+  const latestUs = Math.ceil(1.1 * (record.plan.followers[follower] as FollowerSpec).periodUs);
   const faults: string[] = [];
   let movingSinceUs = Number.POSITIVE_INFINITY;
   let seen = 0;
   for (const { event, told } of record.happened) {
-    if (event.tUs - movingSinceUs > periodUs)
+    if (event.tUs - movingSinceUs > latestUs)
       faults.push(`was kept waiting from ${movingSinceUs} us to ${event.tUs} us`);
     if (isOfBoard(record, event, follower)) movingSinceUs = Number.POSITIVE_INFINITY;
     // A jogged servo is no moving arm: it may be left where it is.

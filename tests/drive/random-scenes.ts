@@ -1,7 +1,7 @@
 import fc from 'fast-check';
 import type { Key } from '../../src/drive/events.ts';
-import { random } from '../../src/sim/random.ts';
-import { MS, PRESSED, RELEASED, S } from '../plans.ts';
+import { type Random, random } from '../../src/sim/random.ts';
+import { DEG, MS, PRESSED, RELEASED, S } from '../plans.ts';
 import type { Staging } from './random-plans.ts';
 import { Rehearsal } from './rehearsal.ts';
 
@@ -25,7 +25,8 @@ type Happening =
   | { readonly kind: 'blocked' | 'free' | 'down' | 'kept' | 'ready' | 'reboot'; readonly follower: number }
   | { readonly kind: 'button'; readonly index: number; readonly pressed: boolean }
   | { readonly kind: 'jog'; readonly follower: number; readonly servo: number; readonly pulseUs: number }
-  | { readonly kind: 'pose'; readonly angleDeg: number };
+  | { readonly kind: 'pose'; readonly angleDeg: number }
+  | { readonly kind: 'lead'; readonly posed: readonly (0 | 1)[]; readonly targets: boolean };
 
 const KEYS: Key[] = ['go', 'join', 'hold', 'park', 'limp', 'stop', 'rearm', 'clutch', 'pace', 'mark'];
 const who = fc.integer({ min: -1, max: 2 });
@@ -38,6 +39,13 @@ const key = (keys: readonly Key[]): fc.Arbitrary<Happening> =>
     follower: who,
     value: fc.constantFrom(1, 0.5, 0.1, 0, 7, -1, Number.NaN),
   });
+
+/** A take that plays along: its poses or its commands, with a hole now and then. */
+const leads: fc.Arbitrary<Happening> = fc.record({
+  kind: fc.constant('lead' as const),
+  posed: fc.constantFrom<(0 | 1)[]>([0, 0, 0], [0, 0, 0], [1, 1, 1], [1, 0, 0], [0, 1, 1]),
+  targets: fc.boolean(),
+});
 
 const happening: fc.Arbitrary<Happening> = fc.oneof(
   { weight: 8, arbitrary: fc.constantFrom({ kind: 'nothing' as const }, { kind: 'two readings at once' as const }) },
@@ -71,6 +79,7 @@ const happening: fc.Arbitrary<Happening> = fc.oneof(
       pulseUs: fc.constantFrom(600, 1500, 2400, Number.NaN),
     }),
   },
+  { weight: 2, arbitrary: leads },
   {
     weight: 1,
     arbitrary: fc.record({
@@ -124,6 +133,11 @@ function happen(on: Rehearsal, what: Happening, followers: number): void {
       if (what.index < buttons.length) on.input(joints.length + what.index, what.pressed ? PRESSED : RELEASED);
       return;
     }
+    case 'lead': {
+      const posed = Uint8Array.from(on.drive.plan.leader.joints, (_, j) => what.posed[j] as number);
+      on.deliver({ kind: 'lead', tUs: on.nowUs, posed, targets: what.targets });
+      return;
+    }
     case 'jog':
       if (what.follower < followers) on.jog(what.servo, what.pulseUs, what.follower);
       return;
@@ -166,6 +180,29 @@ function read(on: Rehearsal, { manner, everyUs, amplitudeDeg, forUs, seed }: Omi
       else if (manner === 'nonsense')
         on.input(j, [Infinity, -Infinity, 1e9, -7, Number.NaN, 500][Math.floor(6 * chance.uniform())] as number);
     }
-    on.reads().run(Math.min(Math.round(everyUs * chance.between(0.2, 1.8)), endUs - on.nowUs));
+    on.reads();
+    playAlong(on, chance, goal, (rate[0] as number) * tS);
+    on.run(Math.min(Math.round(everyUs * chance.between(0.2, 1.8)), endUs - on.nowUs));
   }
+}
+
+/** What a take says beside the hand's readings: heard where it leads, and to be ignored where it does not. */
+function playAlong(on: Rehearsal, chance: Random, goal: readonly number[], phase: number): void {
+  const { joints } = on.drive.plan.leader;
+  if (on.led.posed.includes(1)) {
+    const poseRad = Float64Array.from(joints, (_, j) => {
+      const hole = chance.uniform() < 0.02 ? Number.NaN : 0;
+      return hole + (goal[j] as number) * DEG * Math.cos(phase);
+    });
+    on.deliver({ kind: 'pose', tUs: on.nowUs, poseRad });
+  }
+  if (!on.led.targets) return;
+  on.drive.followers.forEach(({ spec }, follower) => {
+    const swingRad = (goal[0] as number) * DEG;
+    const anglesRad = Float64Array.from(spec.joints, () =>
+      chance.uniform() < 0.02 ? Number.NaN : swingRad * Math.sin(phase),
+    );
+    const speedsRadS = Float64Array.from(spec.joints, () => swingRad * Math.cos(phase) * chance.between(0, 8));
+    on.deliver({ kind: 'target', tUs: on.nowUs, follower, anglesRad, speedsRadS });
+  });
 }

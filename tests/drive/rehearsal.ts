@@ -54,6 +54,8 @@ export class Rehearsal {
   /** Every event as delivered, ticks included. */
   readonly happened: Happened[] = [];
   nowUs = 0;
+  /** What a take leads. */
+  led: { readonly posed: Uint8Array; readonly targets: boolean } = { posed: new Uint8Array(0), targets: false };
   /** What the leader's inputs read: joints in degrees turned into counts, buttons as they are. */
   #counts: number[];
   readonly #busyUs: number;
@@ -180,6 +182,7 @@ export class Rehearsal {
 
   #take(event: DriveEvent, isCaused = false): void {
     this.nowUs = event.tUs;
+    if (event.kind === 'lead') this.led = event;
     const caused: number[] = [];
     take(this.drive, event, (command) => {
       this.#keep(command);

@@ -155,10 +155,16 @@ describe('an enable pedal while a take leads', () => {
     expect(on.state()).toBe('joining');
   });
 
-  it('is let go with the port of its board', () => {
-    const on = new Playback(pedalled).input(2, PRESSED).following().leads(1, 1);
+  it.each([250 * MS, Number.POSITIVE_INFINITY])('is let go with the port of its board (timeout %s us)', (timeoutUs) => {
+    const { leader } = pedalled;
+    const on = new Playback({ ...pedalled, leader: { ...leader, timeoutUs } })
+      .input(2, PRESSED)
+      .following()
+      .leads(1, 1);
     on.repeats(4 * S, () => on.says(20, 20).reads());
     on.board('down', -2);
+    expect(on.state()).toBe('holding');
+    on.repeats(S, () => on.says(80, 80));
     expect(on.state()).toBe('holding');
   });
 });
