@@ -51,3 +51,12 @@ declare module 'fili' {
     }[];
   }
 }
+
+declare module 'ml-regression-theil-sen' {
+  /** Median of the slopes between all pairs of points, and of what is then left of y. */
+  export class TheilSenRegression {
+    constructor(x: readonly number[], y: readonly number[]);
+    readonly slope: number;
+    readonly intercept: number;
+  }
+}

@@ -75,7 +75,7 @@ export async function fitMeasured(
 const JITTER_MM = 0.5;
 const LAG_MS = 60;
 
-export function quantityOption(unit: string): (text: string) => number {
+function quantityOption(unit: string): (text: string) => number {
   return (text) => {
     const value = Number(text.trim().replace(new RegExp(`${unit}$`), ''));
     if (text.trim() !== '' && value > 0 && Number.isFinite(value)) return value;

@@ -88,7 +88,7 @@ const HOLD_READINGS = 50;
 const RAIL_COUNTS = 1;
 
 /** Takes readings of one input, as they come. Lines meanwhile are not heard. */
-export function* readings(shown: Prompt, input: number, n: number): Step<readonly number[]> {
+function* readings(shown: Prompt, input: number, n: number): Step<readonly number[]> {
   const counts: number[] = [];
   for (let now = shown; counts.length < n; now = { ...shown, lines: [] }) {
     const event = yield now;

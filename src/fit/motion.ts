@@ -1,7 +1,7 @@
 import { answer, type Bench, type BenchServo, prompt, type Step } from './bench.ts';
 
 /** Nobody has put a follower's horns aside yet. */
-export function* cleared(bench: Bench, servo: BenchServo): Step {
+function* cleared(bench: Bench, servo: BenchServo): Step {
   if (!bench.cleared.has(servo.follower)) {
     const first = prompt(
       [

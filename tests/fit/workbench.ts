@@ -86,7 +86,7 @@ interface Reply {
 }
 
 /** Sweeps: from stop to stop twice, with dwells at the stops and at a mark on the way. */
-export function sweep(
+function sweep(
   joint: HeldJoint,
   stops: readonly [number, number],
   mark: number,

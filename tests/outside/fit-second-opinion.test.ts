@@ -1,0 +1,46 @@
+import fc from 'fast-check';
+import { TheilSenRegression } from 'ml-regression-theil-sen';
+import { linearRegression, linearRegressionLine } from 'simple-statistics';
+import { describe, expect, it } from 'vitest';
+import { type Polynomial, polynomials } from '../../src/fit/least-squares.ts';
+import { theilSen } from '../../src/fit/theil-sen.ts';
+
+/** General-purpose regression packages on the same points: simple-statistics, and ml-regression-theil-sen. */
+const measured = fc
+  .array(fc.tuple(fc.integer({ min: 0, max: 4095 }), fc.double({ min: -180, max: 180, noNaN: true })), {
+    minLength: 3,
+    maxLength: 40,
+  })
+  .filter((pairs) => new Set(pairs.map(([x]) => x)).size > 2);
+
+describe('A second opinion', () => {
+  it('on the least-squares line is the same', () => {
+    fc.assert(
+      fc.property(measured, (pairs) => {
+        const fit = polynomials(
+          pairs.map(([x]) => x),
+          pairs.map(([, y]) => y),
+          1,
+        )[1] as Polynomial;
+        const theirs = linearRegressionLine(linearRegression(pairs.map(([x, y]) => [x, y])));
+        for (const at of [0, 1000, 4095])
+          expect(Math.abs(fit.value(at) - theirs(at))).toBeLessThan(1e-6 * (1 + Math.abs(theirs(at))));
+      }),
+    );
+  });
+
+  it('on the robust line is the same', () => {
+    // Of an even list with equal values in its middle, the package's median is one of the two rather than their mean.
+    const odd = measured.filter((pairs) => pairs.length % 2 === 1);
+    fc.assert(
+      fc.property(odd, (pairs) => {
+        const x = pairs.map(([each]) => each);
+        const y = pairs.map(([, each]) => each);
+        const theirs = new TheilSenRegression(x, y);
+        const { slope, offset } = theilSen(x, y);
+        expect(slope).toBeCloseTo(theirs.slope, 9);
+        expect(offset).toBeCloseTo(theirs.intercept, 6);
+      }),
+    );
+  });
+});
