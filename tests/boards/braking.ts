@@ -24,9 +24,9 @@ export function expectStill(board: Pins, pin: number, fromUs: number): void {
 }
 
 /** Every pulse is inside the limits. */
-export function expectInsideLimits(train: readonly Pulse[], limits: PulseLimits = LIMITS): void {
+export function expectInsideLimits(train: readonly Pulse[]): void {
   for (const frames of [5, 10]) {
-    const { speed, accel } = effort(train, frames, limits);
+    const { speed, accel } = effort(train, frames, LIMITS);
     expect(speed).toBeLessThanOrEqual(1);
     expect(accel).toBeLessThanOrEqual(1);
   }
