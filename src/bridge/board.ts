@@ -103,10 +103,7 @@ export function board(plan: CompiledBoard, port: Port, clock: Clock, listener: B
   };
 
   const ask = (bytes: Uint8Array): void => {
-    if (questions.length === 0 && port.write(bytes)) {
-      if (is.ready) tellIfBusy();
-      return;
-    }
+    if (questions.length === 0 && port.write(bytes)) return;
     if (questions.length < QUESTIONS_MAX) questions.push(Uint8Array.from(bytes));
   };
 

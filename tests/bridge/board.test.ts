@@ -291,6 +291,14 @@ describe('what a wire has to ask', () => {
     expect(desk.told()).toEqual(['free 1']);
   });
 
+  it('is forgotten with its connection', () => {
+    const desk = new Desk(firmata).opens().passes(5 * S);
+    expect(desk.written).toHaveLength(1);
+    desk.closes('PORT_CLOSED').opens();
+    for (let i = 0; i < 5; i++) desk.idles();
+    expect(desk.written).toHaveLength(1);
+  });
+
   it('is asked again after 2.5 s, and every second from then on', () => {
     const desk = new Desk(firmata).opens();
     const counts: number[] = [];

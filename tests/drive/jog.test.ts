@@ -56,6 +56,18 @@ describe('a jog', () => {
     expect(on.state()).toBe('following');
   });
 
+  it('starts from where the arm is now, not from where the last one ended', () => {
+    const on = held()
+      .jog(0, 1650)
+      .plays(S, () => [10, 20]);
+    on.jog(0, Number.NaN).plays(2 * S, () => [10, 20]);
+    on.key('join').plays(5 * S, () => [-30, 20]);
+    on.key('hold').plays(S, () => [-30, 20]);
+    const fromUs = on.nowUs - 0.1 * S;
+    on.jog(0, 1800).plays(S, () => [-30, 20]);
+    expect(fastestUsS(on.commands(0, fromUs), 0)).toBeLessThanOrEqual(100 + 1e-6);
+  });
+
   it('refuses another servo until the first is home', () => {
     const on = held()
       .jog(0, 1650)

@@ -55,6 +55,25 @@ describe('in unison', () => {
     expect(lawful(on)).toEqual([]);
   });
 
+  it('arms that turn further than the leader limit its acceleration, too', () => {
+    const large = followerSpec([
+      followerJoint(0, { gain: 2, speedRadS: 100 * DEG, accelRadS2: 60 * DEG }),
+      followerJoint(1),
+    ]);
+    const on = new Rehearsal(planOf([fast, large], { unison: true })).following().plays(2 * S);
+    const fromUs = on.nowUs;
+    on.plays(4 * S, () => [40, 0]);
+    const apart = on.commands(1, fromUs).flatMap((theirs) => {
+      const mine = on.commands(0, fromUs).find((told) => told.tUs === theirs.tUs);
+      return mine === undefined
+        ? []
+        : [Math.abs((mine.anglesRad[0] as number) - (theirs.anglesRad[0] as number) / 2) / DEG];
+    });
+    expect(apart.length).toBeGreaterThan(50);
+    expect(Math.max(...apart)).toBeLessThan(0.01);
+    expect(lawful(on)).toEqual([]);
+  });
+
   it('the others wait for an arm that has only just met, while its limits open', () => {
     const on = new Rehearsal(troupe).following().key('hold', 1).plays(S).key('join', 1);
     while (on.state(1) !== 'following') on.plays(10 * MS);
