@@ -1,7 +1,9 @@
 import { Command, InvalidArgumentError, Option } from '@commander-js/extra-typings';
 import type { CommandUnknownOpts } from '@commander-js/extra-typings';
 import { durationOption } from './options.ts';
+import type { PlayOptions } from './take-play.ts';
 import { realTakeWorld, type TakeWorld } from './take-world.ts';
+import { realWorld } from './world.ts';
 
 const EXPLAINED = `
 A take is one file of the takes folder, NAME.arrows: an Arrow stream that any Arrow reader opens. Takes live
@@ -95,7 +97,79 @@ export function takeCommand(world: () => TakeWorld = realTakeWorld): CommandUnkn
         process.exitCode = await exportCommand(names, { takes, out, format, columns: columns ?? [], rate }, world());
       }),
   );
+  take.addCommand(
+    played('play', 'play a take on a rig (arms move: see the cautions of "eidograph run --help")')
+      .option('--as-commands', 'the recorded angles of each follower, rather than the leader that made them')
+      .option('--loop [blend]', 'over and over, its end joined to its start by a blend (1s)', durationOption)
+      .option('--keep-limits', 'as much slower as it takes for every follower to keep its limits')
+      .option('--weight', 'each follower slower by the root of its size, as its weight would have it')
+      .option('--stay', 'stand where it ended rather than park and leave')
+      .action(async (name, options) => {
+        const { asCommands, loop, keepLimits, weight, stay, ...rest } = options;
+        process.exitCode = await play(name, {
+          ...playOptions(rest),
+          by: asCommands === true ? 'commands' : 'leader',
+          loopBlendUs: loop === undefined ? null : loop === true ? LOOP_BLEND_US : loop,
+          keepLimits: keepLimits === true,
+          weight: weight === true,
+          stay: stay === true,
+          layer: null,
+        });
+      }),
+  );
+  take.addCommand(
+    played('layer', 'record some joints by hand while the rest play from a take; the result is a new take')
+      .requiredOption('--as <name>', 'name of the new take')
+      .requiredOption('--joints <names>', 'leader joints that stay in the hand, with commas', listed)
+      .action(async (name, { as, joints, ...rest }) => {
+        const layer = { as, joints };
+        const plain = { by: 'leader', loopBlendUs: null, keepLimits: false, weight: false, stay: false } as const;
+        process.exitCode = await play(name, { ...playOptions(rest), ...plain, layer });
+      }),
+  );
   return take;
+}
+
+const LOOP_BLEND_US = 1_000_000;
+const COUNT_IN_US = 3_000_000;
+
+function played(name: string, description: string) {
+  return folder(new Command(name).description(description))
+    .argument('<name>')
+    .requiredOption('--rig <rig>', 'the rig file')
+    .option('--speed <factor>', '2 is twice as fast', positive, 1)
+    .option('--from <moment>', 'where it begins')
+    .option('--to <moment>', 'where it ends')
+    .option('--map <old=new>', 'who plays what, where names differ; several with commas', listed)
+    .addOption(
+      new Option('--count-in <time>', 'before anything plays').argParser(durationOption).default(COUNT_IN_US, '3s'),
+    )
+    .option('--unattended', 'play although nobody holds the enable button')
+    .option('--join', 'let the arms start without asking (needed where there is no terminal)')
+    .option('--json', 'print the status as JSON, ten lines a second');
+}
+
+type Shared = Omit<PlayOptions, 'by' | 'loopBlendUs' | 'keepLimits' | 'weight' | 'stay' | 'layer'>;
+
+function playOptions(options: ReturnType<ReturnType<typeof played>['opts']>): Shared {
+  const { rig, takes, speed, from, to, map, countIn, unattended, join, json } = options;
+  return {
+    rig,
+    takes,
+    speed,
+    from,
+    to,
+    map: map ?? [],
+    countInUs: countIn,
+    unattended: unattended === true,
+    join: join === true,
+    json: json === true,
+  };
+}
+
+async function play(name: string, options: PlayOptions): Promise<number> {
+  const { playTake } = await import('./take-play.ts');
+  return playTake(name, options, realWorld(), realTakeWorld());
 }
 
 function folder<A extends unknown[]>(command: Command<A>): Command<A, { takes?: string | undefined }> {

@@ -25,6 +25,7 @@ export const TAKE_REMEDIES = {
   TAKE_MARK: 'name one of its marks, or a time such as 2.5s',
   TAKE_COLUMN: 'name columns as "eidograph take export" writes them, with * for any part, such as wren.*',
   TAKE_FILE: 'name another file; nothing is written over',
+  TAKE_ARM: 'write the arm: part of its profile, or play without --weight',
   TAKE_SHORT: 'choose a longer stretch',
   TAKE_UNFIT: 'choose takes that were recorded from the same joints',
 } as const;

@@ -1,6 +1,6 @@
 import { type Cancel, type Clock, US_PER_MS } from '../clock/clock.ts';
 import type { Drive } from '../drive/drive.ts';
-import { ALL, type DriveEvent, type Key } from '../drive/events.ts';
+import type { DriveEvent } from '../drive/events.ts';
 import type { Cast } from './cast.ts';
 import { lateness, type Lateness } from './lateness.ts';
 import { EVENT_CODES, type Row, type RowFollower } from './row.ts';
@@ -9,7 +9,6 @@ import { EVENT_CODES, type Row, type RowFollower } from './row.ts';
 export interface Stage {
   readonly drive: Drive;
   push(event: DriveEvent & { tUs: number }): void;
-  key(key: Key, follower?: number, value?: number): void;
 }
 
 export interface PlayerOptions {
@@ -20,13 +19,14 @@ export interface PlayerOptions {
   readonly posed: Uint8Array;
   /** Count-in once every arm stands where the take begins, microseconds. */
   readonly countInUs: number;
-  /** Parks every follower at the end; otherwise they stand where it ended. */
-  readonly park: boolean;
   readonly changed: (phase: Phase) => void;
 }
 
-/** `easing`: arms go gently to where the take begins; `counting`: the count-in; `handed`: the hand leads in mid-play. */
-export type Phase = 'easing' | 'counting' | 'playing' | 'handed' | 'parking' | 'over';
+/**
+ * `easing`: arms go gently to where the take begins; `counting`: the count-in; `handed`: the hand leads in mid-play; `over`:
+ * they are kept where it ended until it is stopped.
+ */
+export type Phase = 'easing' | 'counting' | 'playing' | 'handed' | 'over';
 
 /** Plays a reel of rows: each event goes out stamped with the instant it was due, however late its timer fired. */
 export interface Player {
@@ -140,10 +140,13 @@ export function player(stage: Stage, clock: Clock, rows: Iterator<Row>, options:
     options.changed(phase);
   };
 
+  /** What stays in the hand never stands quite still. */
+  const mayMove = byLeader && posed.includes(0);
+
   /** Everybody who has a part stands where the take begins. */
   const isReady = (): boolean => {
     const playing = drive.followers.filter((_, f) => byLeader || cast.followers[f] !== null);
-    return playing.length > 0 && playing.every(({ is: arm }) => arm.state === 'following' && !arm.moving);
+    return playing.length > 0 && playing.every(({ is: arm }) => arm.state === 'following' && (mayMove || !arm.moving));
   };
 
   const wait = (nowUs: number): void => {
@@ -180,19 +183,14 @@ export function player(stage: Stage, clock: Clock, rows: Iterator<Row>, options:
 
   const finish = (nowUs: number): void => {
     repeat(nowUs);
-    if (!options.park) {
-      enter('over');
-      return;
-    }
-    stage.key('park', ALL);
-    enter('parking');
+    enter('over');
   };
 
   const turn = (): void => {
     const nowUs = clock.nowUs();
     if (is.phase === 'easing' || is.phase === 'counting') wait(nowUs);
     if (is.phase === 'playing') play(nowUs);
-    else if (is.phase === 'over' || is.phase === 'parking') repeat(nowUs);
+    else if (is.phase === 'over') repeat(nowUs);
     if (is.phase === 'handed') return;
     const soonUs = nowUs + HEARTBEAT_US;
     const dueUs = is.phase === 'playing' && next !== null ? Math.min(beganUs + next.tUs, soonUs) : soonUs;
@@ -220,7 +218,7 @@ export function player(stage: Stage, clock: Clock, rows: Iterator<Row>, options:
         turn();
         return;
       }
-      if (is.phase === 'parking' || is.phase === 'over') return;
+      if (is.phase === 'over') return;
       cancel();
       lead(false, nowUs);
       enter('handed');

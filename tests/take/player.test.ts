@@ -63,23 +63,17 @@ function playing(
   });
   performance.run(1_000_000);
   const rows = reel(take, { fromUs: 3_000_000, toUs: 8_000_000, speed: 1, loopBlendS: null, ...options.reel });
-  const started = player(
-    { ...performance.live, key: performance.live.key, push: performance.live.push },
-    performance.clock,
-    rows,
-    {
-      cast: {
-        leader: isTakeFault(leader) ? [] : leader,
-        followers: isTakeFault(followers) ? [] : followers,
-      },
-      by,
-      posed: new Uint8Array(rig.plan.leader.joints.length).fill(1),
-      countInUs: 1_000_000,
-      park: true,
-      changed: (phase) => phases.push(phase),
-      ...options,
+  const started = player(performance.live, performance.clock, rows, {
+    cast: {
+      leader: isTakeFault(leader) ? [] : leader,
+      followers: isTakeFault(followers) ? [] : followers,
     },
-  );
+    by,
+    posed: new Uint8Array(rig.plan.leader.joints.length).fill(1),
+    countInUs: 1_000_000,
+    changed: (phase) => phases.push(phase),
+    ...options,
+  });
   return { performance, player: started, phases, moves };
 }
 
@@ -91,11 +85,14 @@ function until({ performance, player: { is } }: Played, phase: Phase, limitS = 6
 }
 
 describe('a take that leads', () => {
-  it('eases in, counts in, plays, and parks every arm', () => {
+  it('eases in, counts in, plays, and keeps every arm until it is parked', () => {
     const played = playing(TWO_ARMS);
-    until(played, 'parking');
+    until(played, 'over');
+    expect(played.phases).toEqual(['counting', 'playing', 'over']);
+    played.performance.run(2_000_000);
+    expect(played.performance.states()).toEqual(['following', 'following']);
+    played.performance.live.key('park');
     played.performance.run(20_000_000);
-    expect(played.phases).toEqual(['counting', 'playing', 'parking']);
     for (const { arm, is } of played.performance.live.drive.followers) {
       expect(is.state).toBe('holding');
       expect(arm.atRest()).toBe(true);
@@ -107,7 +104,7 @@ describe('a take that leads', () => {
     const played = playing(TWO_ARMS);
     until(played, 'playing');
     const beganUs = played.performance.clock.nowUs();
-    until(played, 'parking');
+    until(played, 'over');
     const apart = recorded
       .filter(({ tUs, followers }) => tUs > 4_000_000 && tUs < 7_900_000 && followers[0]?.commanded === 1)
       .map(({ tUs, followers }) => {
@@ -123,7 +120,7 @@ describe('a take that leads', () => {
   it('never leaves speed or acceleration limits, whatever the speed it is played at', () => {
     for (const speed of [0.5, 1, 3]) {
       const played = playing(TWO_ARMS, { reel: { speed } });
-      until(played, 'parking');
+      until(played, 'over');
       played.performance.run(5_000_000);
       expectLawful(TWO_ARMS, played.moves);
       expect(played.performance.bugs).toEqual([]);
@@ -166,8 +163,8 @@ describe('a take that leads', () => {
     const { leader } = played.performance.live.drive;
     const handRad = leader.poseRad.slice();
     played.player.handOver();
-    until(played, 'parking');
-    expect(played.phases).toEqual(['counting', 'playing', 'handed', 'easing', 'counting', 'playing', 'parking']);
+    until(played, 'over');
+    expect(played.phases).toEqual(['counting', 'playing', 'handed', 'easing', 'counting', 'playing', 'over']);
     expect(handRad.includes(Number.NaN)).toBe(false);
     expectLawful(TWO_ARMS, played.moves);
   });
@@ -187,7 +184,7 @@ describe('a take played as commands', () => {
   it('gives the recorded angles, and the recorded pulses to the step of the wire', () => {
     const played = playing(TWO_ARMS, { by: 'commands' });
     const beganUs = until(played, 'playing');
-    until(played, 'parking');
+    until(played, 'over');
     for (const follower of [0, 1]) {
       const wanted = recorded.filter(
         ({ tUs, followers }) => tUs >= 3_500_000 && tUs < 7_900_000 && followers[follower]?.commanded === 1,
@@ -213,7 +210,7 @@ describe('a take played as commands', () => {
       ]).replaceAll('speed_deg_s: 60', 'speed_deg_s: 10'),
     );
     const played = playing(slow, { by: 'commands' });
-    until(played, 'parking');
+    until(played, 'over');
     expectLawful(slow, played.moves);
   });
 });
@@ -239,7 +236,7 @@ describe('casting', () => {
 
   it('plays on another arm under its own names', () => {
     const played = playing(other, { map: ['elbow=bend', 'stork=crow'] });
-    until(played, 'parking');
+    until(played, 'over');
     expect(played.player.late.count).toBeGreaterThan(400);
     expect(played.performance.bugs).toEqual([]);
   });
@@ -248,7 +245,7 @@ describe('casting', () => {
 describe('the timing of a play', () => {
   it('is measured: events leave with their due stamps, however late their timers', () => {
     const played = playing(TWO_ARMS);
-    until(played, 'parking');
+    until(played, 'over');
     expect(played.player.late.worstUs).toBe(0);
   });
 });

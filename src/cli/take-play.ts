@@ -1,0 +1,259 @@
+import { resolve } from 'node:path';
+import { withFollowers } from '../bridge/selection.ts';
+import { wakeMemory, wakeMemoryFile } from '../bridge/wake-memory.ts';
+import { US_PER_S } from '../clock/clock.ts';
+import type { CompiledRig } from '../rig/compiled.ts';
+import { type Cast, castFollowers, castLeader, renames } from '../take/cast.ts';
+import { stretchOf, type Stretch } from '../take/derive.ts';
+import { isTakeFault, type TakeFault, takeFault } from '../take/fault.ts';
+import { takesFolder } from '../take/folder.ts';
+import type { Made } from '../take/header.ts';
+import { type Phase, player, type Player } from '../take/player.ts';
+import type { Take } from '../take/reader.ts';
+import { reel } from '../take/reel.ts';
+import type { Row } from '../take/row.ts';
+import { type Demand, leastStretch, stretchFor } from '../take/stretching.ts';
+import { weightedReel, weights } from '../take/weighted.ts';
+import type { Companion, Company } from './companion.ts';
+import { driving } from './driving.ts';
+import { rigOrMistakes } from './load.ts';
+import { portOf } from './port-of.ts';
+import { takeOrStatus } from './take-files.ts';
+import { recording, type Recording } from './take-recording.ts';
+import { refusedStatus, worked } from './take-work.ts';
+import type { TakeWorld } from './take-world.ts';
+import type { World } from './world.ts';
+
+export interface PlayOptions {
+  readonly rig: string;
+  readonly takes: string | undefined;
+  readonly by: 'leader' | 'commands';
+  readonly speed: number;
+  readonly from: string | undefined;
+  readonly to: string | undefined;
+  /** Length of the blend from end to start, microseconds; null: once. */
+  readonly loopBlendUs: number | null;
+  readonly countInUs: number;
+  readonly map: readonly string[];
+  readonly keepLimits: boolean;
+  readonly weight: boolean;
+  readonly unattended: boolean;
+  readonly join: boolean;
+  readonly stay: boolean;
+  readonly json: boolean;
+  /** Joints that stay in the hand, and the name of the take that is recorded; null: it is only played. */
+  readonly layer: { readonly as: string; readonly joints: readonly string[] } | null;
+}
+
+const NEEDS_JOIN = 'there is no terminal to ask for the go; say --join to let the arms start without asking';
+
+/** Plays a take on a rig, alone or with some joints in the hand; resolves with the exit status. */
+export async function playTake(name: string, options: PlayOptions, world: World, at: TakeWorld): Promise<number> {
+  const { err, terminal, env, clock } = world;
+  const loaded = rigOrMistakes(options.rig, err.write);
+  if (loaded === null) return 2;
+  if ((terminal === null || options.json) && !options.join) {
+    err.write(`error: ${NEEDS_JOIN}\n`);
+    return 2;
+  }
+  const folder = takesFolder(options.takes, env);
+  const take = takeOrStatus(at, folder, name);
+  if (typeof take === 'number') return take;
+  try {
+    const rig = castRig(take, loaded.rig, options);
+    const score = isTakeFault(rig) ? rig : scoreFor(take, rig, options);
+    if (isTakeFault(rig)) return refusedStatus(rig, at.err);
+    if (isTakeFault(score)) return refusedStatus(score, at.err);
+    const fitted = options.keepLimits ? await fitToLimits(take, rig, score, at) : score.speed;
+    if (typeof fitted !== 'number') return fitted.status;
+    const rows = rowsFor(take, rig, { ...score, speed: fitted }, options);
+    if (isTakeFault(rows)) return refusedStatus(rows, at.err);
+    const layered = options.layer === null ? null : layering(take, rig, loaded.profiles, folder, err.write);
+    const companion = playing(take, rig, rows, score, options, layered);
+    return await driving(
+      {
+        rig,
+        openPort: (board) => portOf(rig, board, clock),
+        memory: (onFault) => wakeMemory(wakeMemoryFile(resolve(options.rig), env), onFault),
+        unasked: options.join,
+        dry: false,
+        real: true,
+        forUs: null,
+        json: options.json,
+        logLevel: 'warn',
+        logFile: null,
+        companion,
+      },
+      world,
+    );
+  } finally {
+    take.close();
+  }
+}
+
+/** What is played, by whom. */
+interface Score extends Stretch {
+  readonly cast: Cast;
+  readonly by: 'leader' | 'commands';
+  readonly speed: number;
+  /** 1 for each leader joint that the take leads. */
+  readonly posed: Uint8Array;
+}
+
+/** The rig with those who have a part, and without an enable button where nobody is there to hold it. */
+function castRig(take: Take, rig: CompiledRig, { map, by, unattended }: PlayOptions): CompiledRig | TakeFault {
+  const names = renames(take, map);
+  if (isTakeFault(names)) return names;
+  const parts = by === 'leader' ? rig.plan.followers.map(() => true) : castFollowers(take, rig.plan, names);
+  if (isTakeFault(parts)) return parts;
+  const keep = rig.plan.followers.filter((_, f) => parts[f] !== null).map((spec) => spec.name);
+  const kept = withFollowers(rig, new Set(keep));
+  if (!unattended) return kept;
+  const { leader } = kept.plan;
+  const buttons = leader.buttons.filter(({ does }) => does !== 'enable');
+  return { ...kept, plan: { ...kept.plan, leader: { ...leader, buttons } } };
+}
+
+function scoreFor(take: Take, rig: CompiledRig, options: PlayOptions): Score | TakeFault {
+  const stretch = stretchOf(take, options.from, options.to);
+  if (isTakeFault(stretch)) return stretch;
+  const names = renames(take, options.map);
+  if (isTakeFault(names)) return names;
+  const { plan } = rig;
+  const leader = options.by === 'leader' ? castLeader(take, plan, names) : [];
+  if (isTakeFault(leader)) return leader;
+  const followers = options.by === 'leader' ? [] : castFollowers(take, plan, names);
+  if (isTakeFault(followers)) return followers;
+  const inHand = options.layer?.joints ?? [];
+  const strange = inHand.find((joint) => !plan.leader.joints.some(({ name }) => name === joint));
+  if (strange !== undefined) return takeFault('TAKE_JOINTS', take.name, `the rig's leader has no joint ${strange}`);
+  const posed = Uint8Array.from(plan.leader.joints, ({ name }) => (inHand.includes(name) ? 0 : 1));
+  return { ...stretch, cast: { leader, followers }, by: options.by, speed: options.speed, posed };
+}
+
+/** The speed at which every follower keeps its limits: the asked one, or as much slower as it takes. */
+async function fitToLimits(
+  take: Take,
+  rig: CompiledRig,
+  score: Score,
+  world: TakeWorld,
+): Promise<number | { readonly status: number }> {
+  const judged = await worked(leastStretch(take, rig.plan, score.cast, score.by, score), world);
+  if ('status' in judged) return judged;
+  const demands = judged.done;
+  for (const { follower, of, factor } of demands.filter(({ kind }) => kind === 'load'))
+    world.err.write(
+      `${follower}: ${of} would have to hold ${factor.toFixed(2)} times what its motor may, even standing still; no slowness cures that: balance the arm, or change the motion\n`,
+    );
+  const needed = stretchFor(demands);
+  // At the asked speed everything is faster by it, so time has to be stretched by so much more.
+  const factor = Math.max(1, needed * score.speed);
+  const worst = demands.find(({ kind }) => kind !== 'load');
+  world.err.write(
+    factor === 1 || worst === undefined
+      ? 'every follower keeps its limits as it is\n'
+      : `time is stretched ${factor.toFixed(2)} times: ${describe(worst)} asks for it\n`,
+  );
+  return score.speed / factor;
+}
+
+function describe({ follower, of, kind }: Demand): string {
+  return `the ${kind} of ${follower}'s ${of}`;
+}
+
+function rowsFor(take: Take, rig: CompiledRig, score: Score, options: PlayOptions): Iterator<Row> | TakeFault {
+  const { loopBlendUs } = options;
+  if (!options.weight)
+    return reel(take, { ...score, loopBlendS: loopBlendUs === null ? null : loopBlendUs / US_PER_S });
+  const factors = weights(take, rig.plan);
+  if (isTakeFault(factors)) return factors;
+  return weightedReel(take, rig.plan, score.cast, score.by, score, score.speed, factors);
+}
+
+function layering(
+  take: Take,
+  rig: CompiledRig,
+  profiles: Parameters<typeof recording>[0]['profiles'],
+  folder: string,
+  say: (text: string) => void,
+): Recording | null {
+  return recording({ folder, name: null, countInUs: 0, rig, profiles }, say);
+}
+
+function playing(
+  take: Take,
+  rig: CompiledRig,
+  rows: Iterator<Row>,
+  score: Score,
+  options: PlayOptions,
+  recorded: Recording | null,
+): Companion {
+  let company: Company | null = null;
+  let running: Player | null = null;
+  const { layer } = options;
+  // With weights each follower has commands of its own, whoever led them.
+  const own = options.weight ? ownCommands(rig) : null;
+  const made: Made = {
+    by: 'layer',
+    parents: [{ take: take.name, rows: take.rows }],
+    how: { in_hand: layer?.joints.join(' ') ?? '' },
+  };
+
+  const changed = (phase: Phase): void => {
+    if (company === null) return;
+    const say = (text: string): void => company?.say({ text, weight: 'note' });
+    switch (phase) {
+      case 'easing':
+        return say(`${take.name}: the arms go gently to where it begins`);
+      case 'counting':
+        return say(`${take.name}: begins in ${Math.ceil(options.countInUs / US_PER_S)} s`);
+      case 'playing':
+        if (layer !== null) recorded?.start(layer.as, made);
+        return say(`${take.name}: plays`);
+      case 'handed':
+        return say('the hand leads; o gives back to the take');
+      case 'over':
+        recorded?.stop();
+        say(`${take.name}: played; ${timing(running)}`);
+        if (!options.stay) company.parkAndLeave();
+    }
+  };
+
+  return {
+    onStart: (drive, events$, clock) => recorded?.onStart(drive, events$, clock),
+    begin(to) {
+      company = to;
+      recorded?.begin(to);
+      running = player(to.live, to.clock, rows, {
+        cast: own ?? score.cast,
+        by: own === null ? score.by : 'commands',
+        posed: score.posed,
+        countInUs: options.countInUs,
+        changed,
+      });
+      changed('easing');
+    },
+    key(key) {
+      if (key === 'hand_over') running?.handOver();
+      else recorded?.key(key);
+    },
+    async end() {
+      running?.stop();
+      return (await recorded?.end()) ?? true;
+    },
+  };
+}
+
+function ownCommands({ plan }: CompiledRig): Cast {
+  return {
+    leader: [],
+    followers: plan.followers.map((spec, follower) => ({ follower, joints: spec.joints.map((_, j) => j) })),
+  };
+}
+
+function timing(running: Player | null): string {
+  if (running === null || running.late.count === 0) return 'nothing was sent';
+  const { late } = running;
+  const ms = (us: number): string => (us / 1e3).toFixed(2);
+  return `${late.count} events, late by ${ms(late.quantileUs(0.5))} ms at the median, ${ms(late.quantileUs(0.99))} at p99, ${ms(late.worstUs)} at worst`;
+}
