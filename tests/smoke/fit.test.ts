@@ -1,0 +1,79 @@
+import { type ChildProcess, spawn } from 'node:child_process';
+import { mkdtempSync, readdirSync, readFileSync, rmSync, writeFileSync } from 'node:fs';
+import { tmpdir } from 'node:os';
+import { join } from 'node:path';
+import { afterAll, afterEach, describe, expect, it, vi } from 'vitest';
+import { noPty } from '../port/pty.ts';
+
+/** A measuring session at a real terminal, over simulated boards. */
+const LIMIT_MS = 90_000;
+const folder = mkdtempSync(join(tmpdir(), 'eidograph-fit-'));
+afterAll(() => rmSync(folder, { recursive: true, force: true }));
+
+const RIG = `rig: bench
+leader: { leader: stick, port: "sim:hand?seed=7", wire: lines, counts: [0, 1023], joints: [{ name: base, channel: 0, points: [[100, -100], [900, 100]] }] }
+followers:
+  - follower: wren
+    port: "sim:arm?name=wren"
+    wire: { lines: { template: "{base.us}\\n" } }
+    wake: ask
+    joints: [{ name: base, from: base, range_deg: [-60, 60], speed_deg_s: 60, accel_deg_s2: 240, servo: { channel: 0, points: [[-90, 600], [90, 2400]] } }]
+`;
+const FILE = join(folder, 'bench.yaml');
+writeFileSync(FILE, RIG);
+
+let socat: ChildProcess | null = null;
+afterEach(() => {
+  socat?.kill('SIGKILL');
+});
+
+function terminal(script: string): { shown(): string; type(text: string): void } {
+  if (noPty !== null) throw new Error(`the smoke test needs pseudo-terminals: ${noPty}`);
+  const child = spawn('socat', ['STDIO', `SYSTEM:${script},pty,setsid,ctty,stderr`], {
+    stdio: ['pipe', 'pipe', 'ignore'],
+    env: { ...process.env, TERM: 'xterm-256color', LANG: 'C.UTF-8' },
+  });
+  socat = child;
+  let shown = '';
+  child.stdout.on('data', (bytes: Buffer) => {
+    shown += bytes.toString();
+  });
+  return { shown: () => shown, type: (text) => void child.stdin.write(text) };
+}
+
+const until = (condition: () => boolean): Promise<unknown> =>
+  vi.waitUntil(condition, { interval: 20, timeout: LIMIT_MS });
+
+const FIT = `${process.execPath} --import tsx src/cli/main.ts fit ${FILE}; echo status $?`;
+
+describe('eidograph fit at a terminal', () => {
+  it('lists its steps, draws the tape while a joint is swept, and leaves with what was captured kept', async () => {
+    const at = terminal(FIT);
+    await until(() => at.shown().includes('sweep of stick base') && at.shown().includes('the board answers'));
+    const sweep = /(\d+) {2}sweep of stick base/.exec(at.shown())?.[1] ?? '';
+    at.type(`${sweep}\r`);
+    // It is drawn five times a second, and a hundred readings, a second of them, make a sweep.
+    await until(() => (at.shown().match(/\|[-#o]{50}\| \d+ /g) ?? []).length > 12);
+    at.type('\r');
+    await until(() => at.shown().includes('base: travel:'));
+    at.type('quit\r');
+    await until(() => at.shown().includes('status '));
+    expect(at.shown()).toContain('The profiles are as they were.');
+    expect(at.shown()).toContain('status 0');
+    const kept = readFileSync(join(folder, 'bench.captures.csv'), 'utf8');
+    expect(kept.split('\n').filter((line) => line.startsWith('leader-sweep,stick,base,')).length).toBeGreaterThan(99);
+    expect(readFileSync(FILE, 'utf8')).toBe(RIG);
+  });
+
+  it('ends with 130 at Ctrl-C, whatever it was asking, and has written nothing', async () => {
+    const at = terminal(FIT);
+    await until(() => at.shown().includes('Enter: step'));
+    at.type('1\r');
+    await until(() => at.shown().includes('Type yes'));
+    at.type('\x03');
+    await until(() => at.shown().includes('status '));
+    expect(at.shown()).toContain('status 130');
+    expect(readFileSync(FILE, 'utf8')).toBe(RIG);
+    expect(readdirSync(folder).filter((name) => name.startsWith('bench.yaml'))).toEqual(['bench.yaml']);
+  });
+});
