@@ -77,7 +77,7 @@ export function authority(
         share.meet();
         return;
       case 'holding':
-        if (event === 'rested' || event === 'jogged') is.blocks |= BLOCKS.held;
+        if (event === 'jogged') is.blocks |= BLOCKS.held;
         return;
       case 'parking':
         share.begin();
@@ -218,7 +218,6 @@ export function authority(
           is.present = false;
           common.busy[board] = 0;
           if (event.kind === 'reboot') is.pulsed = false;
-          pending.forget();
           return raise('down');
       }
     },
@@ -249,7 +248,6 @@ export function authority(
     giveUp() {
       is.blocks |= BLOCKS.fault;
       is.present = false;
-      pending.forget();
       raise('stop');
     },
   };

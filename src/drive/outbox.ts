@@ -7,7 +7,6 @@ export interface Outbox {
   ask(kind: Exclude<CommandKind, 'move'>): void;
   /** The most urgent one: power off, then the end of pulses, then power on. */
   take(): CommandKind;
-  forget(): void;
 }
 
 const URGENCY = ['power_off', 'limp', 'power_on'] as const;
@@ -28,10 +27,6 @@ export function outbox(): Outbox {
       waiting.delete(kind);
       self.some = waiting.size > 0;
       return kind;
-    },
-    forget(): void {
-      waiting.clear();
-      self.some = false;
     },
   };
   return self;

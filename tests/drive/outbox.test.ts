@@ -30,11 +30,17 @@ describe('switching commands that wait for a port', () => {
     expect(goesOut('power_on', 'power_off', 'power_on')).toEqual(['power_on']);
   });
 
-  it('are forgotten with their port', () => {
-    const pending = outbox();
-    pending.ask('power_on');
-    pending.forget();
-    expect(pending.some).toBe(false);
+  it('outlast their port: an arm that was to go limp does so when it is back', () => {
+    for (const kept of [true, false]) {
+      const on = new Rehearsal(planOf([followerSpec()])).following().key('hold').plays(S);
+      on.board('blocked')
+        .key('limp')
+        .board('down')
+        .plays(0.3 * S);
+      on.told.length = 0;
+      on.board('ready', 0, kept).plays(S);
+      expect(on.told.map((told) => told.kind)).toEqual(['limp']);
+    }
   });
 
   it('never switch power on again behind a stop', () => {
