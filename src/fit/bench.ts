@@ -84,6 +84,8 @@ export function* numberOrNothing(asked: Prompt): Step<number | null> {
 
 /** Half a second at the usual hundred readings a second. */
 const HOLD_READINGS = 50;
+/** A hand that has not come to rest in two seconds holds on to nothing. */
+const HOLD_TRIES = 4;
 /** Nearer to an end of the converter's range, a reading is no measure. */
 const RAIL_COUNTS = 1;
 
@@ -98,9 +100,16 @@ function* readings(shown: Prompt, input: number, n: number): Step<readonly numbe
   return counts;
 }
 
-/** One hold of a leader joint, judged. */
+/** One hold of a leader joint: waits until it is still, but not for ever. */
 export function* hold(bench: Bench, joint: number): Step<Hold> {
-  const counts = yield* readings(prompt(['Hold still ...']), bench.inputOf[joint] as number, HOLD_READINGS);
+  let found = yield* heldFor(bench, joint, ['Hold still ...']);
+  for (let tries = 1; !found.still && found.why !== 'rail' && tries < HOLD_TRIES; tries++)
+    found = yield* heldFor(bench, joint, []);
+  return found;
+}
+
+function* heldFor(bench: Bench, joint: number, lines: readonly string[]): Step<Hold> {
+  const counts = yield* readings(prompt(lines), bench.inputOf[joint] as number, HOLD_READINGS);
   const found = judgeHold(counts, restNoise(bench, joint));
   const [lowest, highest] = bench.profiles.leader.counts;
   // At a rail nothing is measured: the pot is beyond its end, or the wiper has lost its track.

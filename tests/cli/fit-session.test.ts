@@ -168,9 +168,9 @@ describe('A session', () => {
     const ended = measure(load(), [], keeper(at), seat.table);
     const typed = typing([
       [/a number: that step/, inTurn('10', 'quit')],
-      [/^Angle of base/, inTurn('20', '20', '20', '20', '')],
+      [/^Angle of base/, inTurn('20', '20', '')],
     ]);
-    leader[0]?.go(20, 1.2);
+    leader[0]?.go(20, 3);
     expect(await play(clock, seat, ended, typed, 20)).toBe('quit');
     expect(seat.printed()).toContain('Not taken: it was still moving');
     expect(seat.printed()).toMatch(/Point 1: 22[56]\d\.\d counts at 20 deg/);
