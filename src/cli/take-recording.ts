@@ -73,7 +73,8 @@ export function recording(options: RecordingOptions, say: (text: string) => void
   const roll = (prepared: { readonly name: string; readonly disk: TakeDisk }, fromStart: boolean, made: Made): void => {
     if (source === null) return;
     const { drive, events$, clock } = source;
-    const startUs = clock.nowUs();
+    // Stamps are due instants, earlier than now: none is earlier than that of the event last handled.
+    const startUs = drive.common.nowUs[0] as number;
     const writer = takeWriter(prepared.name, headerAt(startUs, fromStart, made), profiles, prepared.disk);
     const begun = recorder(drive, events$, clock, writer, startUs);
     running = { name: prepared.name, recorder: begun, cancel: watch(begun, clock) };

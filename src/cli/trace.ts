@@ -34,23 +34,38 @@ const STEP_US = 10 * US_PER_S;
  * Readings in, commands out, in portions that wait until the last one has left.
  * @param csv afterwards it holds the mistakes, if there are any
  */
-async function* tracing(
+export function tracing(
   rig: CompiledRig,
   from: readonly (Float64Array | null)[],
   input: AsyncIterable<string>,
   csv: ReadingsCsv,
 ): AsyncGenerator<string> {
-  const commands = commandsCsv(rig);
-  let run: Trace | null = null;
-  let nowUs = 0;
-  const pieces = async function* (): AsyncGenerator<Iterable<{ tUs: number; counts: Float64Array }>> {
+  const pieces = async function* (): AsyncGenerator<Iterable<TimedCounts>> {
     for await (const text of input) {
       yield csv.push(text);
       if (csv.hopeless) return;
     }
     yield csv.end();
   };
-  for await (const readings of pieces()) {
+  return traced(rig, from, pieces(), () => csv.mistakes.length === 0);
+}
+
+/** One reading, reused. */
+export interface TimedCounts {
+  readonly tUs: number;
+  readonly counts: Float64Array;
+}
+
+async function* traced(
+  rig: CompiledRig,
+  from: readonly (Float64Array | null)[],
+  pieces: AsyncIterable<Iterable<TimedCounts>> | Iterable<Iterable<TimedCounts>>,
+  isSound: () => boolean,
+): AsyncGenerator<string> {
+  const commands = commandsCsv(rig);
+  let run: Trace | null = null;
+  let nowUs = 0;
+  for await (const readings of pieces) {
     for (const { tUs, counts } of readings) {
       if (run === null) nowUs = tUs;
       run ??= trace(rig, from, tUs, commands.take);
@@ -63,9 +78,9 @@ async function* tracing(
       if (commands.length > PORTION_CHARACTERS) yield commands.rows();
     }
   }
-  if (csv.mistakes.length === 0) run?.end();
+  if (isSound()) run?.end();
   // Of readings that were refused from the start there is nothing to show, not even a header.
-  if (run !== null || csv.mistakes.length === 0) yield commands.rows();
+  if (run !== null || isSound()) yield commands.rows();
 }
 
 /** Runs recorded readings through a rig's maps; resolves with the exit status. */
@@ -77,6 +92,7 @@ export async function traceFiles(file: string, options: TraceOptions, world: Tra
   if ('mistakes' in poses) return refused(world, poses.mistakes);
   if (options.in === undefined && world.stdin === null)
     return refused(world, ['nothing to read; name a file with --in, or pipe readings in']);
+  if (options.in?.endsWith('.arrows') === true) return traceTake(rig, poses.from, options.in, options.out, world);
   const named = options.in ?? '(standard input)';
   const input = options.in === undefined ? (world.stdin as Readable) : createReadStream(options.in);
   input.setEncoding('utf8');
@@ -91,6 +107,35 @@ export async function traceFiles(file: string, options: TraceOptions, world: Tra
   if (csv.mistakes.length === 0) return 0;
   const more = csv.mistakes.length >= MISTAKES_MAX ? ['and perhaps more; mend these first'] : [];
   return refused(world, [...csv.mistakes.map((mistake) => csvMistakeLine(named, mistake)), ...more]);
+}
+
+/** A take's readings through the present profiles; a rig's input that the take does not have is silent. */
+async function traceTake(
+  rig: CompiledRig,
+  from: readonly (Float64Array | null)[],
+  file: string,
+  out: string | undefined,
+  world: TraceWorld,
+): Promise<number> {
+  const { openTake, readingsOf, takeSentence } = await import('../take/readings.ts');
+  const take = openTake(file);
+  if ('code' in take) return refused(world, [takeSentence(take)]);
+  const names = rig.boards.find(({ leads }) => leads)?.plan.inputs?.names ?? [];
+  const readings = readingsOf(take, names);
+  if ('code' in readings) return refused(world, [takeSentence(readings)]);
+  const output = out === undefined ? world.stdout : createWriteStream(out);
+  try {
+    await pipeline(
+      traced(rig, from, [readings], () => true),
+      output,
+      { end: out !== undefined },
+    );
+    return 0;
+  } catch (fault) {
+    return failed(fault as NodeJS.ErrnoException, world);
+  } finally {
+    take.close();
+  }
 }
 
 function refused({ say }: TraceWorld, lines: readonly string[]): 2 {
@@ -119,7 +164,7 @@ export function traceCommand(world: () => TraceWorld = realTraceWorld): CommandU
   return new Command('trace')
     .description('push recorded readings through the maps of a rig, offline: CSV in, CSV out')
     .argument('<rig>', 'the rig file')
-    .option('--in <file>', 'readings; standard input when left out')
+    .option('--in <file>', 'readings, or a take (.arrows); standard input when left out')
     .option('--out <file>', 'commands; standard output when left out')
     .option('--from <pose>', 'where followers start: a named pose, or joint=degrees with commas')
     .addHelpText('after', EXPLAINED)

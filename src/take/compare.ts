@@ -46,7 +46,9 @@ export function* compare(a: Take, b: Take): Work<Comparison> {
       'nothing moves in it that could be compared',
     );
 
-  const { path } = warp(left, right, width, BAND);
+  // A demonstration is what the hand did: where both takes know that, followers only follow.
+  const led = tracks.filter(({ follower }) => follower[0] < 0).length;
+  const { path } = warp(columnsOf(left, width, led), columnsOf(right, width, led), led === 0 ? width : led, BAND);
   yield 0.9;
   const squares = new Float64Array(width);
   const worst = new Float64Array(width);
@@ -77,6 +79,14 @@ export function* compare(a: Take, b: Take): Work<Comparison> {
     })),
     tips: tipsOf(a, b, tracks, left, right, path),
   };
+}
+
+/** The first `count` columns of a table; all of them where that is none. */
+function columnsOf(table: Float64Array, width: number, count: number): Float64Array {
+  if (count === 0) return table;
+  const out = new Float64Array((table.length / width) * count);
+  for (let i = 0; i < out.length; i++) out[i] = table[Math.floor(i / count) * width + (i % count)] as number;
+  return out;
 }
 
 /** A joint that both takes have; `of` reads it from a row of either. */

@@ -1,0 +1,172 @@
+import { existsSync, readdirSync, readFileSync, writeFileSync } from 'node:fs';
+import { join } from 'node:path';
+import { Writable } from 'node:stream';
+import { afterEach, beforeAll, describe, expect, it } from 'vitest';
+import { takeCommand } from '../../src/cli/take.ts';
+import type { TakeWorld } from '../../src/cli/take-world.ts';
+import { traceFiles } from '../../src/cli/trace.ts';
+import { virtualClock } from '../../src/clock/virtual.ts';
+import { filmed, takesFolderForTests, TWO_ARMS } from '../take/studio.ts';
+import { rigYaml } from '../bridge/performance.ts';
+
+const folder = takesFolderForTests();
+
+beforeAll(async () => {
+  for (const [name, s] of [
+    ['bow', 6],
+    ['bow-again', 7],
+  ] as const) {
+    const { performance, recorder } = filmed(folder, name);
+    performance.run(2_000_000);
+    recorder.mark('down');
+    performance.live.key('mark');
+    performance.run(s * 1_000_000 - 2_000_000);
+    await recorder.end();
+  }
+});
+
+afterEach(() => {
+  process.exitCode = undefined;
+});
+
+interface Ran {
+  readonly status: number;
+  readonly out: string;
+  readonly err: string;
+}
+
+/** Time passes by itself: whoever waits is woken at once. */
+function worldOf(text: { out: string; err: string }, interruptAfter = Number.POSITIVE_INFINITY): TakeWorld {
+  const clock = virtualClock(0);
+  let looks = 0;
+  let leave: () => void = () => {};
+  return {
+    clock: {
+      nowUs: () => {
+        looks++;
+        if (looks > interruptAfter) leave();
+        clock.runTo(clock.nowUs() + 50_000);
+        return clock.nowUs();
+      },
+      at: (atUs, wake) => {
+        const cancel = clock.at(atUs, wake);
+        queueMicrotask(() => clock.runTo(atUs));
+        return cancel;
+      },
+    },
+    env: { XDG_DATA_HOME: '/nowhere' },
+    out: { write: (bytes) => (text.out += typeof bytes === 'string' ? bytes : Buffer.from(bytes).toString()) },
+    err: { write: (more) => (text.err += more) },
+    watched: true,
+    onInterrupt(call) {
+      leave = call;
+      return () => {};
+    },
+  };
+}
+
+async function take(args: string, interruptAfter?: number): Promise<Ran> {
+  const text = { out: '', err: '' };
+  const command = takeCommand(() => worldOf(text, interruptAfter)).exitOverride();
+  await command.parseAsync([...args.split(' '), '--takes', folder], { from: 'user' });
+  return { status: Number(process.exitCode ?? 0), ...text };
+}
+
+describe('eidograph take', () => {
+  it('lists takes with their length, rows, marks and parents', async () => {
+    await take('trim bow --from down --as bow-end');
+    const { out } = await take('list --json');
+    const { takes } = JSON.parse(out) as { takes: Record<string, unknown>[] };
+    expect(takes.map((one) => [one['take'], one['made_by'], one['parents'], one['marks']])).toEqual([
+      ['bow', 'record', [], 1],
+      ['bow-again', 'record', [], 1],
+      ['bow-end', 'trim', ['bow'], 1],
+    ]);
+    expect((await take('list')).out).toMatch(/bow-end +4\.0 s .*trim of bow/);
+  });
+
+  it('shows what a take holds, for people and for programs', async () => {
+    const shown = JSON.parse((await take('show bow --json')).out) as Record<string, unknown>;
+    expect(shown).toMatchObject({ take: 'bow', duration_s: 6, marks: [{ mark: 'down', t_s: 2 }] });
+    expect(shown['rows']).toBeGreaterThan(1000);
+    expect((await take('show bow')).out).toMatch(
+      /bow: recorded from rehearsal, 6\.00 s[^]*follower wren: \d+ commands/,
+    );
+  });
+
+  it('compares two takes', async () => {
+    const { joints } = JSON.parse((await take('compare bow bow-again --json')).out) as {
+      joints: { joint: string; rms_deg: number }[];
+    };
+    expect(joints[0]).toMatchObject({ joint: 'leader.base' });
+    // The same simulated hand, a second longer.
+    expect((await take('compare bow bow')).out).toMatch(/leader\.base +0\.00 deg rms/);
+  });
+
+  it('exports to a file, whole, and never over one that is there', async () => {
+    const file = join(folder, 'bow.csv');
+    expect((await take(`export bow --out ${file} --columns t_us,wren.*`)).status).toBe(0);
+    const lines = readFileSync(file, 'utf8').split('\n');
+    expect(lines[0]).toMatch(/^t_us,wren\.commanded,wren\.state/);
+    const again = await take(`export bow --out ${file}`);
+    expect([again.status, again.err]).toEqual([2, expect.stringContaining('it is there already')]);
+    expect(readFileSync(file, 'utf8').split('\n')).toHaveLength(lines.length);
+    expect((await take('export bow --columns wing.*')).status).toBe(2);
+  });
+
+  it('leaves no half file when it is interrupted', async () => {
+    const file = join(folder, 'half.parquet');
+    const { status } = await take(`export bow bow-again --out ${file}`, 2);
+    expect(status).toBe(130);
+    expect(existsSync(file)).toBe(false);
+    expect(readdirSync(folder).filter((name) => name.startsWith('.'))).toEqual([]);
+  });
+
+  it.each([
+    ['show nothing', /nothing: there is no such take in .*take list/],
+    ['show ../bow', /this is no name for a take; use letters/],
+    ['trim bow --from 3s --to 2s --as x', /3 s to 2 s is no stretch of its 6 s/],
+    ['trim bow --from never --as x', /it has no mark "never"/],
+    ['trim bow --as bow-again', /there is a take of this name; choose another name/],
+    ['splice bow bow --as a/b', /this is no name for a take/],
+  ])('refuses "%s" with a remedy and status 2', async (args, sentence) => {
+    const { status, err } = await take(args);
+    expect([status, err]).toEqual([2, expect.stringMatching(sentence)]);
+  });
+
+  it('opens a take that was cut, and says so', async () => {
+    const bytes = readFileSync(join(folder, 'bow.arrows'));
+    writeFileSync(join(folder, 'cut.arrows'), bytes.subarray(0, bytes.length * 0.6));
+    const { status, err, out } = await take('show cut');
+    expect(status).toBe(0);
+    expect(err).toMatch(/cut: it was cut off after \d\.\d\d s: its last \d+ bytes are no whole batch/);
+    expect(out).toMatch(/cut: recorded from rehearsal/);
+  });
+});
+
+describe('eidograph trace', () => {
+  it('reads a take: the commands of its readings on a rig', async () => {
+    const rig = join(folder, 'rig.yaml');
+    writeFileSync(
+      rig,
+      rigYaml([
+        ['wren', 'sim:arm?name=wren'],
+        ['stork', 'sim:arm?name=stork'],
+      ]),
+    );
+    let out = '';
+    const stdout = new Writable({
+      write(bytes: Buffer, _, done) {
+        out += bytes.toString();
+        done();
+      },
+    });
+    const said: string[] = [];
+    const options = { in: join(folder, 'bow.arrows'), out: undefined, from: undefined };
+    const status = await traceFiles(rig, options, { stdin: null, stdout, say: (text) => void said.push(text) });
+    expect([status, said]).toEqual([0, []]);
+    const rows = out.trim().split('\n');
+    expect(rows[0]).toBe('t_ms,follower,state,joint,target_deg,angle_deg,pulse_us');
+    expect(rows.length).toBeGreaterThan(2 * TWO_ARMS.plan.followers.length * 200);
+  });
+});
