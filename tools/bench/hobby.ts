@@ -1,5 +1,5 @@
 import type { FollowerSpec } from '../../src/follower/spec.ts';
-import { LEADER_POINTS, PERIOD_US, type Scene, SERVO_POINTS } from './scene.ts';
+import { LEADER_POINTS, PERIOD_US, type Scene } from './scene.ts';
 import type { Way } from './way.ts';
 
 /**
@@ -24,10 +24,8 @@ export function hobby(scene: Scene): Way {
       robot.angles = robot.angles.map((angle, j) =>
         approach(angle, targets[j] as number, robot.spec.joints[j]?.speedRadS ?? 0),
       );
-      const pulses = robot.angles.map((angle) =>
-        Math.round(mapRange(angle, SERVO_POINTS[0][0], SERVO_POINTS[1][0], SERVO_POINTS[0][1], SERVO_POINTS[1][1])),
-      );
-      sent[f] = Buffer.from(`S${pulses.join(',')}\n`);
+      // Degrees with one decimal, as people read them.
+      sent[f] = Buffer.from(`S${robot.angles.map((angle) => ((angle * 180) / Math.PI).toFixed(1)).join(',')}\n`);
       commands++;
     });
   };

@@ -40,7 +40,7 @@ export function scene(followers: number, wire: 'frames' | 'lines'): Scene {
 }
 
 function lineTexts(): Extract<WireChoice, { name: 'lines' }>['lines'] {
-  const template = `S${INPUT_NAMES.map((name) => `{${name}.us}`).join(',')}\n`;
+  const template = `S${INPUT_NAMES.map((name) => `{${name}.deg:1}`).join(',')}\n`;
   return { separator: null, sends: 'always', checksum: null, template, limp: null, powerOn: null, powerOff: null };
 }
 
