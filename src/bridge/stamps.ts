@@ -35,7 +35,9 @@ export function stamps(inputs: number, emit: (event: Stamped) => void): Stamps {
 
   const flush = (nowUs: number): void => {
     if (held === 0) return;
-    if (!Number.isNaN(before.us)) {
+    const lastBoardUs = boardUs[held - 1] as number;
+    // The median is only for boards without a clock, and the dearest part of a chunk.
+    if (Number.isNaN(lastBoardUs) && !Number.isNaN(before.us)) {
       spacing[0] = (nowUs - before.us) / held;
       median.push(0, spacing, interval);
     }
@@ -43,7 +45,6 @@ export function stamps(inputs: number, emit: (event: Stamped) => void): Stamps {
     before.us = nowUs;
     const count = held;
     held = 0;
-    const lastBoardUs = boardUs[count - 1] as number;
     for (let i = 0; i < count; i++) {
       const event = pool[i] as Pooled;
       const byBoard = lastBoardUs - (boardUs[i] as number);
