@@ -1,7 +1,7 @@
 import { expect } from 'vitest';
 import type { Pins, Pulse } from './pins.ts';
 import { AGE_US, COMMAND_US, FRAME_US, KNOWN_US, NEAR_US, US_PER_DEG } from './timing.ts';
-import { calm, effort, pulseAt, settledUs, trainOf } from './trains.ts';
+import { calm, decelerationOf, effort, pulseAt, settledUs, trainOf } from './trains.ts';
 import type { PulseLimits } from './trains.ts';
 
 /** A joint of 60 deg/s and 240 deg/s^2, as pulses show it. */
@@ -15,6 +15,9 @@ export const BRAKING_TIME_US = 250_000;
 /** Calm pulses this close are one position; a brake needs sqrt(2 * 2 / (240 * 10.4)) = 40 ms for the last of it. */
 const STILL_US = 2;
 export const STILL_TIME_US = 40_000;
+
+/** Rounding, and a pulse that has missed its command, make this much of a brake's hardness uncertain, as a share. */
+const HARDNESS_ERROR = 0.15;
 
 /** From an instant on the servo is asked for one and the same position. */
 export function expectStill(board: Pins, pin: number, fromUs: number): void {
@@ -61,12 +64,15 @@ export function expectBraking(
   return stoodUs;
 }
 
-/** The same, and then it stays where it is. */
+/** The same, as hard as it may, and then it stays where it is. */
 export function expectBrakeAndHold(
   board: Pins,
   pin: number,
   calledUs: number,
   heardUs: readonly [number, number],
 ): void {
-  expectStill(board, pin, expectBraking(board, pin, calledUs, heardUs) + FRAME_US);
+  const stoodUs = expectBraking(board, pin, calledUs, heardUs);
+  const hardness = decelerationOf(calm(trainOf(board, pin, calledUs))) / ACCEL_US_S2;
+  expect(Math.abs(hardness - 1)).toBeLessThan(HARDNESS_ERROR);
+  expectStill(board, pin, stoodUs + FRAME_US);
 }

@@ -31,6 +31,23 @@ export function unsteadiness(train: readonly Pulse[], usPerS: number): number {
 }
 
 /**
+ * How hard a train brakes to its end, in microseconds of pulse a second squared: with s = A t^2 / 2 still to go, the root of
+ * the way left falls evenly with time, by sqrt(A / 2). Ways of 4 to 60 us count: less is rounding, more is not all braking.
+ */
+export function decelerationOf(train: readonly Pulse[]): number {
+  const end = train.at(-1)?.widthUs ?? Number.NaN;
+  const points = train.flatMap(({ startUs, widthUs }) => {
+    const left = Math.abs(end - widthUs);
+    return left < 4 || left > 60 ? [] : [[startUs * 1e-6, Math.sqrt(left)] as const];
+  });
+  const mean = (axis: 0 | 1): number => points.reduce((sum, point) => sum + point[axis], 0) / points.length;
+  const [t0, root0] = [mean(0), mean(1)];
+  const along = points.reduce((sum, [t, root]) => sum + (t - t0) * (root - root0), 0);
+  const spread = points.reduce((sum, [t]) => sum + (t - t0) ** 2, 0);
+  return 2 * (along / spread) ** 2;
+}
+
+/**
  * Takes out what one late interrupt does to one pulse (some microseconds, now and then): a median of three, which
  * leaves a rising or falling train as it is.
  */
