@@ -20,7 +20,7 @@ export function rigOf(yaml: string): CompiledRig {
 }
 
 /** A follower of two joints at 50 Hz, as a list entry of a rig. */
-export function followerYaml(name: string, port: string, extra = ''): string {
+function followerYaml(name: string, port: string, extra = ''): string {
   return `
   - follower: ${name}
     port: ${port}

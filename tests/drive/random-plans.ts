@@ -17,7 +17,7 @@ const smooth = fc.option(
 /** `join` is left out: it is a key that the laws could not see. */
 const duties = fc.subarray(['enable', 'hold', 'clutch', 'stop'] as const);
 
-export const randomLeader: fc.Arbitrary<LeaderSpec> = fc
+const randomLeader: fc.Arbitrary<LeaderSpec> = fc
   .record({
     joints: fc.array(fc.record({ despike: fc.constantFrom(1, 3, 5), smooth }), { minLength: 1, maxLength: 3 }),
     duties,

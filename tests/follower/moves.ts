@@ -2,13 +2,6 @@ import { type Governor, governor } from '../../src/follower/governor.ts';
 import { random } from '../../src/sim/random.ts';
 import type { Accepted, MotionLimits } from '../motion-laws.ts';
 
-/** One joint's way from standing at 0 to standing at `target`, inside its limits. */
-export interface Move {
-  readonly target: number;
-  readonly speed: number;
-  readonly accel: number;
-}
-
 /** What moves one joint towards a target: the governor, or something a test holds against it. */
 export interface Mover {
   readonly x: number;

@@ -1,5 +1,5 @@
 import { describe, expect, it } from 'vitest';
-import { EVENTS, nextState, type State, type StateEvent, STATES } from '../../src/follower/states.ts';
+import { EVENTS, nextState, type State, type StateEvent, STATES, TRANSITIONS } from '../../src/follower/states.ts';
 
 /**
  * Typed here once more, from what an operator is promised: a row a state, a column an event, a dot where the state
@@ -40,6 +40,10 @@ describe('the state table', () => {
 });
 
 describe('the laws of the state table', () => {
+  it('an entry leads somewhere else: what changes nothing is left out', () => {
+    for (const state of STATES) expect(Object.values(TRANSITIONS[state])).not.toContain(state);
+  });
+
   const leadsTo = (state: State, into: State): StateEvent[] =>
     EVENTS.filter((event) => state !== into && nextState(state, event) === into);
 

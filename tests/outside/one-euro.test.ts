@@ -40,7 +40,7 @@ function ours(cutoffHz: number, beta: number, slopeCutoffHz: number): Filter {
   const cell = new Float64Array(1);
   return (tS, value) => {
     cell[0] = value;
-    filter.push(0, Math.round(tS * 1e6), cell, cell);
+    filter.push(0, Float64Array.of(Math.round(tS * 1e6)), cell, cell);
     return cell[0] as number;
   };
 }
