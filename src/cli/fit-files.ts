@@ -13,6 +13,8 @@ export interface FitFiles {
   now(): Calendar;
   /** Puts a change in its file's place, whole or not at all, and keeps the old one beside it with a time stamp. */
   replace(change: Change): Replaced | ReplaceFault;
+  /** Puts back what stood there before a change. */
+  takeBack(change: Change): void;
   /** A sentence when it cannot; null when done. */
   writeNew(file: string, text: string): string | null;
 }
@@ -26,6 +28,7 @@ export function filesOnDisk(now: () => Calendar = calendarNow): FitFiles {
       const { date, time } = now();
       return replaceFile(file, was, text, `${date}T${time}`);
     },
+    takeBack: ({ file, was, text }) => void replaceFile(file, text, was, false),
     writeNew(file, text) {
       try {
         writeFileSync(file, text);

@@ -107,9 +107,11 @@ function shown(changes: readonly Change[], { out, err }: Printer, json: boolean)
 }
 
 function written(changes: readonly Change[], files: FitFiles, err: (text: string) => void): number {
-  for (const change of changes) {
+  for (const [i, change] of changes.entries()) {
     const done = files.replace(change);
     if ('wrong' in done) {
+      // All files or none: a leader fitted anew and a follower that is not would not belong together.
+      for (const former of changes.slice(0, i)) files.takeBack(former);
       err(`error: ${done.wrong}; ${done.right}\n`);
       return 1;
     }

@@ -242,6 +242,38 @@ describe('Bad captures', () => {
   });
 });
 
+it('A file that cannot be written takes the others back', () => {
+  files.write('wren.yaml', WREN);
+  rig = files.write('bench.yaml', 'rig: bench\nleader: leader.yaml\nfollowers: [wren.yaml]\n');
+  const at = files.write(
+    'captures.csv',
+    `${HEADER}${points('base')}match,wren,base,100,700,\nmatch,wren,base,500,1500,\nmatch,wren,base,900,2300,\n`,
+  );
+  const disk = filesOnDisk(() => ({ date: '2026-12-01', time: '20-15-00' }));
+  const err: string[] = [];
+  const status = fitFromCaptures(
+    rig,
+    {
+      from: at,
+      check: undefined,
+      json: false,
+      dryRun: false,
+      partly: false,
+      report: undefined,
+      wish: { jitterM: 1, lagS: 1 },
+    },
+    {
+      ...disk,
+      replace: (change) =>
+        change.file.endsWith('wren.yaml') ? { wrong: 'the disk is full', right: 'make room' } : disk.replace(change),
+    },
+    { out: () => {}, err: (text) => void err.push(text) },
+  );
+  expect(status).toBe(1);
+  expect(err.join('')).toContain('error: the disk is full; make room');
+  expect([read('leader.yaml'), read('wren.yaml')]).toEqual([LEADER, WREN]);
+});
+
 describe('eidograph fit --check', () => {
   it('says of each joint whether it has drifted, and ends with 1 if one has', () => {
     const good = fit(HEADER + points('base'), { from: undefined, check: files.path('captures.csv') });
