@@ -30,7 +30,7 @@ export interface ArmMotion {
 /** Reduced speed of ISO 10218-1:2025, 5.5.3 (as quoted by gt-engineering.it): a borrowed figure, no claim of conformity. */
 export const REDUCED_SPEED_MM_S = 250;
 
-export function stoppingRad({ speedRadS, accelRadS2 }: FollowerJointSpec): number {
+function stoppingRad({ speedRadS, accelRadS2 }: FollowerJointSpec): number {
   return speedRadS ** 2 / (2 * accelRadS2);
 }
 

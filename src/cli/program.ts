@@ -1,6 +1,7 @@
 import { readFileSync } from 'node:fs';
 import { Command, CommanderError } from '@commander-js/extra-typings';
 import type { CommandUnknownOpts } from '@commander-js/extra-typings';
+import { balanceCommand } from './balance.ts';
 import { checkCommand } from './check.ts';
 import { demoCommand } from './demo.ts';
 import { fitCommand } from './fit.ts';
@@ -15,6 +16,7 @@ const COMMANDS = [
   runCommand,
   portsCommand,
   checkCommand,
+  balanceCommand,
   fitCommand,
   traceCommand,
   takeCommand,

@@ -6,7 +6,7 @@ import { edited, RIG, rigIn, STORK } from '../rig/memory.ts';
  * The stork of the rig tests with an arm: shoulder 100 mm above the floor, 300 mm and 200 mm of uniform links, 50 g at
  * the tip. Shoulder -60 to 85 degrees and elbow -50 to 5, right-handed about y: at 85 and 5 the forearm is level.
  */
-export const ARM = `arm:
+const ARM = `arm:
   base: { height_mm: 100, mass_g: 2000, footprint_mm: [[100, 100], [-100, 100], [-100, -100], [100, -100]], friction: 0.5 }
   links:
     - { joint: shoulder, axis: y, to_mm: [0, 0, 300], mass_g: 200, motor: { stall_nm: 4, stall_a: 2 }, drag_nm: 0.1 }
