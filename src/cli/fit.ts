@@ -1,6 +1,7 @@
 import { Command, InvalidArgumentError } from '@commander-js/extra-typings';
 import type { CommandUnknownOpts } from '@commander-js/extra-typings';
 import { existsSync } from 'node:fs';
+import { CAUTIONS } from '../bridge/words.ts';
 import { realClock } from '../clock/clock.ts';
 import type { CompiledRig } from '../rig/compiled.ts';
 import { loadRig } from '../rig/load.ts';
@@ -84,6 +85,12 @@ function quantityOption(unit: string): (text: string) => number {
 }
 
 const EXPLAINED = `
+Without --from or --check it measures at this terminal, step by step: horns, wiring, noise at rest,
+sweeps, points at known angles, servo travel, and the follower set alike. Every capture is kept as it
+is made; list, redo, skip and quit are heard at every question, and the same command goes on later.
+
+${CAUTIONS.join('\n')}
+
 Captures are CSV with the columns step,arm,joint,counts,pulse_us,known_deg (more are allowed); the
 steps are leader-still, leader-sweep, leader-point, servo-point and match.
 
