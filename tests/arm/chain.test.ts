@@ -6,7 +6,7 @@ import type { Vec3 } from '../../src/arm/spec.ts';
 import { tipMotion } from '../../src/arm/tip-motion.ts';
 import { angles, anyArm, arm, DEG, distance, link, planar, tipAt, X, Y, Z } from './arms.ts';
 
-const close = (actual: ArrayLike<number>, expected: readonly number[], digits = 12): void => {
+const expectClose = (actual: ArrayLike<number>, expected: readonly number[], digits = 12): void => {
   expect(actual).toHaveLength(expected.length);
   for (const [k, value] of expected.entries()) expect(actual[k], `entry ${k}`).toBeCloseTo(value, digits);
 };
@@ -19,34 +19,38 @@ describe('a chain of links', () => {
       [Y, Z, X],
       [X, Y, Z],
     ] as const) {
-      close(tipAt(arm([link(0, axis, to)]), [90 * DEG]), [...turned]);
+      expectClose(tipAt(arm([link(0, axis, to)]), [90 * DEG]), [...turned]);
     }
   });
 
   it('adds the turns of its joints: the tip of a planar arm is l1 c1 + l2 c12, l1 s1 + l2 s12', () => {
     const tip = tipAt(planar([0.4, 0.3]), [0.5, 0.9]);
-    close(tip, [0.4 * Math.cos(0.5) + 0.3 * Math.cos(1.4), 0, 0.4 * Math.sin(0.5) + 0.3 * Math.sin(1.4)]);
+    expectClose(tip, [0.4 * Math.cos(0.5) + 0.3 * Math.cos(1.4), 0, 0.4 * Math.sin(0.5) + 0.3 * Math.sin(1.4)]);
   });
 
   it('stands at its height, and a base tilted about x, then about y, carries it along', () => {
     const straight = [link(0, Z, [0, 0, 0.5])];
-    close(tipAt(arm(straight, { heightM: 0.12 }), [1]), [0, 0, 0.62]);
+    expectClose(tipAt(arm(straight, { heightM: 0.12 }), [1]), [0, 0, 0.62]);
     // By hand: from the ceiling it points down; tilted 90 degrees about x, up becomes right (-y); then about y that stays.
-    close(tipAt(arm(straight, { heightM: 3, tiltRad: [Math.PI, 0] }), [1]), [0, 0, 2.5]);
-    close(tipAt(arm(straight, { heightM: 3, tiltRad: [Math.PI / 2, 0] }), [1]), [0, -0.5, 3]);
-    close(tipAt(arm(straight, { heightM: 3, tiltRad: [Math.PI / 2, Math.PI / 2] }), [1]), [0, -0.5, 3]);
-    close(tipAt(arm(straight, { heightM: 3, tiltRad: [0, Math.PI / 2] }), [1]), [0.5, 0, 3]);
+    expectClose(tipAt(arm(straight, { heightM: 3, tiltRad: [Math.PI, 0] }), [1]), [0, 0, 2.5]);
+    expectClose(tipAt(arm(straight, { heightM: 3, tiltRad: [Math.PI / 2, 0] }), [1]), [0, -0.5, 3]);
+    expectClose(tipAt(arm(straight, { heightM: 3, tiltRad: [Math.PI / 2, Math.PI / 2] }), [1]), [0, -0.5, 3]);
+    expectClose(tipAt(arm(straight, { heightM: 3, tiltRad: [0, Math.PI / 2] }), [1]), [0.5, 0, 3]);
   });
 
   it('takes its angles by the profile’s joint, in whatever order, and leaves out joints without a link', () => {
     const mixed = arm([link(2, Z, [0, 0, 0.1]), link(0, [0, -1, 0], [0.3, 0, 0])]);
-    close(tipAt(mixed, [30 * DEG, 999, 90 * DEG]), [0, 0.3 * Math.cos(30 * DEG), 0.1 + 0.3 * Math.sin(30 * DEG)]);
+    expectClose(tipAt(mixed, [30 * DEG, 999, 90 * DEG]), [0, 0.3 * Math.cos(30 * DEG), 0.1 + 0.3 * Math.sin(30 * DEG)]);
   });
 
   it('turns alike about an axis that is written as a direction', () => {
     // A hair beside z: the general rotation against the one about z.
     const near: Vec3 = [1e-9, 0, 1];
-    close(tipAt(arm([link(0, near, [0.3, 0.1, 0.2])]), [0.7]), tipAt(arm([link(0, Z, [0.3, 0.1, 0.2])]), [0.7]), 8);
+    expectClose(
+      tipAt(arm([link(0, near, [0.3, 0.1, 0.2])]), [0.7]),
+      tipAt(arm([link(0, Z, [0.3, 0.1, 0.2])]), [0.7]),
+      8,
+    );
   });
 
   it('refuses an axis that is no unit vector', () => {
@@ -96,7 +100,7 @@ describe('the geometric Jacobian', () => {
             );
           const [ahead, behind] = [at(H), at(-H)];
           const slope = ahead.map((value, k) => (value - (behind[k] as number)) / (2 * H));
-          close(jacobian.subarray(3 * j, 3 * j + 3), slope, 7);
+          expectClose(jacobian.subarray(3 * j, 3 * j + 3), slope, 7);
         }
       }),
     );
@@ -124,7 +128,7 @@ describe('the geometric Jacobian', () => {
           const sum = [0, 1, 2].map((k) =>
             speeds.subarray(0, n).reduce((total, speed, i) => total + speed * (jacobian[3 * i + k] as number), 0),
           );
-          close(velocities.subarray(3 * end, 3 * end + 3), sum, 9);
+          expectClose(velocities.subarray(3 * end, 3 * end + 3), sum, 9);
         }
       }),
     );
@@ -172,7 +176,7 @@ describe('the tip as a function of some joints', () => {
     motion.pitch();
     // By hand: leaning 60 degrees from the vertical it looks up by 30, and falls as it leans on; turning does not matter.
     expect((motion.pitchRad[0] as number) / DEG).toBeCloseTo(30, 9);
-    close(motion.pitchSlope, [0, -1]);
+    expectClose(motion.pitchSlope, [0, -1]);
   });
 });
 

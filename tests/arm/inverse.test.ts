@@ -346,15 +346,17 @@ describe('a target that moves, at 50 and at 200 commands a second', () => {
         const q = pose.slice();
         const before = q.slice();
         const step = new Float64Array(n);
+        let shake = 0;
         for (let call = 0; call < 500; call++) {
           before.set(q);
           solver.solve(Float64Array.from(target), pose, q);
           for (let j = 0; j < n; j++) {
             const moved = (q[j] as number) - (before[j] as number);
-            if (call >= 400) expect(Math.abs(moved - (step[j] as number))).toBeLessThan(1e-3);
+            if (call >= 400) shake = Math.max(shake, Math.abs(moved - (step[j] as number)));
             step[j] = moved;
           }
         }
+        expect(shake).toBeLessThan(1e-3);
       }),
       { numRuns: 40, endOnFailure: true },
     );
