@@ -40,8 +40,11 @@ function motionWarnings(profile: FollowerProfile, checked: CheckedFollower): rea
   for (const { joint, clipped_deg, servo_span_deg, range_deg } of joints) {
     if (clipped_deg === null || (clipped_deg[0] === 0 && clipped_deg[1] === 0)) continue;
     const isServo = range_deg[1] - range_deg[0] >= servo_span_deg - SPAN_SLACK_DEG;
-    if (isServo)
-      said.push(`${joint} clips the leader's travel where its servo ends, after ${fixed(servo_span_deg, 0)} degrees`);
+    if (!isServo) continue;
+    const short = servo_span_deg < NOMINAL_DEG ? ', short of 180 as servos often are' : '';
+    said.push(
+      `${joint} clips the leader's travel where its servo ends, after ${fixed(servo_span_deg, 0)} degrees${short}`,
+    );
   }
   if (on_lost_pulse === 'unknown' && falling.length > 0)
     said.push(
@@ -58,6 +61,8 @@ function motionWarnings(profile: FollowerProfile, checked: CheckedFollower): rea
   return said;
 }
 
+/** What hobby servos are sold as; many turn less (common practice, no source). */
+const NOMINAL_DEG = 180;
 /** A range that uses all of the servo's points, up to this much. */
 const SPAN_SLACK_DEG = 0.5;
 

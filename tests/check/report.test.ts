@@ -82,7 +82,9 @@ describe('the share of the leader’s travel that a joint follows', () => {
       ['servo: { channel: 5, points: [[-90, 560], [90, 2440]] }', `servo: { channel: 5, points: ${short} }`],
       ['range_deg: [-60, 85]', 'range_deg: [-80, 80]'],
     ]);
-    expect(warnings).toContain("stork: shoulder clips the leader's travel where its servo ends, after 160 degrees");
+    expect(warnings).toContain(
+      "stork: shoulder clips the leader's travel where its servo ends, after 160 degrees, short of 180 as servos often are",
+    );
   });
 });
 
@@ -248,6 +250,25 @@ describe('the load of a joint', () => {
     const { load_worst_nm, load_worst_with_payload } = joint('shoulder', heavy);
     expect(load_worst_with_payload).toBe(false);
     expect(load_worst_nm).toBeGreaterThan(G * (0.12 * SIN85 - 0.01) - 1e-9);
+  });
+
+  it('is not looked for where a keep-out never lets the arm go', () => {
+    // Forward beyond 250 mm is kept out: the arm may only lie back, to -60 and -30 degrees about the shoulder and all.
+    const { load_worst_nm, load_worst_pose_deg } = joint('shoulder', [
+      ['rate_hz: 50', 'keep_out: [{ box_mm: [[250, -100, 0], [600, 100, 400]] }]'],
+    ]);
+    const back = G * (0.075 * Math.sin(60 * RAD) + 0.02);
+    expect(load_worst_nm).toBeCloseTo(back, 4);
+    expect(load_worst_pose_deg).toEqual([-60, expect.closeTo(-30, 1)]);
+  });
+
+  it('shows joints that do not matter at rest', () => {
+    // All that the shoulder carries is its own link: the elbow may be anywhere.
+    const bare = joint('shoulder', [
+      ['    - { joint: elbow, axis: y, to_mm: [0, 0, 200], mass_g: 100, motor: { stall_nm: 1, stall_a: 1 } }\n', ''],
+      ['    accel_deg_s2: 240\nservos', '    accel_deg_s2: 240\n    rest_deg: -7\nservos'],
+    ]);
+    expect(bare.load_worst_pose_deg).toEqual([85, -7]);
   });
 
   it('adds what it takes to speed up, and drag', () => {

@@ -120,6 +120,22 @@ describe('what an operator should know', () => {
       /on_lost_pulse is unknown, and shoulder and elbow would fall/,
     ],
     [
+      'a load that is held back',
+      [
+        ['rate_hz: 50', 'load: limit'],
+        ['stall_nm: 4,', 'stall_nm: 3,'],
+      ],
+      /^stork: load: limit holds shoulder back in a part of the range$/,
+    ],
+    [
+      'an acceleration that is held back',
+      [
+        ['rate_hz: 50', 'moving_load: limit'],
+        ['stall_nm: 4,', 'stall_nm: 4, use: 0.1,'],
+      ],
+      /^stork: moving_load: limit holds shoulder back in a part of the range$/,
+    ],
+    [
       'a large arm that moves unasked',
       [['stop_category: 2', 'wake: last']],
       /it goes to its last pose without asking, and reaches 500 mm/,

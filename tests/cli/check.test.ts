@@ -196,19 +196,29 @@ stork.yaml:9:11: joints[0].from: the leader has no joint sholder; did you mean s
   });
 });
 
+/** Three arms are searched over all their ranges: a second and a half alone, more beside other work. */
+const YARD_MS = 60_000;
+
 describe('the Lantern Yard', () => {
-  it('is within every limit', async () => {
-    const out: string[] = [];
-    await checkCommand({ write: (text) => out.push(text) }).parseAsync(['profiles/rigs/lantern-yard.yaml', '--json'], {
-      from: 'user',
-    });
-    const { over, followers } = JSON.parse(out.join(''));
-    expect([over, process.exitCode]).toEqual([[], 0]);
-    expect(followers.map(({ follower, scale }: { follower: string; scale: number }) => [follower, scale])).toEqual([
-      // 180, 600 and 1900 mm against 400 mm.
-      ['wren', 0.45],
-      ['heron', 1.5],
-      ['stork', 4.75],
-    ]);
-  });
+  it(
+    'is within every limit',
+    async () => {
+      const out: string[] = [];
+      await checkCommand({ write: (text) => out.push(text) }).parseAsync(
+        ['profiles/rigs/lantern-yard.yaml', '--json'],
+        {
+          from: 'user',
+        },
+      );
+      const { over, followers } = JSON.parse(out.join(''));
+      expect([over, process.exitCode]).toEqual([[], 0]);
+      expect(followers.map(({ follower, scale }: { follower: string; scale: number }) => [follower, scale])).toEqual([
+        // 180, 600 and 1900 mm against 400 mm.
+        ['wren', 0.45],
+        ['heron', 1.5],
+        ['stork', 4.75],
+      ]);
+    },
+    YARD_MS,
+  );
 });
