@@ -3,11 +3,16 @@ import { PERIOD_US, START_US } from './scene.ts';
 import { type BytesOutcome, median, quantile, type Task, type TimeOutcome } from './task.ts';
 import type { Way } from './way.ts';
 
-/** Readings timed together: the clock is read once for all of them. */
-const BATCH = 50;
+/** Readings timed together, at most: the clock is read once for all of them. */
+const BATCH_MAX = 50;
+/** No batch takes much longer, so that most fit between two interruptions of a busy machine. */
+const BATCH_US = 250;
+/** The warm-up comes in portions, with a pause for the compiler's thread after each. */
+const PORTIONS = 10;
+const COMPILER_MS = 10;
 /** Share of the readings that are timed one by one. */
 const SINGLES = 0.5;
-/** Readings whose allocations are estimated first, so that the measured ones fit the young generation. */
+/** Readings looked at first, to see how many fit a batch, or the young generation. */
 const PROBE = 20;
 /** Half of the semi-space the parent asks for. */
 const YOUNG_BYTES = 32 * 2 ** 20;
@@ -34,20 +39,19 @@ class Feed {
 
 export async function measureTime(task: Task, way: Way, chunks: readonly Uint8Array[]): Promise<TimeOutcome> {
   const feed = new Feed(way, chunks);
-  const singles = task.measure === 'paced' ? task.readings : Math.round(task.readings * SINGLES);
-  const batches = Math.floor((task.readings - singles) / BATCH);
-  const batchUs = new Float64Array(batches);
-  const singleUs = new Float64Array(singles);
   const pauses = watchGc();
-  feed.push(task.warmUp);
-  // Compilations that are waiting for the main thread are taken over now, not in the midst of the measured ones.
-  await turn();
+  await warm(feed, task.warmUp);
+  const singles = task.measure === 'paced' ? task.readings : Math.round(task.readings * SINGLES);
+  const batch = batchFor(feed);
+  const batchUs = new Float64Array(Math.floor((task.readings - singles) / batch));
+  const singleUs = new Float64Array(singles);
   const before = way.commands();
+  const first = feed.next;
   const startMs = performance.now();
-  for (let b = 0; b < batches; b++) {
+  for (let b = 0; b < batchUs.length; b++) {
     const fromMs = performance.now();
-    feed.push(BATCH);
-    batchUs[b] = ((performance.now() - fromMs) * 1_000) / BATCH;
+    feed.push(batch);
+    batchUs[b] = ((performance.now() - fromMs) * 1_000) / batch;
   }
   const sleeper = task.measure === 'paced' ? metronome() : null;
   for (let k = 0; k < singles; k++) {
@@ -57,15 +61,29 @@ export async function measureTime(task: Task, way: Way, chunks: readonly Uint8Ar
     singleUs[k] = (performance.now() - fromMs) * 1_000;
   }
   const endMs = performance.now();
-  const commands = (way.commands() - before) / (batches * BATCH + singles);
+  const commands = (way.commands() - before) / (feed.next - first);
   singleUs.sort();
   return {
-    medianUs: batches > 0 ? median([...batchUs]) : quantile(singleUs, 0.5),
+    medianUs: batchUs.length > 0 ? median([...batchUs]) : quantile(singleUs, 0.5),
     p99Us: quantile(singleUs, 0.99),
     worstUs: quantile(singleUs, 1),
     gc: summary(await pauses(), startMs, endMs),
     commands,
   };
+}
+
+async function warm(feed: Feed, readings: number): Promise<void> {
+  for (let portion = 0; portion < PORTIONS; portion++) {
+    feed.push(Math.floor(readings / PORTIONS));
+    await new Promise((done) => setTimeout(done, COMPILER_MS));
+  }
+}
+
+function batchFor(feed: Feed): number {
+  const fromMs = performance.now();
+  feed.push(PROBE);
+  const eachUs = ((performance.now() - fromMs) * 1_000) / PROBE;
+  return Math.min(Math.max(Math.round(BATCH_US / eachUs), 1), BATCH_MAX);
 }
 
 /** Sleeps to the next millisecond of an even grid, as a leader's bytes would arrive: caches cool down meanwhile. */
@@ -82,19 +100,22 @@ function metronome(): () => void {
 export async function measureBytes(task: Task, way: Way, chunks: readonly Uint8Array[]): Promise<BytesOutcome> {
   if (gc === undefined) throw new Error('start this child with --expose-gc');
   const feed = new Feed(way, chunks);
-  const pauses = watchGc();
-  feed.push(task.warmUp);
-  await turn();
-  const probe = allocated(feed, PROBE);
-  const readings = Math.min(task.readings, Math.max(PROBE, Math.floor(YOUNG_BYTES / Math.max(probe, 1))));
+  await warm(feed, task.warmUp);
   gc();
-  const before = way.commands();
-  const startMs = performance.now();
-  const bytes = allocated(feed, readings);
-  const endMs = performance.now();
-  const collected = summary(await pauses(), startMs, endMs).pauses;
-  if (collected > 0) throw new Error('the collector ran while allocations were counted');
-  return { bytes, commands: (way.commands() - before) / readings };
+  const probe = allocated(feed, PROBE);
+  let readings = Math.min(task.readings - PROBE, Math.max(PROBE, Math.floor(YOUNG_BYTES / Math.max(probe, 1))));
+  for (; readings > 0; readings = Math.floor(readings / 4)) {
+    gc();
+    const pauses = watchGc();
+    const before = way.commands();
+    const startMs = performance.now();
+    const bytes = allocated(feed, readings);
+    const endMs = performance.now();
+    // Whatever was collected meanwhile is missing from the sum: once more, with less to do.
+    if (summary(await pauses(), startMs, endMs).pauses > 0) continue;
+    return { bytes, commands: (way.commands() - before) / readings };
+  }
+  throw new Error('the collector runs at every reading: its allocations cannot be counted');
 }
 
 function allocated(feed: Feed, readings: number): number {

@@ -16,7 +16,7 @@ export function report(figures: Figures): string {
   return [
     `One reading of 8 joints, bytes to bytes, on Node ${figures.node}; microseconds.`,
     `Medians over ${size.rounds} rounds, each way in a process of its own; the worst is the worst of all.`,
-    "Bytes are allocated per reading; ES2015: with that build of RxJS. Pauses are the collector's",
+    "Bytes are allocated per reading; ES2015: with that build of RxJS. Pauses are the collector's, with their share of time.",
     '',
     line('followers', 'way', 'median', 'p99', 'worst', 'over (a)', 'bytes', 'ES2015', 'gc pauses', 'longest'),
     ...figures.rows.map((row) =>
