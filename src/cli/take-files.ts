@@ -40,7 +40,7 @@ export async function withTakes(
   }
 }
 
-export function lostSentence({ name, lostBytes, durationUs }: Take): string {
+function lostSentence({ name, lostBytes, durationUs }: Take): string {
   const after = `after ${(durationUs / 1e6).toFixed(2)} s`;
   return lostBytes === 0
     ? `${name}: it has no end mark: recording was cut off ${after}; everything up to there is whole`

@@ -34,7 +34,7 @@ const STEP_US = 10 * US_PER_S;
  * Readings in, commands out, in portions that wait until the last one has left.
  * @param csv afterwards it holds the mistakes, if there are any
  */
-export function tracing(
+function tracing(
   rig: CompiledRig,
   from: readonly (Float64Array | null)[],
   input: AsyncIterable<string>,

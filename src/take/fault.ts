@@ -16,7 +16,6 @@ export const TAKE_REMEDIES = {
   TAKE_EMPTY: 'record it again; nothing can be recovered',
   TAKE_FOREIGN: 'name a take of eidograph: an Arrow stream that says so in its metadata',
   TAKE_NEWER: 'update eidograph to read it',
-  TAKE_DAMAGED: 'what stands before the damage is kept; trim what is left into a new take',
   TAKE_DISK_FULL: 'make room, or name another takes folder with --takes; what was written is kept',
   TAKE_DISK: 'look to the disk, or name another takes folder with --takes; what was written is kept',
   TAKE_DISK_SLOW: 'record to a faster disk with --takes; what was written is kept',

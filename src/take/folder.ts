@@ -3,7 +3,7 @@ import { homedir } from 'node:os';
 import { join, resolve } from 'node:path';
 import { takeFault, type TakeFault } from './fault.ts';
 
-export const TAKE_SUFFIX = '.arrows';
+const TAKE_SUFFIX = '.arrows';
 
 /** Where takes live: `chosen`, or the user's data folder (XDG Base Directory Specification 0.8). */
 export function takesFolder(chosen: string | undefined, env: NodeJS.ProcessEnv): string {

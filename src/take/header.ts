@@ -48,9 +48,9 @@ export interface Made {
   readonly how: Readonly<Record<string, string | number | boolean>>;
 }
 
-export const TAKE_VERSION = 1;
-export const VERSION_KEY = 'eidograph.take_version';
-export const HEADER_KEY = 'eidograph.take';
+const TAKE_VERSION = 1;
+const VERSION_KEY = 'eidograph.take_version';
+const HEADER_KEY = 'eidograph.take';
 /** The rig and its profiles as their files said them then. */
 export const PROFILES_KEY = 'eidograph.profiles';
 

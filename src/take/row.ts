@@ -21,7 +21,6 @@ export const ROW_EVENTS = [
   /** Made up between two takes, or between a take's end and its beginning. */
   'blend',
 ] as const;
-export type RowEvent = (typeof ROW_EVENTS)[number];
 
 export const ROW_KEYS = [
   'go',

@@ -106,7 +106,7 @@ export function* summarize(take: Take): Generator<number, TakeSummary> {
 }
 
 /** Rows between two looks at whether somebody wants it to end. */
-export const ROWS_A_STEP = 20_000;
+const ROWS_A_STEP = 20_000;
 
 type Follower = Take['header']['followers'][number];
 

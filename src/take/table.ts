@@ -13,7 +13,7 @@ export type TableColumn =
 const DEG = 180 / Math.PI;
 
 /** Every column that a take can give, in order. A number that is not known is NaN. */
-export function tableColumns(header: TakeHeader): readonly TableColumn[] {
+function tableColumns(header: TakeHeader): readonly TableColumn[] {
   const { leader, followers } = header;
   return [
     integer('t_us', (row) => row.tUs),

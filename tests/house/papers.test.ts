@@ -3,6 +3,7 @@ import { createRequire } from 'node:module';
 import { join } from 'node:path';
 import { describe, expect, it } from 'vitest';
 import { FAULTS } from '../../src/bridge/words.ts';
+import { TAKE_REMEDIES } from '../../src/take/fault.ts';
 import { MISTAKE_CODES } from '../../src/rig/mistake-codes.ts';
 import { ROOT } from './planted.ts';
 
@@ -12,9 +13,9 @@ const found = (text: string, pattern: RegExp): string[] => [
 ];
 
 describe('README', () => {
-  it('lists every code of a mistake and of a port fault, and none that is gone', () => {
-    const codes = [...Object.keys(MISTAKE_CODES), ...Object.keys(FAULTS)];
-    expect(found(read('README.md'), /`((?:RIG|PORT)_[A-Z_]+)`/g).sort()).toEqual(codes.sort());
+  it('lists every code of a mistake, of a port fault and of a take, and none that is gone', () => {
+    const codes = [...Object.keys(MISTAKE_CODES), ...Object.keys(FAULTS), ...Object.keys(TAKE_REMEDIES)];
+    expect(found(read('README.md'), /`((?:RIG|PORT|TAKE)_[A-Z_]+)`/g).sort()).toEqual(codes.sort());
   });
 });
 
