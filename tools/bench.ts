@@ -13,7 +13,12 @@ if (option === '--task') console.log(JSON.stringify(await perform(JSON.parse(tas
 else {
   const asked = new Set(process.argv.slice(2));
   const figures = await measure(asked.has('--tiny') ? SIZES.tiny : SIZES.whole, (line) => console.error(line));
+  // Not loaded by the processes that measure: what they have compiled before moves their figures.
+  const { TAKE_SIZES, takeFigures, takeReport } = await import('./bench/take.ts');
+  const takes = await takeFigures(asked.has('--tiny') ? TAKE_SIZES.tiny : TAKE_SIZES.whole);
   console.log(
-    asked.has('--json') ? JSON.stringify({ ...figures, targets: targets(figures) }, null, 2) : report(figures),
+    asked.has('--json')
+      ? JSON.stringify({ ...figures, targets: targets(figures), takes }, null, 2)
+      : report(figures) + takeReport(takes),
   );
 }
