@@ -16,6 +16,7 @@ export function looking(whole: WholeArmSpec, joints: readonly FollowerJointSpec[
     maxRad: joints.map(({ maxRad }) => maxRad),
     joints: whole.arm.links.map(({ joint }) => joint),
   };
+  const rest = Float64Array.from(joints, ({ restRad }) => restRad);
   const allowed = (anglesRad: Float64Array): boolean => {
     if (!places.some) return true;
     poser.pose(anglesRad);
@@ -24,7 +25,10 @@ export function looking(whole: WholeArmSpec, joints: readonly FollowerJointSpec[
   };
   return (score) => {
     const scored = (anglesRad: Float64Array): number => (allowed(anglesRad) ? score(anglesRad) : Number.NaN);
-    return readable(worst(ranges, scored), scored, joints);
+    const found = worst(ranges, scored);
+    // Where keep-outs leave little room, the search may meet no pose outside them; at rest the arm is outside.
+    const resting = { value: scored(rest), poseRad: rest };
+    return readable(resting.value > found.value ? resting : found, scored, joints);
   };
 }
 
