@@ -1,7 +1,7 @@
-import { baseTurn } from '../arm/chain.ts';
+import { baseTurn, rowTimes } from '../arm/chain.ts';
 import type { Chain } from '../arm/chain.ts';
 import type { JointRange } from '../arm/reaching.ts';
-import type { ArmSpec, KeepOut } from '../arm/spec.ts';
+import type { ArmSpec, KeepOut, Vec3 } from '../arm/spec.ts';
 import type { Point } from './contour.ts';
 import type { Envelope } from './envelope.ts';
 import { INK, LETTER_MM } from './ink.ts';
@@ -32,6 +32,7 @@ const POSE_LINES = [
 ] as const;
 
 const JOINT_MM = 0.9;
+const WEIGHT_MM = 1.5;
 
 export function envelopeShape(envelope: Envelope, to: ToPaper): string {
   if (envelope.length === 0) return '';
@@ -166,6 +167,42 @@ export function poseShape(
     element('path', { d: pathData(ends, false), fill: 'none', ...stroke }),
     ...joints,
     element('rect', { x: tip[0] - 0.7, y: tip[1] - 0.7, width: 1.4, height: 1.4, fill: line.stroke }),
+    ...(i === 0 ? weightsOf(poser).map((weight) => weightShape(weight, vAxis, to)) : []),
     label(beside, text, LETTER_MM.small, leftward ? 'end' : 'start', line.stroke),
+  );
+}
+
+/** A counterweight at the chain's present pose: where its joint's axis is, where it is, and how heavy. */
+export interface DrawnWeight {
+  readonly axisM: Vec3;
+  readonly atM: Vec3;
+  readonly massKg: number;
+}
+
+export function weightsOf({ spec, at, turn }: Chain): readonly DrawnWeight[] {
+  return spec.links.flatMap(({ counterweight }, i) => {
+    if (counterweight === null) return [];
+    const axisM: Vec3 = [at[3 * i] as number, at[3 * i + 1] as number, at[3 * i + 2] as number];
+    const local = Float64Array.from(counterweight.atM);
+    const atM: Vec3 = [
+      axisM[0] + rowTimes(turn, 9 * i, local, 0),
+      axisM[1] + rowTimes(turn, 9 * i + 3, local, 0),
+      axisM[2] + rowTimes(turn, 9 * i + 6, local, 0),
+    ];
+    return [{ axisM, atM, massKg: counterweight.massKg }];
+  });
+}
+
+function weightShape({ axisM, atM, massKg }: DrawnWeight, vAxis: 1 | 2, to: ToPaper): string {
+  const from = to([axisM[0], axisM[vAxis]]);
+  const [cx, cy] = to([atM[0], atM[vAxis]]);
+  const grams = `${Number((1000 * massKg).toPrecision(4))} g`;
+  return element(
+    'g',
+    {},
+    element('path', { d: pathData([from, [cx, cy]], false), fill: 'none', stroke: INK.orange, 'stroke-width': 0.5 }),
+    element('circle', { cx, cy, r: WEIGHT_MM, fill: INK.orange, stroke: INK.black, 'stroke-width': 0.25 }),
+    // From above, one stands on the other.
+    vAxis === 2 ? label([cx + 2.2, cy + 0.8], grams, LETTER_MM.small, 'start', INK.black) : '',
   );
 }

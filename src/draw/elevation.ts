@@ -1,5 +1,13 @@
 import { chain } from '../arm/chain.ts';
-import { envelopeShape, floorLine, footprintShape, keepOutShape, poseShape, standShape } from './arm-shapes.ts';
+import {
+  envelopeShape,
+  floorLine,
+  footprintShape,
+  keepOutShape,
+  poseShape,
+  standShape,
+  weightsOf,
+} from './arm-shapes.ts';
 import type { DrawnArm } from './arm-shapes.ts';
 import type { Point } from './contour.ts';
 import type { Envelope, Envelopes } from './envelope.ts';
@@ -18,8 +26,10 @@ export function windowOf(view: View, { arm, keepOut, poses }: DrawnArm, envelope
   const vAxis = view === 'side' ? 2 : 1;
   const points: Point[] = [[0, view === 'side' ? arm.base.heightM : 0], ...envelopes[view].flat()];
   const poser = chain(arm);
-  for (const { anglesRad } of poses) {
+  for (const [k, { anglesRad }] of poses.entries()) {
     poser.pose(anglesRad);
+    // Weights are drawn where the first pose has them.
+    if (k === 0) for (const { atM } of weightsOf(poser)) points.push([atM[0], atM[vAxis]]);
     for (let i = 0; i <= poser.links; i++) points.push([poser.at[3 * i] as number, poser.at[3 * i + vAxis] as number]);
   }
   const reached = bounds(points);

@@ -126,12 +126,16 @@ function legend(y: number): string {
       'keep-out',
     ],
     [sample(INK.green, 0.6, '1.6 0.5 0.4 0.5 0.4 0.5'), 'footprint'],
+    [
+      element('circle', { cx: 8, cy: -0.5, r: 1.5, fill: INK.orange, stroke: INK.black, 'stroke-width': 0.25 }),
+      'counterweight, at rest',
+    ],
   ];
   return entries
     .map(([look, words], i) =>
       element(
         'g',
-        { transform: `translate(${MARGIN + i * 54} ${y})` },
+        { transform: `translate(${MARGIN + i * 46} ${y})` },
         look,
         label([12, 0.5], words, LETTER_MM.small, 'start', INK.black),
       ),

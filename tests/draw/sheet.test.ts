@@ -103,6 +103,23 @@ describe('a sheet of arms', () => {
       expect(texts, word).toContain(word);
   });
 
+  it('shows counterweights where the first pose has them, with their mass', () => {
+    const links = CRANE.arm.links.map((one, i) =>
+      i === 1 ? { ...one, counterweight: { massKg: 1.25, atM: [0, 0, -0.15] as const } } : one,
+    );
+    const drawn = elements(armSheet('yard', [{ ...CRANE, arm: { ...CRANE.arm, links } }]));
+    const [paper = Number.NaN, real = Number.NaN] = (drawn.find(({ text }) => /^\d+(\.\d+)?:\d/.test(text))?.text ?? '')
+      .split(':')
+      .map(Number);
+    const circles = drawn.filter(({ name }) => name === 'circle');
+    const [weight] = circles.filter(({ attributes }) => attributes.get('r') === '1.5');
+    // At rest all stands upright: the second axis is 100 mm up, the weight 150 mm below it.
+    const [, second] = circles.filter(({ attributes }) => attributes.get('r') === '0.9');
+    const drop = Number(weight?.attributes.get('cy')) - Number(second?.attributes.get('cy'));
+    expect(drop).toBeCloseTo((150 * paper) / real, 1);
+    expect(drawn.map(({ text }) => text)).toContain('1250 g');
+  });
+
   it('grows by a row an arm', () => {
     const height = (rows: number) =>
       Number(
