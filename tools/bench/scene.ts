@@ -71,7 +71,7 @@ export const LEADER_POINTS = [
 ] as const;
 
 /** Radians and microseconds: an end to end measured servo, and one measured in the middle too. */
-export const SERVO_POINTS = [
+const SERVO_POINTS = [
   [-90 * RAD, 560],
   [90 * RAD, 2_440],
 ] as const;

@@ -1,7 +1,7 @@
 import type { FollowerJointSpec } from '../../src/follower/spec.ts';
 
 export const IN_RANGE = 1;
-export const AT_SPEED = 2;
+const AT_SPEED = 2;
 export const IN_DEADBAND = 4;
 export const SICK = 8;
 
