@@ -77,19 +77,26 @@ function rateFaults(spec: FollowerSpec, told: readonly Told[]): string[] {
 function staleFaults(record: Record, follower: number): string[] {
   const { told, happened, plan } = record;
   const heard = new Heard(plan.leader.joints.length);
-  const mine: { each: Told; stale: boolean }[] = [];
+  const mine: { each: Told; stale: boolean; isSentHome: boolean }[] = [];
+  let isSentHome = false;
   let seen = 0;
   for (const { event, told: upTo } of happened) {
     heard.hears(event);
     const stale = event.tUs - heard.lastUs > plan.leader.timeoutUs;
-    for (const each of told.slice(seen, upTo)) if (each.follower === follower) mine.push({ each, stale });
+    // A short way home may be gone, and the arm be at rest, within one command.
+    isSentHome ||= isKey(event, follower, ['park', 'limp']);
+    for (const each of told.slice(seen, upTo)) {
+      if (each.follower !== follower) continue;
+      mine.push({ each, stale, isSentHome });
+      isSentHome = false;
+    }
     seen = upTo;
   }
-  return mine.flatMap(({ each, stale }, i) => {
+  return mine.flatMap(({ each, stale, isSentHome: toRest }, i) => {
     const before = mine[i - 1];
     const first = mine[i - 2];
     if (before === undefined || first === undefined || !stale || !before.stale) return [];
-    if (each.state === 'parking' || before.each.state === 'parking' || each.kind !== 'move') return [];
+    if (toRest || each.state === 'parking' || before.each.state === 'parking' || each.kind !== 'move') return [];
     const fasterAt = each.anglesRad.findIndex((_, j) => {
       const speed = speedBetween(before.each, each, j);
       return Math.abs(speed) > Math.abs(speedBetween(first.each, before.each, j)) + 1e-9;
