@@ -232,12 +232,17 @@ export function inverse(spec: ArmSpec, options: InverseOptions): Inverse {
 
   /** Moves the anchor, and the joints with it, towards the preferred pose. */
   const settle = (preferRad: Float64Array, q: Float64Array): void => {
-    if (!Number.isNaN(pitchRad[0])) tip.pitch();
+    if (!Number.isNaN(pitchRad[0])) tip.pitch.look();
     spare.settle(q, preferRad, pitchRad, minRad, maxRad, step);
-    let widest = 0;
-    for (let c = 0; c < m; c++) widest = Math.max(widest, Math.abs(step[c] as number));
-    const most = SETTLING_SHARE * turnMaxRad;
-    const share = widest > most ? most / widest : 1;
+    // All joints alike, or the tip would move: as far as the first of them may.
+    let share = 1;
+    for (let c = 0; c < m; c++) {
+      const by = step[c] as number;
+      const at = q[joints[c] as number] as number;
+      const room = by < 0 ? at - (low[c] as number) : (high[c] as number) - at;
+      const most = Math.min(room, SETTLING_SHARE * turnMaxRad);
+      if (Math.abs(by) * share > most) share = most / Math.abs(by);
+    }
     for (let c = 0; c < m; c++) {
       const j = joints[c] as number;
       anchor[c] = clamp((q[j] as number) + share * (step[c] as number), c);

@@ -37,6 +37,9 @@ const PASSES = 2;
 const BEND = 0.5;
 const BEND_MOST = 3;
 
+/** A joint this near to an end is at it, radians: else it would be now free, now held, and the others with it. */
+const AT_END_RAD = 1e-6;
+
 export function settling(tip: TipMotion): Settling {
   const { joints, error, jacobian } = tip;
   const m = joints.length;
@@ -48,6 +51,8 @@ export function settling(tip: TipMotion): Settling {
   const hold = new Float64Array(3);
   const scratch = new Float64Array(3);
   const along = new Float64Array(3);
+  /** How hard the pitch pulls, with its sign: it bends the wish by that much of its own bend. */
+  const pitchPull = new Float64Array(1);
   const bent = new Float64Array(m * m);
   const small = new Float64Array(m * m);
   const part = new Float64Array(m);
@@ -55,10 +60,11 @@ export function settling(tip: TipMotion): Settling {
   /** slope = that of half the squared distance to the wish, over the free joints. */
   const wish = (q: Float64Array, preferRad: Float64Array, pitchRad: Float64Array): void => {
     const pitch = pitchRad[0] as number;
-    const off = Number.isNaN(pitch) ? 0 : PITCH_WEIGHT * ((tip.pitchRad[0] as number) - pitch);
+    const off = Number.isNaN(pitch) ? 0 : PITCH_WEIGHT * ((tip.pitch.rad[0] as number) - pitch);
+    pitchPull[0] = off;
     for (let c = 0; c < m; c++) {
       const j = joints[c] as number;
-      const away = (q[j] as number) - (preferRad[j] as number) + off * (tip.pitchSlope[c] as number);
+      const away = (q[j] as number) - (preferRad[j] as number) + off * (tip.pitch.slope[c] as number);
       slope[c] = free[c] === 1 ? away : 0;
     }
   };
@@ -106,16 +112,18 @@ export function settling(tip: TipMotion): Settling {
   const newton = (pitchWeight: number, room: number): boolean => {
     for (let r = 0; r < 3; r++) along[r] = (error[r] as number) + WISH * (hold[r] as number);
     tip.bend(along, bent, m);
-    let bend = 0;
+    const pull = pitchPull[0] as number;
+    if (pull !== 0) tip.pitch.addBend(WISH * pull, bent, m);
+    let bend = WISH * Math.abs(pull);
     for (let r = 0; r < 3; r++) bend += Math.abs(error[r] as number) + WISH * Math.abs(hold[r] as number);
     let rows = 0;
     for (let c = 0; c < m; c++) if (free[c] === 1) column[rows++] = c;
     for (let r = 0; r < rows; r++) {
       const c = column[r] as number;
-      const weight = WISH * pitchWeight * (tip.pitchSlope[c] as number);
+      const weight = WISH * pitchWeight * (tip.pitch.slope[c] as number);
       for (let s = 0; s <= r; s++) {
         const b = column[s] as number;
-        small[r * m + s] = (bent[c * m + b] as number) + weight * (tip.pitchSlope[b] as number);
+        small[r * m + s] = (bent[c * m + b] as number) + weight * (tip.pitch.slope[b] as number);
       }
       small[r * m + r] = (small[r * m + r] as number) + WISH + room * bend;
       part[r] = -WISH * (slope[c] as number);
@@ -142,7 +150,8 @@ export function settling(tip: TipMotion): Settling {
           const j = joints[c] as number;
           const by = slope[c] as number;
           const at = anglesRad[j] as number;
-          if (!((at <= (minRad[j] as number) && by < 0) || (at >= (maxRad[j] as number) && by > 0))) continue;
+          const outward = by < 0 ? at - (minRad[j] as number) : (maxRad[j] as number) - at;
+          if (by === 0 || outward > AT_END_RAD) continue;
           free[c] = 0;
           frozen = true;
         }

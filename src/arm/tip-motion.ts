@@ -1,6 +1,7 @@
 import type { Chain } from './chain.ts';
-import { length, reachM } from './extent.ts';
-import type { LinkSpec, Vec3 } from './spec.ts';
+import { reachM } from './extent.ts';
+import { type Pitch, pitchOf } from './pitch.ts';
+import type { LinkSpec } from './spec.ts';
 
 /**
  * The tip of a chain as a function of some of its joints, in shares of the arm's reach: where it is, how it moves, and
@@ -15,15 +16,11 @@ export interface TipMotion {
   readonly error: Float64Array;
   /** Column c at [3c..3c+2]: geometric Jacobian of the tip, shares of the reach a radian. */
   readonly jacobian: Float64Array;
-  /** Pitch of the last link against the horizontal, radians, 1 value, and its slope for each column. */
-  readonly pitchRad: Float64Array;
-  readonly pitchSlope: Float64Array;
+  readonly pitch: Pitch;
   /** Poses the chain and fills `error`. */
   look(anglesRad: Float64Array, targetM: Float64Array): void;
   /** Fills `jacobian` at the present pose. */
   slopes(): void;
-  /** Fills `pitchRad` and `pitchSlope` at the present pose; a last link without length has no pitch: 0 and flat. */
-  pitch(): void;
   /**
    * out[c size + b] (c >= b) = J'J - along . d2p/dq2. Along the error it is the second derivative of half the squared
    * distance to the target; along 0 it is Gauss and Newton's J'J, which is never negative.
@@ -31,9 +28,6 @@ export interface TipMotion {
    */
   bend(along: Float64Array, out: Float64Array, size: number): void;
 }
-
-/** Nearer to the vertical than this, the slope of the pitch is not let grow further: cosine of the pitch. */
-const UPRIGHT = 0.1;
 
 /** @param moves joints of the profile, by index; those that have no link are left out */
 export function tipMotion(chain: Chain, moves: readonly number[]): TipMotion {
@@ -45,9 +39,6 @@ export function tipMotion(chain: Chain, moves: readonly number[]): TipMotion {
   const tip = 3 * chain.links;
   const error = new Float64Array(3);
   const jacobian = new Float64Array(3 * m);
-  const lastM = length(spec.links.at(-1)?.toM as Vec3);
-  const pitchRad = new Float64Array(1);
-  const pitchSlope = new Float64Array(m);
 
   return {
     chain,
@@ -55,8 +46,7 @@ export function tipMotion(chain: Chain, moves: readonly number[]): TipMotion {
     joints,
     error,
     jacobian,
-    pitchRad,
-    pitchSlope,
+    pitch: pitchOf(chain, links),
     look(anglesRad, targetM) {
       chain.pose(anglesRad);
       for (let k = 0; k < 3; k++) error[k] = ((targetM[k] as number) - (at[tip + k] as number)) / reach;
@@ -73,18 +63,6 @@ export function tipMotion(chain: Chain, moves: readonly number[]): TipMotion {
         jacobian[3 * c] = ay * rz - az * ry;
         jacobian[3 * c + 1] = az * rx - ax * rz;
         jacobian[3 * c + 2] = ax * ry - ay * rx;
-      }
-    },
-    pitch() {
-      if (lastM === 0) return;
-      const ux = ((at[tip] as number) - (at[tip - 3] as number)) / lastM;
-      const uy = ((at[tip + 1] as number) - (at[tip - 2] as number)) / lastM;
-      const sine = ((at[tip + 2] as number) - (at[tip - 1] as number)) / lastM;
-      const flat = Math.sqrt(ux * ux + uy * uy);
-      pitchRad[0] = Math.atan2(sine, flat);
-      for (let c = 0; c < m; c++) {
-        const a = 3 * (links[c] as number);
-        pitchSlope[c] = ((axis[a] as number) * uy - (axis[a + 1] as number) * ux) / Math.max(flat, UPRIGHT);
       }
     },
     bend(along, out, size) {

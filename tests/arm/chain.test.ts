@@ -173,10 +173,50 @@ describe('the tip as a function of some joints', () => {
   it('has the pitch of its last link, and its slope', () => {
     const motion = tipMotion(chain(arm([link(0, Z, [0, 0, 0.1]), link(1, Y, [0, 0, 0.3])])), [0, 1]);
     motion.look(Float64Array.of(0.4, 60 * DEG), new Float64Array(3));
-    motion.pitch();
+    motion.pitch.look();
     // By hand: leaning 60 degrees from the vertical it looks up by 30, and falls as it leans on; turning does not matter.
-    expect((motion.pitchRad[0] as number) / DEG).toBeCloseTo(30, 9);
-    expectClose(motion.pitchSlope, [0, -1]);
+    expect((motion.pitch.rad[0] as number) / DEG).toBeCloseTo(30, 9);
+    expectClose(motion.pitch.slope, [0, -1]);
+  });
+});
+
+describe('the pitch of the last link', () => {
+  const H = 1e-4;
+
+  it('slopes and bends as its finite differences, for any arm that does not stand upright', () => {
+    fc.assert(
+      fc.property(anyArm, angles(8, 3), (spec, pose) => {
+        const last = spec.links.at(-1)?.toM as Vec3;
+        fc.pre(Math.hypot(...last) > 0.01);
+        const n = spec.links.length;
+        const motion = tipMotion(
+          chain(spec),
+          spec.links.map((_, j) => j),
+        );
+        const lookAt = (at: Float64Array): number => {
+          motion.look(at, new Float64Array(3));
+          motion.pitch.look();
+          return motion.pitch.rad[0] as number;
+        };
+        fc.pre(Math.abs(lookAt(pose)) < 1.3);
+        const slope = motion.pitch.slope.slice();
+        const bent = new Float64Array(n * n).fill(1);
+        motion.pitch.addBend(2, bent, n);
+        for (let b = 0; b < n; b++) {
+          const shifted = (by: number): Float64Array => pose.map((angle, k) => (k === b ? angle + by : angle));
+          const ahead = lookAt(shifted(H));
+          const slopesAhead = motion.pitch.slope.slice();
+          const behind = lookAt(shifted(-H));
+          const slopesBehind = motion.pitch.slope.slice();
+          // Near the vertical the third derivative is some tens: h^2 of it is below 1e-6.
+          expect(slope[b]).toBeCloseTo((ahead - behind) / (2 * H), 5);
+          for (let c = b; c < n; c++) {
+            const second = ((slopesAhead[c] as number) - (slopesBehind[c] as number)) / (2 * H);
+            expect(bent[c * n + b]).toBeCloseTo(1 + 2 * second, 4);
+          }
+        }
+      }),
+    );
   });
 });
 
