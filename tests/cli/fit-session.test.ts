@@ -34,7 +34,8 @@ followers:
 function bench() {
   const clock = virtualClock();
   const leader = [
-    heldJoint(clock, 'base', { counts: (deg) => 2000 + 13 * deg, noise: 1.5, dead: null }),
+    // It has lost its track where one of the poses for matching puts it.
+    heldJoint(clock, 'base', { counts: (deg) => 2000 + 13 * deg, noise: 1.5, dead: [20.5, 23] }),
     // Falls as the angle rises.
     heldJoint(clock, 'elbow', { counts: (deg) => 2100 - 12 * deg, noise: 1.5, dead: null }),
   ];
@@ -125,6 +126,8 @@ describe('A session', () => {
     expect(report.matches[0]?.gain.is).toBeCloseTo(0.7, 1);
     expect(report.matches[0]?.offset_deg.is).toBeCloseTo(5, 0);
     expect(seat.printed()).toContain('elbow turns against its points');
+    expect(report.joints[0]?.sweep?.dead_spots_counts).toHaveLength(1);
+    expect(seat.printed()).toContain('Not taken: it reads at the end of the converter');
   });
 
   it('keeps captures as they are made, and goes on from them after a crash', async () => {

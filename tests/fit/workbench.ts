@@ -173,6 +173,8 @@ export function replies(person: Person, { stopsDeg, sweepS }: PersonOptions): (a
       return at((Math.round(2 * (horn.deg(horn.pulseUs()) + error())) / 2).toFixed(1));
     }
     if (ask.startsWith('Pose ')) {
+      // Where the pot has lost its track, holding it again does not help.
+      if (before.split('\n').at(-2)?.startsWith('Not taken') === true) return at('next');
       const joint =
         /\w+ (\w+) goes to/.exec(before.split('\n').findLast((l) => l.includes('goes to')) ?? '')?.[1] ?? '';
       const horn = hornOf(joint);
