@@ -43,7 +43,12 @@ export function authority(
   const motion = arm.governor;
   const now = common.nowUs;
   const board = common.boardOf[index] as number;
-  const wakesByItself = parts.unasked || spec.wake !== 'ask';
+  /**
+   * An arm that has had pulses in this run and lost them has sunk since, nobody knows where to: whatever its profile
+   * says, it waits for the go, unless there is nobody to give one. A limp arm was parked, and go is what wakes it.
+   */
+  const wakesByItself = (event: StateEvent): boolean =>
+    parts.unasked || (spec.wake !== 'ask' && (event === 'go' || is.lastUs === Number.NEGATIVE_INFINITY));
   let healthSeen = -1;
   let leadSeen = 0;
 
@@ -66,7 +71,7 @@ export function authority(
         arm.frame.pulsing = 0;
         is.going = false;
         // What was latched, or made limp, stays so until somebody asks: a port that comes back is nobody.
-        if (wakesByItself && (is.blocks & BLOCKS.held) === 0) startWaking();
+        if (wakesByItself(event) && (is.blocks & BLOCKS.held) === 0) startWaking();
         return;
       case 'joining':
         arm.settleHere();

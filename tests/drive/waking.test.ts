@@ -26,6 +26,19 @@ describe('an arm that wakes', () => {
     expect(new Rehearsal(planOf([asking]), { starts: [{ unasked: true }] }).ready().run(S).told).not.toEqual([]);
   });
 
+  it('that has lost its pulses in mid-run waits for the go, whatever its profile says: it has sunk meanwhile', () => {
+    const on = new Rehearsal(planOf([followerSpec()]))
+      .following()
+      .plays(S, () => [30, 30])
+      .board('reboot')
+      .ready();
+    const told = on.told.length;
+    on.plays(2 * S, () => [30, 30]);
+    expect([on.state(), on.told.length]).toEqual(['waking', told]);
+    on.key('go').plays(S, () => [30, 30]);
+    expect(on.told.length).toBeGreaterThan(told);
+  });
+
   it('gets one servo after another, 100 ms apart, all at its wake pose', () => {
     const poseRad = Float64Array.of(20 * DEG, -40 * DEG, 10 * DEG);
     const on = new Rehearsal(planOf([followerSpec(three)]), { starts: [{ poseRad }] })
