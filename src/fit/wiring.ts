@@ -13,8 +13,9 @@ const MOVED_SHARE = 0.03;
 /** One that moves along by this much of what the joint's own does hangs on the same wire. */
 const SHARED_SHARE = 0.2;
 const SHARED_CORRELATION = 0.9;
-/** Steps from reading to reading that no hand makes, as a share of the range, root mean square. */
+/** Jumps from reading to reading that no hand makes, as a share of the range, and how many of a hundred may be larger. */
 const NOISY_SHARE = 0.02;
+const JUMPY_QUANTILE = 0.8;
 
 /**
  * @param readings in order of time; each has one count an input, NaN where it had none
@@ -24,7 +25,7 @@ export function wiringOf(readings: readonly ArrayLike<number>[], inputs: number,
   const columns = Array.from({ length: inputs }, (_, i) =>
     readings.map((reading) => reading[i] as number).filter((count) => !Number.isNaN(count)),
   );
-  const noisy = columns.flatMap((column, i) => (stepRms(column) > NOISY_SHARE * width ? [i] : []));
+  const noisy = columns.flatMap((column, i) => (jumpiness(column) > NOISY_SHARE * width ? [i] : []));
   // Without the outermost readings, so that a spike is no motion.
   const spans = columns.map((column) => (column.length === 0 ? 0 : quantile(column, 0.98) - quantile(column, 0.02)));
   const steady = spans.map((span, i) => (noisy.includes(i) ? 0 : span));
@@ -40,10 +41,10 @@ export function wiringOf(readings: readonly ArrayLike<number>[], inputs: number,
   return { input, shared, noisy };
 }
 
-function stepRms(column: readonly number[]): number {
-  if (column.length < 2) return 0;
-  const squares = column.slice(1).reduce((sum, at, i) => sum + (at - (column[i] as number)) ** 2, 0);
-  return Math.sqrt(squares / (column.length - 1));
+/** How far most readings are from the middle of their neighbours. A dead spot, passed now and then, is no such thing. */
+function jumpiness(column: readonly number[]): number {
+  const bends = column.slice(2).map((at, i) => Math.abs((at + (column[i] as number)) / 2 - (column[i + 1] as number)));
+  return bends.length === 0 ? 0 : quantile(bends, JUMPY_QUANTILE);
 }
 
 function quantile(column: readonly number[], share: number): number {

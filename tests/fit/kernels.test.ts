@@ -268,6 +268,16 @@ describe('Wiring', () => {
     ).toEqual([2]);
   });
 
+  it('takes a pot with a dead spot for one that moves, not for one that jumps about', () => {
+    const lost = (i: number): number => (moving(i) > 550 && moving(i) < 580 ? 0 : moving(i));
+    const found = wiringOf(
+      rows((i) => [500, lost(i), 510]),
+      3,
+      1023,
+    );
+    expect(found).toEqual({ input: 1, shared: [], noisy: [] });
+  });
+
   it('finds an input that jumps about, and does not take it for the one that moves', () => {
     const found = wiringOf(
       rows((i) => [500, moving(i), i % 2 === 0 ? 0 : 900]),
