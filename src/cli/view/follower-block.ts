@@ -93,6 +93,7 @@ function heading(scene: FollowerScene, detail: FollowerDetail, width: number, sh
       { line: [portSpan(port)], matters: port === null || port.ready ? 1 : 6 },
       { line: [span(`${perSecond.toFixed(0)}/s`)], matters: 3 },
       { line: [span(`lag ${milliseconds(status.lag_us)}`)], matters: 2 },
+      { line: [span(highestLoad(status))], matters: 2 },
     ],
     width,
     2,
@@ -161,6 +162,18 @@ function limitsOf({ limited_by, angle_deg, target_deg }: Joint, state: State): J
   const follows = state === 'following' || state === 'joining' || state === 'parking';
   const stands = Math.abs(target_deg - angle_deg) < STANDS_DEG;
   return limited_by.filter((limit) => (limit === 'deadband' ? follows && stands : follows || limit === 'sick'));
+}
+
+/** The joint that carries most of what its motor may give; empty where the file knows no motor. */
+function highestLoad({ joints }: FollowerStatus): string {
+  let most = -1;
+  let where = '';
+  for (const { joint, load_share } of joints) {
+    if (load_share === null || load_share <= most) continue;
+    most = load_share;
+    where = joint;
+  }
+  return where === '' ? '' : `load ${Math.round(100 * most)} % ${where}`;
 }
 
 /** A motor near what it may give, or near what it may take in warmth. */
