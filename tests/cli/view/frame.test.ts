@@ -115,6 +115,13 @@ describe('The live view', () => {
     expect(picture(withFollower({ joints }), WIDE)).not.toContain('warmth');
   });
 
+  it('says of each arm the highest load, and whose it is, and nothing where no motor is known', () => {
+    const joints = followerStatus().joints.map((joint, j) => ({ ...joint, load_share: j === 2 ? 0.436 : 0.1 }));
+    expect(picture(withFollower({ joints }), WIDE)).toMatch(/wren .*load 44 % elbow/);
+    const unknown = joints.map((joint) => ({ ...joint, load_share: null }));
+    expect(picture(withFollower({ joints: unknown }), WIDE)).not.toContain('load');
+  });
+
   it('does not go on showing what limited an arm before it was held, but for a sick pot', () => {
     const joints = followerStatus().joints.map((joint) => ({ ...joint, limited_by: ['speed', 'sick'] as const }));
     const shown = picture(withFollower({ state: 'holding', blocked_by: ['held'], joints }), USUAL);
