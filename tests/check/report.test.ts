@@ -187,7 +187,7 @@ describe('how fast and how far an arm goes on', () => {
     const { whole, joints } = specOf();
     // Folded back all but straight: the tip is 100 mm from the shoulder, and the elbow 300 mm, at 60 deg/s.
     const folded = joints.map((one, j) =>
-      j === 1 ? { ...one, minRad: 179 * RAD, maxRad: 180 * RAD, speedRadS: RAD } : one,
+      j === 1 ? { ...one, minRad: 179 * RAD, maxRad: 180 * RAD, restRad: 180 * RAD, speedRadS: RAD } : one,
     );
     const look = looking(whole, folded);
     const motion = armMotion(whole, folded, look, jointMotions(folded, whole, look));
