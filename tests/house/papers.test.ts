@@ -3,6 +3,7 @@ import { createRequire } from 'node:module';
 import { join } from 'node:path';
 import { describe, expect, it } from 'vitest';
 import { FAULTS } from '../../src/bridge/words.ts';
+import { FIT_CODES } from '../../src/fit/problems.ts';
 import { TAKE_REMEDIES } from '../../src/take/fault.ts';
 import { MISTAKE_CODES } from '../../src/rig/mistake-codes.ts';
 import { ROOT } from './planted.ts';
@@ -14,8 +15,13 @@ const found = (text: string, pattern: RegExp): string[] => [
 
 describe('README', () => {
   it('lists every code of a mistake, of a port fault and of a take, and none that is gone', () => {
-    const codes = [...Object.keys(MISTAKE_CODES), ...Object.keys(FAULTS), ...Object.keys(TAKE_REMEDIES)];
-    expect(found(read('README.md'), /`((?:RIG|PORT|TAKE)_[A-Z_]+)`/g).sort()).toEqual(codes.sort());
+    const codes = [
+      ...Object.keys(MISTAKE_CODES),
+      ...Object.keys(FAULTS),
+      ...Object.keys(TAKE_REMEDIES),
+      ...Object.keys(FIT_CODES),
+    ];
+    expect(found(read('README.md'), /`((?:RIG|PORT|TAKE|FIT)_[A-Z_]+)`/g).sort()).toEqual(codes.sort());
   });
 });
 
