@@ -69,50 +69,55 @@ export function distanceTo(at: Float64Array, link: number, box: Box, out: Float6
   out[0] = Math.sqrt(square);
 }
 
-/** True where a link, each of whose points stays within marginM of where it is, cannot reach the box. */
-export function clearBy(at: Float64Array, link: number, box: Box, marginM: number): boolean {
+/** True where a link, each of whose points stays within marginM[link + 1] of where it is, cannot reach the box. */
+export function clearBy(at: Float64Array, link: number, box: Box, marginM: Float64Array): boolean {
+  const margin = marginM[link + 1] as number;
   for (let k = 0; k < 3; k++) {
     const a = at[3 * link + k] as number;
     const b = at[3 * link + 3 + k] as number;
-    if (Math.min(a, b) - marginM >= (box.maxM[k] as number)) return true;
-    if (Math.max(a, b) + marginM <= (box.minM[k] as number)) return true;
+    if (Math.min(a, b) - margin >= (box.maxM[k] as number)) return true;
+    if (Math.max(a, b) + margin <= (box.minM[k] as number)) return true;
   }
   return false;
 }
 
+/** What `staysOut` is asked: see there. One at a time is enough. */
+const room = new Float64Array(3);
+
 /**
  * True where a link surely stays outside the box on its way between two looks: some plane has the box on one side and
- * the link on the other at both looks, and its ends, which go straight but for a bulge of `bulgeM`, do not bend through
- * it. A box and a line that are apart are parted by a face of the box or by a plane along the line and one of its edges
- * (separating axes: S. Gottschalk, M. C. Lin, D. Manocha, OBBTree, SIGGRAPH 1996; from memory).
+ * the link on the other at both looks, and its ends, which go straight but for a bulge of bulgeM[link + 1], do not bend
+ * through it. A box and a line that are apart are parted by a face of the box or by a plane along the line and one of its
+ * edges (separating axes: S. Gottschalk, M. C. Lin, D. Manocha, OBBTree, SIGGRAPH 1996; from memory).
  */
-export function passesBy(before: Float64Array, after: Float64Array, link: number, box: Box, bulgeM: number): boolean {
+export function passesBy(
+  before: Float64Array,
+  after: Float64Array,
+  link: number,
+  box: Box,
+  bulgeM: Float64Array,
+): boolean {
+  room[2] = bulgeM[link + 1] as number;
   for (let k = 0; k < 3; k++) {
     const a0 = before[3 * link + k] as number;
     const a1 = before[3 * link + 3 + k] as number;
     const b0 = after[3 * link + k] as number;
     const b1 = after[3 * link + 3 + k] as number;
-    const high = box.maxM[k] as number;
-    const low = box.minM[k] as number;
-    if (staysOut(Math.min(a0, a1) - high, Math.min(b0, b1) - high, bulgeM)) return true;
-    if (staysOut(low - Math.max(a0, a1), low - Math.max(b0, b1), bulgeM)) return true;
+    room[0] = Math.min(a0, a1) - (box.maxM[k] as number);
+    room[1] = Math.min(b0, b1) - (box.maxM[k] as number);
+    if (staysOut(room)) return true;
+    room[0] = (box.minM[k] as number) - Math.max(a0, a1);
+    room[1] = (box.minM[k] as number) - Math.max(b0, b1);
+    if (staysOut(room)) return true;
   }
   for (let k = 0; k < 3; k++) {
-    if (partedAlong(before, after, link, box, k, bulgeM) || partedAlong(after, before, link, box, k, bulgeM))
-      return true;
+    if (partedAlong(before, after, link, box, k) || partedAlong(after, before, link, box, k)) return true;
   }
   return false;
 }
 
 /** True where the plane along the link as in `one`, and along the box's edge k, has link and box apart at both looks. */
-function partedAlong(
-  one: Float64Array,
-  other: Float64Array,
-  link: number,
-  box: Box,
-  k: number,
-  bulgeM: number,
-): boolean {
+function partedAlong(one: Float64Array, other: Float64Array, link: number, box: Box, k: number): boolean {
   const p = (k + 1) % 3;
   const q = (k + 2) % 3;
   const o = 3 * link;
@@ -124,23 +129,30 @@ function partedAlong(
   const nq = -up / length;
   const cp = 0.5 * ((box.minM[p] as number) + (box.maxM[p] as number));
   const cq = 0.5 * ((box.minM[q] as number) + (box.maxM[q] as number));
-  const radius = 0.5 * (width(box, p) * Math.abs(np) + width(box, q) * Math.abs(nq));
+  const wp = (box.maxM[p] as number) - (box.minM[p] as number);
+  const wq = (box.maxM[q] as number) - (box.minM[q] as number);
+  const radius = 0.5 * (wp * Math.abs(np) + wq * Math.abs(nq));
   const from = np * ((one[o + p] as number) - cp) + nq * ((one[o + q] as number) - cq);
   const side = from < 0 ? -1 : 1;
   const to0 = side * (np * ((other[o + p] as number) - cp) + nq * ((other[o + q] as number) - cq));
   const to1 = side * (np * ((other[o + 3 + p] as number) - cp) + nq * ((other[o + 3 + q] as number) - cq));
-  return staysOut(side * from - radius, Math.min(to0, to1) - radius, bulgeM);
+  room[0] = side * from - radius;
+  room[1] = Math.min(to0, to1) - radius;
+  return staysOut(room);
 }
 
 /**
- * True where a height that is `a` first and `b` last, and between them lies no further than 4 bulge r (1 - r) below the
- * straight line, never goes under 0: a (1 - r) + b r - 4 bulge r (1 - r) >= 0 for all r just when sqrt a + sqrt b >= 2 sqrt bulge.
+ * True where a height that is a = ask[0] first and b = ask[1] last, and between them lies no further than 4 bulge r (1 - r)
+ * below the straight line (bulge = ask[2]), never goes under 0: a (1 - r) + b r - 4 bulge r (1 - r) >= 0 for all r just
+ * when sqrt a + sqrt b >= 2 sqrt bulge.
  */
-export function staysOut(a: number, b: number, bulgeM: number): boolean {
+export function staysOut(ask: Float64Array): boolean {
+  const a = ask[0] as number;
+  const b = ask[1] as number;
   if (!(a >= -TOUCHING_M && b >= -TOUCHING_M)) return false;
   const from = Math.max(a, 0);
   const to = Math.max(b, 0);
-  return from + to + 2 * Math.sqrt(from * to) >= 4 * bulgeM;
+  return from + to + 2 * Math.sqrt(from * to) >= 4 * (ask[2] as number);
 }
 
 /** How far a coordinate is past the box's side, with its sign; 0 between the sides. */

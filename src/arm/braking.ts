@@ -34,9 +34,12 @@ export function braking(joints: number, accelRadS2: Float64Array): Braking {
   const from = new Float64Array(joints);
   const fromSpeed = new Float64Array(joints);
   const turned = new Float64Array(2);
+  /** The stop before the present one, and the present one. */
+  const span = new Float64Array(2);
 
-  /** turned[i] = how far all joints together turn until timeS. */
-  const turnUntil = (until: number, i: number): void => {
+  /** turned[i] = how far all joints together turn until span[1]. */
+  const turnUntil = (i: number): void => {
+    const until = span[1] as number;
     let sum = 0;
     for (let j = 0; j < joints; j++) {
       const t = Math.min(until, stops[j] as number);
@@ -45,14 +48,14 @@ export function braking(joints: number, accelRadS2: Float64Array): Braking {
     turned[i] = sum;
   };
 
-  /** The next stop after `after`; the same where there is none. */
-  const nextStop = (after: number): number => {
-    let next = Number.POSITIVE_INFINITY;
+  /** span[1] = the next stop after span[0]; false where there is none. */
+  const findStop = (): boolean => {
+    const after = (span[0] as number) + SAME_S;
+    span[1] = Number.POSITIVE_INFINITY;
     for (let j = 0; j < joints; j++) {
-      const stop = stops[j] as number;
-      if (stop > after + SAME_S && stop < next) next = stop;
+      if ((stops[j] as number) > after && (stops[j] as number) < (span[1] as number)) span[1] = stops[j] as number;
     }
-    return next === Number.POSITIVE_INFINITY ? after : next;
+    return span[1] !== Number.POSITIVE_INFINITY;
   };
 
   const self: Braking = {
@@ -61,24 +64,25 @@ export function braking(joints: number, accelRadS2: Float64Array): Braking {
     timeS,
     pieces: 0,
     plan(x, v) {
-      let longest = 0;
+      span.fill(0);
       for (let j = 0; j < joints; j++) {
         from[j] = x[j] as number;
         fromSpeed[j] = v[j] as number;
         stops[j] = Math.abs(v[j] as number) / (accelRadS2[j] as number);
-        longest = Math.max(longest, stops[j] as number);
+        span[1] = Math.max(span[1] as number, stops[j] as number);
       }
-      turnUntil(longest, 0);
+      turnUntil(0);
       const turn = Math.max(TURN_RAD, (turned[0] as number) / PIECES);
       let pieces = 0;
-      let start = 0;
       turned[0] = 0;
-      for (let end = nextStop(start); end > start; end = nextStop(start)) {
-        turnUntil(end, 1);
+      while (findStop()) {
+        turnUntil(1);
         const cuts = Math.max(1, Math.ceil(((turned[1] as number) - (turned[0] as number)) / turn));
+        const start = span[0] as number;
+        const end = span[1] as number;
         for (let cut = 1; cut <= cuts; cut++) timeS[++pieces] = start + ((end - start) * cut) / cuts;
         turned[0] = turned[1] as number;
-        start = end;
+        span[0] = end;
       }
       self.pieces = pieces;
     },

@@ -26,6 +26,7 @@ export function certifyKeepOuts(
   const reachBefore = new Float64Array(links + 1);
   const reachNow = new Float64Array(links + 1);
   const bulgeM = new Float64Array(links + 1);
+  const turning = new Float64Array(1);
 
   return {
     begin() {
@@ -40,15 +41,15 @@ export function certifyKeepOuts(
       if (!places.near(begun, reachNow)) return false;
       bounds.differ(x0, x, turned);
       bounds.reachInto(turned, reachBefore);
-      const turn = bounds.turnOf(turned);
-      for (let k = 1; k <= links; k++) bulgeM[k] = (turn * (reachBefore[k] as number)) / 8;
+      bounds.turnInto(turned, turning, 0);
+      for (let k = 1; k <= links; k++) bulgeM[k] = ((turning[0] as number) * (reachBefore[k] as number)) / 8;
       chain.pose(x);
       if (places.entered(begun, at, bulgeM)) return true;
       way.plan(x, v);
       way.look(0);
       bounds.reachInto(way.speed, reachBefore);
-      let turning = bounds.turnOf(way.speed);
       for (let look = 1; look <= way.pieces; look++) {
+        bounds.turnInto(way.speed, turning, 0);
         before.set(at);
         way.look(look);
         chain.pose(way.at);
@@ -56,11 +57,10 @@ export function certifyKeepOuts(
         const h = (way.timeS[look] as number) - (way.timeS[look - 1] as number);
         for (let k = 1; k <= links; k++) {
           const most = reachBefore[k] as number;
-          bulgeM[k] = (h * (most - (reachNow[k] as number)) + h * h * turning * most) / 8;
+          bulgeM[k] = (h * (most - (reachNow[k] as number)) + h * h * (turning[0] as number) * most) / 8;
         }
         if (places.entered(before, at, bulgeM)) return true;
         reachBefore.set(reachNow);
-        turning = bounds.turnOf(way.speed);
       }
       return false;
     },

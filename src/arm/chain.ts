@@ -60,18 +60,17 @@ export function chain(spec: ArmSpec): Chain {
     axis,
     pose(anglesRad) {
       for (let i = 0; i < n; i++) {
-        const angle = anglesRad[joint[i] as number] as number;
+        const j = joint[i] as number;
         const before = 9 * i;
         const kind = about[i] as number;
-        for (let row = 0; row < 3; row++) axis[3 * i + row] = rowTimes(turns, before + 3 * row, axes, 3 * i);
-        if (kind < 3) turnAbout(MIXED[kind] as readonly [number, number], angle, turns, before);
+        timesInto(turns, before, axes, 3 * i, axis, 3 * i);
+        if (kind < 3) turnAbout(MIXED[kind] as readonly [number, number], anglesRad, j, turns, before);
         else {
-          rotation(axes, 3 * i, angle, spin);
+          rotation(axes, 3 * i, anglesRad, j, spin);
           multiply(turns, before, spin);
         }
-        for (let row = 0; row < 3; row++) {
-          at[3 * i + 3 + row] = (at[3 * i + row] as number) + rowTimes(turns, before + 9 + 3 * row, to, 3 * i);
-        }
+        timesInto(turns, before + 9, to, 3 * i, at, 3 * i + 3);
+        for (let k = 3 * i; k < 3 * i + 3; k++) at[k + 3] = (at[k + 3] as number) + (at[k] as number);
       }
     },
     jacobian(point, offset, link, out) {
@@ -129,8 +128,15 @@ export function baseTurn(tiltRad: readonly [number, number]): Float64Array {
   return Float64Array.of(cy, sy * sx, sy * cx, 0, cx, -sx, -sy, cy * sx, cy * cx);
 }
 
-/** turns[o+9..] = turns[o..] turned about its own axis that is neither of `mixed`. */
-function turnAbout(mixed: readonly [number, number], angle: number, turns: Float64Array, o: number): void {
+/** turns[o+9..] = turns[o..] turned by angles[j] about its own axis that is neither of `mixed`. */
+function turnAbout(
+  mixed: readonly [number, number],
+  angles: Float64Array,
+  j: number,
+  turns: Float64Array,
+  o: number,
+): void {
+  const angle = angles[j] as number;
   const s = Math.sin(angle);
   const c = Math.cos(angle);
   const [p, q] = mixed;
@@ -144,8 +150,9 @@ function turnAbout(mixed: readonly [number, number], angle: number, turns: Float
   }
 }
 
-/** Rodrigues' rotation about the unit axis at axes[o..], row by row. */
-function rotation(axes: Float64Array, o: number, angle: number, out: Float64Array): void {
+/** Rodrigues' rotation by angles[j] about the unit axis at axes[o..], row by row. */
+function rotation(axes: Float64Array, o: number, angles: Float64Array, j: number, out: Float64Array): void {
+  const angle = angles[j] as number;
   const s = Math.sin(angle);
   const c = Math.cos(angle);
   const v = 1 - c;
@@ -175,7 +182,20 @@ function multiply(turns: Float64Array, o: number, spin: Float64Array): void {
   }
 }
 
-/** A row of three values times a vector of three, each from its offset on. */
+/**
+ * out[k..] = a 3 by 3 matrix from m[o..] on, row by row, times a vector from v[vo..] on. Results go into arrays all over
+ * this room: a number that crosses a call costs an allocation.
+ */
+export function timesInto(m: Float64Array, o: number, v: Float64Array, vo: number, out: Float64Array, k: number): void {
+  const x = v[vo] as number;
+  const y = v[vo + 1] as number;
+  const z = v[vo + 2] as number;
+  out[k] = (m[o] as number) * x + (m[o + 1] as number) * y + (m[o + 2] as number) * z;
+  out[k + 1] = (m[o + 3] as number) * x + (m[o + 4] as number) * y + (m[o + 5] as number) * z;
+  out[k + 2] = (m[o + 6] as number) * x + (m[o + 7] as number) * y + (m[o + 8] as number) * z;
+}
+
+/** A row of three values times a vector of three, each from its offset on: where nothing is done per command. */
 export function rowTimes(rows: Float64Array, row: number, v: Float64Array, o: number): number {
   return (
     (rows[row] as number) * (v[o] as number) +

@@ -1,5 +1,5 @@
 import { bodies, GRAVITY_MS2, type LinkInertia } from './bodies.ts';
-import { chain as makeChain, rowTimes } from './chain.ts';
+import { chain as makeChain, timesInto } from './chain.ts';
 import { passive } from './passive.ts';
 import type { ArmSpec } from './spec.ts';
 
@@ -55,13 +55,14 @@ export function dynamics(spec: ArmSpec, { inertia, gravityMS2 = GRAVITY_MS2 }: D
         (turn[9 * i + 3 + c] as number) * (v[1] as number) +
         (turn[9 * i + 6 + c] as number) * (v[2] as number);
     }
-    for (let r = 0; r < 3; r++) out[r] = rowTimes(inertiaKgM2, 9 * i + 3 * r, local, 0);
-    for (let r = 0; r < 3; r++) local[r] = out[r] as number;
-    for (let r = 0; r < 3; r++) out[r] = rowTimes(turn, 9 * i + 3 * r, local, 0);
+    timesInto(inertiaKgM2, 9 * i, local, 0, out, 0);
+    timesInto(turn, 9 * i, out, 0, out, 0);
   };
 
   /** Takes on the motion of link i's joint. */
-  const turnOn = (i: number, speed: number, accel: number): void => {
+  const turnOn = (i: number, speeds: Float64Array, accels: Float64Array): void => {
+    const speed = speeds[joint[i] as number] as number;
+    const accel = accels[joint[i] as number] as number;
     before.set(w);
     for (let k = 0; k < 3; k++) other[k] = (axis[3 * i + k] as number) * speed;
     for (let k = 0; k < 3; k++) {
@@ -73,7 +74,7 @@ export function dynamics(spec: ArmSpec, { inertia, gravityMS2 = GRAVITY_MS2 }: D
 
   /** Force on link i, and moment about its start: F = m a + dw x s + w x (w x s), N = s x a + I dw + w x I w. */
   const load = (i: number): void => {
-    for (let r = 0; r < 3; r++) s[r] = rowTimes(turn, 9 * i + 3 * r, momentKgM, 3 * i);
+    timesInto(turn, 9 * i, momentKgM, 3 * i, s, 0);
     spun.fill(0);
     addCross(spun, w, 0, s, 0);
     other.fill(0);
@@ -96,21 +97,22 @@ export function dynamics(spec: ArmSpec, { inertia, gravityMS2 = GRAVITY_MS2 }: D
     addCross(a, w, 0, spun, 0);
   };
 
-  const run = (q: Float64Array, speeds: Float64Array, accels: Float64Array, gravity: number): void => {
+  const run = (q: Float64Array, speeds: Float64Array, accels: Float64Array, weighed: boolean): void => {
     chain.pose(q);
     w.fill(0);
     dw.fill(0);
     a.fill(0);
     // A base that rises with g weighs as much as one that stands.
-    a[2] = gravity;
+    a[2] = weighed ? gravityMS2 : 0;
     for (let i = 0; i < links; i++) {
-      const j = joint[i] as number;
-      turnOn(i, speeds[j] as number, accels[j] as number);
+      turnOn(i, speeds, accels);
       load(i);
       goOn(i);
     }
     for (let i = links - 1; i >= 0; i--) {
-      torque[i] = rowTimes(axis, 3 * i, moment, 3 * i);
+      let about = 0;
+      for (let k = 3 * i; k < 3 * i + 3; k++) about += (axis[k] as number) * (moment[k] as number);
+      torque[i] = about;
       if (i === 0) continue;
       for (let k = 0; k < 3; k++) {
         local[k] = (at[3 * i + k] as number) - (at[3 * i - 3 + k] as number);
@@ -131,7 +133,7 @@ export function dynamics(spec: ArmSpec, { inertia, gravityMS2 = GRAVITY_MS2 }: D
 
   return {
     torqueNm(anglesRad, speedsRadS, accelsRadS2, out) {
-      run(anglesRad, speedsRadS, accelsRadS2, gravityMS2);
+      run(anglesRad, speedsRadS, accelsRadS2, true);
       pulls.addHeld(anglesRad, torque);
       for (let i = 0; i < links; i++) {
         const speed = speedsRadS[joint[i] as number] as number;
@@ -140,7 +142,7 @@ export function dynamics(spec: ArmSpec, { inertia, gravityMS2 = GRAVITY_MS2 }: D
       hand(out);
     },
     inertialNm(anglesRad, accelsRadS2, out) {
-      run(anglesRad, still, accelsRadS2, 0);
+      run(anglesRad, still, accelsRadS2, false);
       hand(out);
     },
   };

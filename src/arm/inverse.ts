@@ -21,8 +21,9 @@ export interface Inverse {
   /** Pitch that the last link should keep, radians against the horizontal, where a joint is free for it; NaN: none. */
   readonly pitchRad: Float64Array;
   /**
+   * A target that is not known (NaN) changes nothing.
    * @param targetM 3 values in the base's level frame, metres
-   * @param preferRad pose to settle towards, in joint order; joints that do not move the tip are put there
+   * @param preferRad pose to settle towards, in joint order; joints that do not reach are put there. NaN: no wish
    * @param anglesRad the last answer, in joint order; the new one is written here
    */
   solve(targetM: Float64Array, preferRad: Float64Array, anglesRad: Float64Array): void;
@@ -40,6 +41,7 @@ export interface InverseOptions {
 
 /** As a share of the reach a radian: below it a direction counts as singular. A call closes s^2 / (s^2 + damping^2). */
 const DAMPING = 0.05;
+const DAMPING_SQUARED = DAMPING * DAMPING;
 /** A fifth of a radian a call is 570 degrees a second at 50 calls: the governor limits the arm far below. */
 const TURN_MAX_RAD = 0.2;
 /** Settling takes at most this share of it: the rest is for the target. */
@@ -48,8 +50,12 @@ const SETTLING_SHARE = 0.5;
 const STEPS = 16;
 /** Slopes below this are flat; of a squared share of the reach per radian. */
 const FLAT = 1e-10;
+/** A joint that is held by less than this is not held, radians. */
+const HELD_RAD = 1e-10;
 /** Farther from the target than this share of the reach, a flat place may be a saddle: a straight arm, pulled along itself. */
 const SADDLE = 1e-5;
+/** A joint that moves the tip towards the target by less than this share of its way there, per radian, does not pull. */
+const SADDLE_PULL = 1e-3;
 /** A second derivative above minus this is no saddle's. */
 const SADDLE_CURVE = 1e-8;
 /** Turned towards the middle of the range to leave a saddle, radians. */
@@ -84,12 +90,14 @@ export function inverse(spec: ArmSpec, options: InverseOptions): Inverse {
   const column = new Uint8Array(m);
   /** cost[0]: here; cost[1]: after the step. */
   const cost = new Float64Array(2);
-
-  const clamp = (value: number, c: number): number => Math.min(Math.max(value, low[c] as number), high[c] as number);
+  const left = new Float64Array(1);
+  /** Added to the second derivative's diagonal. */
+  const stiffness = new Float64Array(1);
 
   const begin = (preferRad: Float64Array, q: Float64Array): void => {
     for (let j = 0; j < q.length; j++) {
-      const value = reaches[j] === 1 ? (q[j] as number) : (preferRad[j] as number);
+      const stays = reaches[j] === 1 || Number.isNaN(preferRad[j]);
+      const value = stays ? (q[j] as number) : (preferRad[j] as number);
       q[j] = Math.min(Math.max(value, minRad[j] as number), maxRad[j] as number);
     }
     for (let c = 0; c < m; c++) {
@@ -99,16 +107,22 @@ export function inverse(spec: ArmSpec, options: InverseOptions): Inverse {
     }
   };
 
-  const squaredError = (): number => (error[0] as number) ** 2 + (error[1] as number) ** 2 + (error[2] as number) ** 2;
+  /** left[0] = squared distance to the target, in shares of the reach. */
+  const measure = (): void => {
+    let sum = 0;
+    for (let k = 0; k < 3; k++) sum += (error[k] as number) * (error[k] as number);
+    left[0] = sum;
+  };
 
   const weigh = (q: Float64Array, targetM: Float64Array, i: number): void => {
     tip.look(q, targetM);
-    let sum = squaredError();
+    measure();
+    let sum = 0;
     for (let c = 0; c < m; c++) {
       const off = DAMPING * ((q[joints[c] as number] as number) - (anchor[c] as number));
       sum += off * off;
     }
-    cost[i] = sum;
+    cost[i] = sum + (left[0] as number);
   };
 
   /** Fills `slope`, and `free` with the joints that are not held by an end. True where it is flat. */
@@ -116,7 +130,7 @@ export function inverse(spec: ArmSpec, options: InverseOptions): Inverse {
     let steepest = 0;
     for (let c = 0; c < m; c++) {
       const at = q[joints[c] as number] as number;
-      let sum = DAMPING * DAMPING * (at - (anchor[c] as number));
+      let sum = DAMPING_SQUARED * (at - (anchor[c] as number));
       for (let k = 0; k < 3; k++) sum -= (jacobian[3 * c + k] as number) * (error[k] as number);
       slope[c] = sum;
       const held = (at <= (low[c] as number) && sum > 0) || (at >= (high[c] as number) && sum < 0);
@@ -127,7 +141,8 @@ export function inverse(spec: ArmSpec, options: InverseOptions): Inverse {
   };
 
   /** Takes the free joints' rows of `bent`, stiffened, into `small`, and factors them. */
-  const factorFree = (stiffen: number): boolean => {
+  const factorFree = (): boolean => {
+    const stiffen = stiffness[0] as number;
     let rows = 0;
     for (let c = 0; c < m; c++) if (free[c] === 1) column[rows++] = c;
     for (let r = 0; r < rows; r++) {
@@ -139,15 +154,14 @@ export function inverse(spec: ArmSpec, options: InverseOptions): Inverse {
   };
 
   /** step = the way to the lowest place of the quadratic model, inside the ranges. */
-  const lowest = (q: Float64Array, stiffen: number): void => {
+  const lowest = (q: Float64Array): void => {
     step.fill(0);
     for (let again = true; again; ) {
       again = false;
-      const damping = DAMPING * DAMPING + stiffen;
       tip.bend(error, bent, m);
-      if (!factorFree(damping)) {
+      if (!factorFree()) {
         tip.bend(NOWHERE, bent, m);
-        factorFree(damping);
+        factorFree();
       }
       let rows = 0;
       for (let c = 0; c < m; c++) {
@@ -162,9 +176,9 @@ export function inverse(spec: ArmSpec, options: InverseOptions): Inverse {
       for (let r = 0; r < rows; r++) {
         const c = column[r] as number;
         const at = q[joints[c] as number] as number;
-        step[c] = clamp(at + (rest[r] as number), c) - at;
+        step[c] = Math.min(Math.max(at + (rest[r] as number), low[c] as number), high[c] as number) - at;
         // A joint that meets its end stays there, and the others make up for it.
-        if (Math.abs((step[c] as number) - (rest[r] as number)) > FLAT) {
+        if (Math.abs((step[c] as number) - (rest[r] as number)) > HELD_RAD) {
           free[c] = 0;
           again = true;
         }
@@ -176,7 +190,8 @@ export function inverse(spec: ArmSpec, options: InverseOptions): Inverse {
     for (let c = 0; c < m; c++) {
       const j = joints[c] as number;
       kept[c] = q[j] as number;
-      q[j] = clamp((q[j] as number) + (step[c] as number), c);
+      const to = (q[j] as number) + (step[c] as number);
+      q[j] = Math.min(Math.max(to, low[c] as number), high[c] as number);
     }
   };
 
@@ -184,11 +199,19 @@ export function inverse(spec: ArmSpec, options: InverseOptions): Inverse {
     for (let c = 0; c < m; c++) q[joints[c] as number] = kept[c] as number;
   };
 
-  /** Far from the target on flat ground that falls off to both sides. */
+  /** Far from the target on flat ground that falls off to both sides: no joint that is free pulls the tip to it. */
   const onSaddle = (): boolean => {
-    if (squaredError() < SADDLE * SADDLE) return false;
+    measure();
+    if ((left[0] as number) < SADDLE * SADDLE) return false;
+    const mostPull = SADDLE_PULL * Math.sqrt(left[0] as number);
+    for (let c = 0; c < m; c++) {
+      let pull = 0;
+      for (let k = 0; k < 3; k++) pull += (jacobian[3 * c + k] as number) * (error[k] as number);
+      if (free[c] === 1 && Math.abs(pull) > mostPull) return false;
+    }
     tip.bend(error, bent, m);
-    return !factorFree(SADDLE_CURVE);
+    stiffness[0] = SADDLE_CURVE;
+    return !factorFree();
   };
 
   const kick = (q: Float64Array): void => {
@@ -203,7 +226,7 @@ export function inverse(spec: ArmSpec, options: InverseOptions): Inverse {
   /** Steps down to the nearest place to the target, damped towards the anchor. */
   const approach = (targetM: Float64Array, q: Float64Array): void => {
     weigh(q, targetM, 0);
-    let stiffen = 0;
+    let refused = 0;
     let kicked = false;
     for (let tried = 0; tried < STEPS; tried++) {
       tip.slopes();
@@ -214,18 +237,19 @@ export function inverse(spec: ArmSpec, options: InverseOptions): Inverse {
         weigh(q, targetM, 0);
         continue;
       }
-      lowest(q, stiffen);
+      stiffness[0] = refused === 0 ? DAMPING_SQUARED : DAMPING_SQUARED + STIFFEN_FIRST * STIFFEN ** (refused - 1);
+      lowest(q);
       take(q);
       weigh(q, targetM, 1);
       if ((cost[1] as number) < (cost[0] as number)) {
         cost[0] = cost[1] as number;
-        stiffen = stiffen > STIFFEN_FIRST ? stiffen / STIFFEN : 0;
+        refused = Math.max(0, refused - 1);
         continue;
       }
       takeBack(q);
       tip.look(q, targetM);
       if ((cost[1] as number) <= (cost[0] as number) * ROUNDED) return;
-      stiffen = stiffen === 0 ? STIFFEN_FIRST : STIFFEN * stiffen;
+      refused++;
     }
     tip.slopes();
   };
@@ -245,8 +269,9 @@ export function inverse(spec: ArmSpec, options: InverseOptions): Inverse {
     }
     for (let c = 0; c < m; c++) {
       const j = joints[c] as number;
-      anchor[c] = clamp((q[j] as number) + share * (step[c] as number), c);
-      q[j] = anchor[c] as number;
+      const to = (q[j] as number) + share * (step[c] as number);
+      q[j] = Math.min(Math.max(to, low[c] as number), high[c] as number);
+      anchor[c] = q[j] as number;
     }
   };
 
@@ -254,12 +279,14 @@ export function inverse(spec: ArmSpec, options: InverseOptions): Inverse {
     leftM,
     pitchRad,
     solve(targetM, preferRad, q) {
+      if (Number.isNaN((targetM[0] as number) + (targetM[1] as number) + (targetM[2] as number))) return;
       begin(preferRad, q);
       for (let c = 0; c < m; c++) anchor[c] = q[joints[c] as number] as number;
       approach(targetM, q);
       settle(preferRad, q);
       approach(targetM, q);
-      leftM[0] = reachM * Math.sqrt(squaredError());
+      measure();
+      leftM[0] = reachM * Math.sqrt(left[0] as number);
     },
   };
 }

@@ -27,40 +27,46 @@ export interface KeepOuts {
 /** @param places in the base's level frame, metres */
 export function keepOuts(places: readonly KeepOut[]): KeepOuts {
   const depth = new Float64Array(places.length);
+  const floorM = Float64Array.from(places, (place) => (place.kind === 'below' ? place.zM : Number.NEGATIVE_INFINITY));
   const one = new Float64Array(1);
+  const room = new Float64Array(3);
   let links = 0;
 
   const depthAt = (at: Float64Array, place: KeepOut, p: number, fixedToo: boolean): void => {
-    let deepest = 0;
+    depth[p] = 0;
     if (place.kind === 'below') {
       // The first axis does not move: a motion cannot be blamed for where it is.
-      for (let k = fixedToo ? 0 : 1; k <= links; k++) deepest = Math.max(deepest, place.zM - (at[3 * k + 2] as number));
+      for (let k = fixedToo ? 0 : 1; k <= links; k++) {
+        depth[p] = Math.max(depth[p] as number, (floorM[p] as number) - (at[3 * k + 2] as number));
+      }
     } else {
       for (let i = 0; i < links; i++) {
         depthIn(at, i, place, one, 0);
-        deepest = Math.max(deepest, one[0] as number);
+        depth[p] = Math.max(depth[p] as number, one[0] as number);
       }
     }
-    depth[p] = deepest > TOUCHING_M ? deepest : 0;
+    if ((depth[p] as number) <= TOUCHING_M) depth[p] = 0;
   };
 
   /** What stands on a floor is not near it: the first axis does not count. */
-  const distance = (at: Float64Array, place: KeepOut): number => {
+  const distance = (at: Float64Array, place: KeepOut, p: number): number => {
     let nearest = Number.POSITIVE_INFINITY;
     for (let i = 0; i < links; i++) {
       if (place.kind === 'box') distanceTo(at, i, place, one);
-      else one[0] = (at[3 * i + 5] as number) - place.zM;
+      else one[0] = (at[3 * i + 5] as number) - (floorM[p] as number);
       nearest = Math.min(nearest, one[0] as number);
     }
     return nearest;
   };
 
-  const belowEntered = (b: Float64Array, a: Float64Array, zM: number, depthM: number, bulge: Float64Array): boolean => {
+  const belowEntered = (b: Float64Array, a: Float64Array, p: number, bulgeM: Float64Array): boolean => {
+    const deep = depth[p] as number;
     for (let k = 1; k <= links; k++) {
-      const to = (a[3 * k + 2] as number) - zM;
+      room[0] = (b[3 * k + 2] as number) - (floorM[p] as number);
+      room[1] = (a[3 * k + 2] as number) - (floorM[p] as number);
+      room[2] = bulgeM[k] as number;
       // From inside: no deeper, at every look.
-      if (depthM > 0 ? to < -depthM - TOUCHING_M : !staysOut((b[3 * k + 2] as number) - zM, to, bulge[k] as number))
-        return true;
+      if (deep > 0 ? (room[1] as number) < -deep - TOUCHING_M : !staysOut(room)) return true;
     }
     return false;
   };
@@ -73,7 +79,7 @@ export function keepOuts(places: readonly KeepOut[]): KeepOuts {
       for (let p = 0; p < places.length; p++) {
         const place = places[p] as KeepOut;
         depthAt(chain.at, place, p, true);
-        least = Math.min(least, (depth[p] as number) > 0 ? -(depth[p] as number) : distance(chain.at, place));
+        least = Math.min(least, (depth[p] as number) > 0 ? -(depth[p] as number) : distance(chain.at, place, p));
       }
       out[0] = least;
     },
@@ -85,9 +91,10 @@ export function keepOuts(places: readonly KeepOut[]): KeepOuts {
       for (let p = 0; p < places.length; p++) {
         const place = places[p] as KeepOut;
         for (let k = 1; k <= links; k++) {
-          const margin = marginM[k] as number;
           if (
-            place.kind === 'below' ? (at[3 * k + 2] as number) - margin < place.zM : !clearBy(at, k - 1, place, margin)
+            place.kind === 'below'
+              ? (at[3 * k + 2] as number) - (marginM[k] as number) < (floorM[p] as number)
+              : !clearBy(at, k - 1, place, marginM)
           )
             return true;
         }
@@ -99,12 +106,11 @@ export function keepOuts(places: readonly KeepOut[]): KeepOuts {
         const place = places[p] as KeepOut;
         const deep = depth[p] as number;
         if (place.kind === 'below') {
-          if (belowEntered(before, after, place.zM, deep, bulgeM)) return true;
+          if (belowEntered(before, after, p, bulgeM)) return true;
           continue;
         }
         for (let i = 0; i < links; i++) {
-          if (deep > 0 ? enters(after, i, place, deep) : !passesBy(before, after, i, place, bulgeM[i + 1] as number))
-            return true;
+          if (deep > 0 ? enters(after, i, place, deep) : !passesBy(before, after, i, place, bulgeM)) return true;
         }
       }
       return false;

@@ -1,5 +1,5 @@
 import { bodies, GRAVITY_MS2 } from './bodies.ts';
-import { chain as makeChain, rowTimes } from './chain.ts';
+import { chain as makeChain, timesInto } from './chain.ts';
 import { loadBounds } from './load-bounds.ts';
 import { passive } from './passive.ts';
 import type { ArmSpec, LinkSpec } from './spec.ts';
@@ -34,6 +34,9 @@ export function loads(spec: ArmSpec, joints: number): Loads {
   const { massKg, momentKgM } = bodies(spec);
   const pulls = passive(spec);
   const torque = new Float64Array(links);
+  /** Mass beyond a joint, and its first moment along x and y. */
+  const beyond = new Float64Array(3);
+  const moment = new Float64Array(3);
   const byJoint = new Float64Array(joints);
   const held = new Float64Array(joints);
   const limitOf = (share: (motor: NonNullable<LinkSpec['motor']>) => number): Float64Array =>
@@ -53,16 +56,17 @@ export function loads(spec: ArmSpec, joints: number): Loads {
 
   const hold = (anglesRad: Float64Array): void => {
     chain.pose(anglesRad);
-    let mass = 0;
-    let x = 0;
-    let y = 0;
+    beyond.fill(0);
     for (let i = links - 1; i >= 0; i--) {
-      const m = massKg[i] as number;
-      mass += m;
-      x += m * (at[3 * i] as number) + rowTimes(turn, 9 * i, momentKgM, 3 * i);
-      y += m * (at[3 * i + 1] as number) + rowTimes(turn, 9 * i + 3, momentKgM, 3 * i);
-      const rx = x - mass * (at[3 * i] as number);
-      const ry = y - mass * (at[3 * i + 1] as number);
+      const x = at[3 * i] as number;
+      const y = at[3 * i + 1] as number;
+      const kg = massKg[i] as number;
+      timesInto(turn, 9 * i, momentKgM, 3 * i, moment, 0);
+      beyond[0] = (beyond[0] as number) + kg;
+      beyond[1] = (beyond[1] as number) + kg * x + (moment[0] as number);
+      beyond[2] = (beyond[2] as number) + kg * y + (moment[1] as number);
+      const rx = (beyond[1] as number) - (beyond[0] as number) * x;
+      const ry = (beyond[2] as number) - (beyond[0] as number) * y;
       // Weight turns the joint by a . (r x (0, 0, -g)) = g (ay rx - ax ry); holding takes the opposite.
       torque[i] = GRAVITY_MS2 * ((axis[3 * i] as number) * ry - (axis[3 * i + 1] as number) * rx);
     }

@@ -1,5 +1,5 @@
 import { bodies } from './bodies.ts';
-import { chain as makeChain, rowTimes } from './chain.ts';
+import { chain as makeChain, timesInto } from './chain.ts';
 import { smallestCircle } from './circle.ts';
 import type { ArmSpec, LinkSpec, Vec3 } from './spec.ts';
 
@@ -68,6 +68,7 @@ function momentsOf(
   const levels = Math.min(LEVELS_MAX, Math.max(2, Math.floor(POSES ** (1 / Math.max(1, beyond.length)) + ROUNDING)));
   const pose = Float64Array.from(minRad, (low, j) => 0.5 * (low + (maxRad[j] as number)));
   const world = new Float64Array(3);
+  const own = new Float64Array(3);
   const found: number[] = [];
   for (let n = 0; n < levels ** beyond.length; n++) {
     let digits = n;
@@ -79,10 +80,10 @@ function momentsOf(
     chain.pose(pose);
     world.fill(0);
     for (let i = link; i < links; i++) {
+      timesInto(turn, 9 * i, momentKgM, 3 * i, own, 0);
       for (let r = 0; r < 3; r++) {
         const lever = (at[3 * i + r] as number) - (at[3 * link + r] as number);
-        world[r] =
-          (world[r] as number) + (massKg[i] as number) * lever + rowTimes(turn, 9 * i + 3 * r, momentKgM, 3 * i);
+        world[r] = (world[r] as number) + (massKg[i] as number) * lever + (own[r] as number);
       }
     }
     let alongU = 0;

@@ -1,5 +1,5 @@
 import { pointMasses } from './bodies.ts';
-import { chain as makeChain, rowTimes } from './chain.ts';
+import { chain as makeChain, timesInto } from './chain.ts';
 import type { ArmSpec } from './spec.ts';
 
 /** What a moving arm does to its base: the masses beyond it as points, and how they push back. */
@@ -91,8 +91,9 @@ export function reaction(spec: ArmSpec, { speedRadS, accelRadS2 }: MotionBounds)
       speeding.fill(0);
       turning.fill(0);
       for (const { link, massKg, local } of masses) {
+        timesInto(turn, 9 * link, local, 0, point, 0);
         for (let r = 0; r < 3; r++) {
-          point[r] = (at[3 * link + r] as number) + rowTimes(turn, 9 * link + 3 * r, local, 0);
+          point[r] = (point[r] as number) + (at[3 * link + r] as number);
           sum[r] = (sum[r] as number) + massKg * (point[r] as number);
         }
         addMass(link, massKg);

@@ -64,7 +64,8 @@ export function settling(tip: TipMotion): Settling {
     pitchPull[0] = off;
     for (let c = 0; c < m; c++) {
       const j = joints[c] as number;
-      const away = (q[j] as number) - (preferRad[j] as number) + off * (tip.pitch.slope[c] as number);
+      const prefer = preferRad[j] as number;
+      const away = (Number.isNaN(prefer) ? 0 : (q[j] as number) - prefer) + off * (tip.pitch.slope[c] as number);
       slope[c] = free[c] === 1 ? away : 0;
     }
   };
@@ -73,11 +74,11 @@ export function settling(tip: TipMotion): Settling {
   const prepare = (): void => {
     for (let r = 0; r < 3; r++) {
       for (let s = 0; s <= r; s++) {
-        let sum = r === s ? DAMPING : 0;
+        let sum = 0;
         for (let c = 0; c < m; c++) {
           if (free[c] === 1) sum += (jacobian[3 * c + r] as number) * (jacobian[3 * c + s] as number);
         }
-        gram[3 * r + s] = sum;
+        gram[3 * r + s] = r === s ? sum + DAMPING : sum;
       }
     }
     factor(gram, 3, 3);
@@ -109,13 +110,15 @@ export function settling(tip: TipMotion): Settling {
    * Newton's step down the projected slope, with room for a bend. WISH times its second derivative is
    * J'J + WISH (1 + pitch) - (error + WISH hold) . d2p/dq2. False where that is not positive definite.
    */
-  const newton = (pitchWeight: number, room: number): boolean => {
+  const newton = (pitched: boolean, roomy: boolean): boolean => {
     for (let r = 0; r < 3; r++) along[r] = (error[r] as number) + WISH * (hold[r] as number);
     tip.bend(along, bent, m);
     const pull = pitchPull[0] as number;
     if (pull !== 0) tip.pitch.addBend(WISH * pull, bent, m);
     let bend = WISH * Math.abs(pull);
     for (let r = 0; r < 3; r++) bend += Math.abs(error[r] as number) + WISH * Math.abs(hold[r] as number);
+    const room = WISH + (roomy ? BEND_MOST : BEND) * bend;
+    const pitchWeight = pitched ? PITCH_WEIGHT : 0;
     let rows = 0;
     for (let c = 0; c < m; c++) if (free[c] === 1) column[rows++] = c;
     for (let r = 0; r < rows; r++) {
@@ -125,7 +128,7 @@ export function settling(tip: TipMotion): Settling {
         const b = column[s] as number;
         small[r * m + s] = (bent[c * m + b] as number) + weight * (tip.pitch.slope[b] as number);
       }
-      small[r * m + r] = (small[r * m + r] as number) + WISH + room * bend;
+      small[r * m + r] = (small[r * m + r] as number) + room;
       part[r] = -WISH * (slope[c] as number);
     }
     if (!factor(small, m, rows)) return false;
@@ -136,7 +139,7 @@ export function settling(tip: TipMotion): Settling {
 
   return {
     settle(anglesRad, preferRad, pitchRad, minRad, maxRad, step) {
-      const pitchWeight = Number.isNaN(pitchRad[0]) ? 0 : PITCH_WEIGHT;
+      const pitched = !Number.isNaN(pitchRad[0]);
       free.fill(1);
       for (let frozen = true; frozen; ) {
         frozen = false;
@@ -144,7 +147,7 @@ export function settling(tip: TipMotion): Settling {
         prepare();
         holdInto(hold);
         project();
-        if (newton(pitchWeight, BEND) || newton(pitchWeight, BEND_MOST)) project();
+        if (newton(pitched, false) || newton(pitched, true)) project();
         else slope.fill(0);
         for (let c = 0; c < m; c++) {
           const j = joints[c] as number;

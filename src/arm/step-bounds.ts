@@ -8,8 +8,8 @@ import { leversM } from './extent.ts';
  * lies no further than M h^2 / 8 beside the straight line over a time h.
  */
 export interface StepBounds {
-  /** Sum over the joints with a link: W for joint speeds, an angle for joint turns. */
-  turnOf(by: Float64Array): number;
+  /** out[i] = sum over the joints with a link: W for joint speeds, an angle for joint turns. */
+  turnInto(by: Float64Array, out: Float64Array, i: number): void;
   /** out[k] = most that link end k moves for these joint speeds or turns: S. It grows with k. */
   reachInto(by: Float64Array, out: Float64Array): void;
   /** out[j] = b - a. */
@@ -22,10 +22,10 @@ export function stepBounds({ spec, links, joint }: Chain, joints: number): StepB
   const ends = links + 1;
   const levers = leversM(spec);
   return {
-    turnOf(by) {
+    turnInto(by, out, i) {
       let sum = 0;
-      for (let i = 0; i < links; i++) sum += Math.abs(by[joint[i] as number] as number);
-      return sum;
+      for (let k = 0; k < links; k++) sum += Math.abs(by[joint[k] as number] as number);
+      out[i] = sum;
     },
     reachInto(by, out) {
       out.fill(0);

@@ -181,6 +181,26 @@ describe('the inverse of an arm, for a standing target', () => {
   });
 });
 
+describe('what is not known', () => {
+  const prefer = Float64Array.of(0, 0.6, 0.6, 0.3, 0.2);
+
+  it('as a target changes nothing', () => {
+    const q = prefer.slice();
+    solverOf(bird()).solve(Float64Array.of(0.3, Number.NaN, 0.2), new Float64Array(5), q);
+    expect([...q]).toEqual([...prefer]);
+  });
+
+  it('as a preferred angle is no wish: the joint goes where the tip needs it, or stays', () => {
+    const solver = solverOf(bird(), { moves: [0, 1, 2, 3] });
+    const q = prefer.slice();
+    const unknown = Float64Array.of(Number.NaN, 0.5, Number.NaN, 0.2, Number.NaN);
+    for (let call = 0; call < 50; call++) solver.solve(Float64Array.of(0.3, 0.1, 0.3), unknown, q);
+    expect(solver.leftM[0]).toBeLessThan(1e-6);
+    expect(q.every(Number.isFinite)).toBe(true);
+    expect(q[4]).toBe(0.2);
+  });
+});
+
 describe('joints to spare', () => {
   it('settle at the pose nearest to the joint-mode pose that still has the tip on its target', () => {
     const spec = planar([0.3, 0.3, 0.2, 0.2]);
@@ -336,7 +356,7 @@ describe('a target that moves, at 50 and at 200 commands a second', () => {
     });
   }
 
-  it('does not shake while its target stands, wherever that is: what still moves settles, or drifts evenly', () => {
+  it('does not shake while its target stands, wherever that is: what still moves does not turn back', () => {
     const place = fc.tuple(finite(-2, 2), finite(-2, 2), finite(-1, 4));
     const pitch = fc.oneof(fc.constant(Number.NaN), finite(-1.5, 1.5));
     fc.assert(
@@ -361,11 +381,12 @@ describe('a target that moves, at 50 and at 200 commands a second', () => {
             solver.solve(Float64Array.from(target), pose, q);
             for (let j = 0; j < n; j++) {
               const moved = (q[j] as number) - (before[j] as number);
-              if (call >= 400) shake = Math.max(shake, Math.abs(moved - (step[j] as number)));
+              const back = moved * (step[j] as number) < 0 ? Math.min(Math.abs(moved), Math.abs(step[j] as number)) : 0;
+              if (call >= 400) shake = Math.max(shake, back);
               step[j] = moved;
             }
           }
-          expect(shake).toBeLessThan(1e-3);
+          expect(shake).toBeLessThan(1e-4);
         },
       ),
       { numRuns: 40, endOnFailure: true },

@@ -1,6 +1,6 @@
 import type { LinkInertia } from '../../src/arm/bodies.ts';
 import { pointMasses } from '../../src/arm/bodies.ts';
-import { chain, rowTimes } from '../../src/arm/chain.ts';
+import { chain, timesInto } from '../../src/arm/chain.ts';
 import { dynamics } from '../../src/arm/dynamics.ts';
 import { passive } from '../../src/arm/passive.ts';
 import type { ArmSpec } from '../../src/arm/spec.ts';
@@ -91,8 +91,9 @@ export function energyOf(spec: ArmSpec, q: Float64Array, v: Float64Array): numbe
   const poser = chain(spec);
   poser.pose(q);
   const height = pointMasses(spec).reduce((sum, { link, massKg, atM }) => {
-    const z = (poser.at[3 * link + 2] as number) + rowTimes(poser.turn, 9 * link + 6, Float64Array.from(atM), 0);
-    return sum + massKg * 9.80665 * z;
+    const place = new Float64Array(3);
+    timesInto(poser.turn, 9 * link, Float64Array.from(atM), 0, place, 0);
+    return sum + massKg * 9.80665 * ((poser.at[3 * link + 2] as number) + (place[2] as number));
   }, 0);
   return motion + height + passive(spec).energyJ(q);
 }
