@@ -24,7 +24,7 @@ export interface Balanced {
   readonly counterweight: MassSpec;
   /** Pieces of the stock that it is made of; null without a stock. */
   readonly taken: Taken | null;
-  /** Distance from the axis at which exactly this mass balances best: where to slide it to. */
+  /** Distance from the axis at which exactly this mass balances best: where to slide it to. Infinity without any mass. */
   readonly exactDistanceM: number;
   /** Torque that no weight on this link can take, because the joints beyond or the payload move it, newton metres. */
   readonly strayNm: number;

@@ -6,10 +6,8 @@ import { chain as makeChain } from './chain.ts';
 import type { ArmSpec, KeepOut } from './spec.ts';
 import { stepBounds } from './step-bounds.ts';
 
-/** What a whole arm, not one joint, has to keep. */
+/** What a whole arm, not one joint, has to keep whatever it does; the cap on its speed comes with each step. */
 export interface ArmLimits {
-  /** Cap on the speed of every link end, m/s; null: none. */
-  readonly endSpeedMS: number | null;
   readonly keepOut: readonly KeepOut[];
 }
 

@@ -11,9 +11,9 @@ import { tipMotion } from './tip-motion.ts';
  *
  * A call minimises |tip - target|^2 / reach^2 + damping^2 |q - a|^2 within the ranges, where `a` is the last answer,
  * moved a little towards the preferred pose as far as the tip is not moved by it. So a target that stands is met
- * exactly after some calls, the nearest reachable point is, if it is out of reach, and near a singular pose a call turns
- * no joint by more than 1 / (2 damping) radians for each reach that the target is away. The full second derivative is
- * used, because at the edge of reach J'J alone overshoots from one side of the stretched pose to the other.
+ * exactly after some calls, the nearest reachable point is, if it is out of reach, and near a singular pose a call answers
+ * with 1 / damping radians at most for each reach that the target is away: it lags instead of shaking. The full second
+ * derivative is used, because at the edge of reach J'J alone overshoots from one side of the stretched pose to the other.
  */
 export interface Inverse {
   /** What is left between the tip and the target after the last call, metres. */

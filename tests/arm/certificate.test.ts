@@ -1,20 +1,23 @@
 import fc from 'fast-check';
 import { describe, expect, it } from 'vitest';
-import { BREAKS, certificate, type ArmLimits } from '../../src/arm/certificate.ts';
+import { BREAKS, certificate } from '../../src/arm/certificate.ts';
 import { chain } from '../../src/arm/chain.ts';
 import { keepOuts } from '../../src/arm/keep-outs.ts';
 import { loads } from '../../src/arm/load.ts';
 import type { ArmSpec, KeepOut } from '../../src/arm/spec.ts';
+import type { WholeArmSpec } from '../../src/follower/spec.ts';
 import { governor } from '../../src/follower/governor.ts';
 import { wholeArm } from '../../src/follower/whole-arm.ts';
 import { random } from '../../src/sim/random.ts';
 import { type Accepted, motionFaults, type MotionLimits } from '../motion-laws.ts';
 import { arm, builtArm, DEG, finite, link, planar, Y, Z } from './arms.ts';
 
+type ArmLimits = Pick<WholeArmSpec, 'endSpeedMS' | 'keepOut'>;
+
 const NONE: ArmLimits = { endSpeedMS: null, keepOut: [] };
 const DT = Float64Array.of(0.02);
 
-function whole(spec: ArmSpec, limits: ArmLimits, limitLoad = false) {
+function whole(spec: ArmSpec, limits: ArmLimits, limitLoad = false): WholeArmSpec {
   return { arm: spec, ...limits, limitLoad, limitAccel: false, tip: null };
 }
 
@@ -304,7 +307,7 @@ describe('an arm that is held back', () => {
       [1],
       [{ massKg: 1, centreM: [1, 0, 0], motor: { stallNm: 10, use: 1, holdUse: 0.5, stallA: null } }],
     );
-    const { judge } = certificate(bar, 1, Float64Array.of(10), { endSpeedMS: null, keepOut: [floor] }, loads(bar, 1));
+    const { judge } = certificate(bar, 1, Float64Array.of(10), { keepOut: [floor] }, loads(bar, 1));
     const asked = (x0: number, x: number, v: number, cap: number): number => {
       DT[0] = 0.02;
       return judge(Float64Array.of(x0), Float64Array.of(x), Float64Array.of(v), DT, Float64Array.of(cap), true);

@@ -5,7 +5,7 @@ import { effort } from '../../src/arm/effort.ts';
 import { loads } from '../../src/arm/load.ts';
 import { timeFactor } from '../../src/arm/scale.ts';
 import type { ArmSpec } from '../../src/arm/spec.ts';
-import { angles, anyArm, arm, bird, DEG, link, planar, Y, Z } from './arms.ts';
+import { angles, anyArm, arm, bird, DEG, finite, link, planar, Y, Z } from './arms.ts';
 import { energyOf, swing } from './swing.ts';
 
 function torqueOf(spec: ArmSpec, q: Float64Array, qd: Float64Array, qdd: Float64Array): number[] {
@@ -94,6 +94,30 @@ describe('the torque that moves an arm', () => {
         inertialNm(pose.slice(0, n), accels.slice(0, n), torque);
         const work = torque.reduce((sum, value, j) => sum + value * (accels[j] as number), 0);
         expect(work).toBeGreaterThan(-1e-9);
+      }),
+    );
+  });
+
+  it('grows with the square of the pace, the weight apart, for any arm', () => {
+    // J. M. Hollerbach, J. Dyn. Sys. Meas. Control 106 (1984) 102-106 (from memory): a path run k times as fast has k times
+    // the speeds and k^2 times the accelerations, and takes g + k^2 (torque - g).
+    fc.assert(
+      fc.property(anyArm, angles(8, 3), angles(8, 2), angles(8, 4), finite(0.2, 3), (spec, pose, speeds, accels, k) => {
+        const n = spec.links.length;
+        const still = new Float64Array(n);
+        const at = (times: number): number[] =>
+          torqueOf(
+            spec,
+            pose.slice(0, n),
+            speeds.slice(0, n).map((v) => times * v),
+            accels.slice(0, n).map((a) => times * times * a),
+          );
+        const weight = torqueOf(spec, pose.slice(0, n), still, still);
+        const once = at(1);
+        for (const [j, torque] of at(k).entries()) {
+          const g = weight[j] as number;
+          expect(torque).toBeCloseTo(g + k * k * ((once[j] as number) - g), 8);
+        }
       }),
     );
   });

@@ -83,7 +83,7 @@ function loadAndDynamics(): ArmKernel {
 function certified(close: boolean): ArmKernel {
   const accel = new Float64Array(JOINTS).fill(6);
   const keepOut = [{ kind: 'below', zM: close ? 0.3 : -2 }] as const;
-  const judge = certificate(SIX, JOINTS, accel, { endSpeedMS: null, keepOut }, loads(SIX, JOINTS)).judge;
+  const judge = certificate(SIX, JOINTS, accel, { keepOut }, loads(SIX, JOINTS)).judge;
   const poses = hand();
   const x0 = new Float64Array(JOINTS);
   const x = new Float64Array(JOINTS);
