@@ -15,10 +15,12 @@ else {
   const figures = await measure(asked.has('--tiny') ? SIZES.tiny : SIZES.whole, (line) => console.error(line));
   // Not loaded by the processes that measure: what they have compiled before moves their figures.
   const { TAKE_SIZES, takeFigures, takeReport } = await import('./bench/take.ts');
+  const { ARM_SIZES, armFigures, armReport } = await import('./bench/arm.ts');
+  const arms = armFigures(asked.has('--tiny') ? ARM_SIZES.tiny : ARM_SIZES.whole);
   const takes = await takeFigures(asked.has('--tiny') ? TAKE_SIZES.tiny : TAKE_SIZES.whole);
   console.log(
     asked.has('--json')
-      ? JSON.stringify({ ...figures, targets: targets(figures), takes }, null, 2)
-      : report(figures) + takeReport(takes),
+      ? JSON.stringify({ ...figures, targets: targets(figures), arms, takes }, null, 2)
+      : `${report(figures)}\n${armReport(arms)}\n${takeReport(takes)}`,
   );
 }
