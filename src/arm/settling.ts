@@ -29,8 +29,9 @@ const SINGULAR = 0.003;
 const DAMPING = SINGULAR * SINGULAR;
 /** How little the wish counts against the target, where both are in the second derivative: squared shares of the reach. */
 const WISH = 1e-4;
-/** How much more a radian of pitch counts than a radian away from the pose. */
+/** How much more a radian of pitch counts than a radian away from the pose, and how hard the pitch pulls at most. */
 const PITCH_WEIGHT = 100;
+const PITCH_PULL_MAX = 10;
 /** Applied twice, so that the damped projector leaks in proportion to the fourth power of what is singular. */
 const PASSES = 2;
 /** Shares of the sharpest bend there may be that the step allows for: at first, and where that was not enough. */
@@ -53,6 +54,7 @@ export function settling(tip: TipMotion): Settling {
   const along = new Float64Array(3);
   /** How hard the pitch pulls, with its sign: it bends the wish by that much of its own bend. */
   const pitchPull = new Float64Array(1);
+  const pitchWeight = new Float64Array(1);
   const bent = new Float64Array(m * m);
   const small = new Float64Array(m * m);
   const part = new Float64Array(m);
@@ -60,13 +62,15 @@ export function settling(tip: TipMotion): Settling {
   /** slope = that of half the squared distance to the wish, over the free joints. */
   const wish = (q: Float64Array, preferRad: Float64Array, pitchRad: Float64Array): void => {
     const pitch = pitchRad[0] as number;
-    const off = Number.isNaN(pitch) ? 0 : PITCH_WEIGHT * ((tip.pitch.rad[0] as number) - pitch);
-    pitchPull[0] = off;
+    const away = Number.isNaN(pitch) ? 0 : (tip.pitch.rad[0] as number) - pitch;
+    pitchWeight[0] = Number.isNaN(pitch) ? 0 : Math.min(PITCH_WEIGHT, PITCH_PULL_MAX / Math.abs(away));
+    const pull = away === 0 ? 0 : (pitchWeight[0] as number) * away;
+    pitchPull[0] = pull;
     for (let c = 0; c < m; c++) {
       const j = joints[c] as number;
       const prefer = preferRad[j] as number;
-      const away = (Number.isNaN(prefer) ? 0 : (q[j] as number) - prefer) + off * (tip.pitch.slope[c] as number);
-      slope[c] = free[c] === 1 ? away : 0;
+      const off = Number.isNaN(prefer) ? 0 : (q[j] as number) - prefer;
+      slope[c] = free[c] === 1 ? off + pull * (tip.pitch.slope[c] as number) : 0;
     }
   };
 
@@ -110,7 +114,7 @@ export function settling(tip: TipMotion): Settling {
    * Newton's step down the projected slope, with room for a bend. WISH times its second derivative is
    * J'J + WISH (1 + pitch) - (error + WISH hold) . d2p/dq2. False where that is not positive definite.
    */
-  const newton = (pitched: boolean, roomy: boolean): boolean => {
+  const newton = (roomy: boolean): boolean => {
     for (let r = 0; r < 3; r++) along[r] = (error[r] as number) + WISH * (hold[r] as number);
     tip.bend(along, bent, m);
     const pull = pitchPull[0] as number;
@@ -118,12 +122,11 @@ export function settling(tip: TipMotion): Settling {
     let bend = WISH * Math.abs(pull);
     for (let r = 0; r < 3; r++) bend += Math.abs(error[r] as number) + WISH * Math.abs(hold[r] as number);
     const room = WISH + (roomy ? BEND_MOST : BEND) * bend;
-    const pitchWeight = pitched ? PITCH_WEIGHT : 0;
     let rows = 0;
     for (let c = 0; c < m; c++) if (free[c] === 1) column[rows++] = c;
     for (let r = 0; r < rows; r++) {
       const c = column[r] as number;
-      const weight = WISH * pitchWeight * (tip.pitch.slope[c] as number);
+      const weight = WISH * (pitchWeight[0] as number) * (tip.pitch.slope[c] as number);
       for (let s = 0; s <= r; s++) {
         const b = column[s] as number;
         small[r * m + s] = (bent[c * m + b] as number) + weight * (tip.pitch.slope[b] as number);
@@ -137,17 +140,34 @@ export function settling(tip: TipMotion): Settling {
     return true;
   };
 
+  /**
+   * Leaves out the joints that stand at an end because the target pulls them there, harder than the wish pulls back: they
+   * would go, and the target would have them back.
+   */
+  const leaveOut = (q: Float64Array, preferRad: Float64Array, minRad: Float64Array, maxRad: Float64Array): void => {
+    for (let c = 0; c < m; c++) {
+      const j = joints[c] as number;
+      const at = q[j] as number;
+      let pull = 0;
+      for (let k = 0; k < 3; k++) pull += (jacobian[3 * c + k] as number) * (error[k] as number);
+      const back = WISH * Math.abs(at - (preferRad[j] as number));
+      const held =
+        (pull > back && (maxRad[j] as number) - at < AT_END_RAD) ||
+        (-pull > back && at - (minRad[j] as number) < AT_END_RAD);
+      free[c] = held ? 0 : 1;
+    }
+  };
+
   return {
     settle(anglesRad, preferRad, pitchRad, minRad, maxRad, step) {
-      const pitched = !Number.isNaN(pitchRad[0]);
-      free.fill(1);
+      leaveOut(anglesRad, preferRad, minRad, maxRad);
       for (let frozen = true; frozen; ) {
         frozen = false;
         wish(anglesRad, preferRad, pitchRad);
         prepare();
         holdInto(hold);
         project();
-        if (newton(pitched, false) || newton(pitched, true)) project();
+        if (newton(false) || newton(true)) project();
         else slope.fill(0);
         for (let c = 0; c < m; c++) {
           const j = joints[c] as number;

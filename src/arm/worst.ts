@@ -36,10 +36,12 @@ export function worst({ minRad, maxRad, joints }: Ranges, score: (anglesRad: Flo
     const value = score(pose);
     return Number.isNaN(value) ? Number.NEGATIVE_INFINITY : value;
   };
-  const starts = gridBest(middle, minRad, maxRad, joints, valueOf);
+  const root = GRID_POSES ** (1 / Math.max(1, joints.length));
+  const levels = Math.min(GRID_LEVELS_MAX, Math.max(2, Math.floor(root + ROUNDING)));
+  const starts = gridBest(middle, { minRad, maxRad, joints }, levels, valueOf);
   let best = starts[0] as Worst;
   for (const start of starts) {
-    const top = climb(start, minRad, maxRad, joints, valueOf);
+    const top = climb(start, { minRad, maxRad, joints }, levels, valueOf);
     if (top.value > best.value) best = top;
   }
   return best;
@@ -47,15 +49,10 @@ export function worst({ minRad, maxRad, joints }: Ranges, score: (anglesRad: Flo
 
 function gridBest(
   middle: Float64Array,
-  minRad: ArrayLike<number>,
-  maxRad: ArrayLike<number>,
-  joints: readonly number[],
+  { minRad, maxRad, joints }: Ranges,
+  levels: number,
   valueOf: (pose: Float64Array) => number,
 ): Worst[] {
-  const levels = Math.min(
-    GRID_LEVELS_MAX,
-    Math.max(2, Math.floor(GRID_POSES ** (1 / Math.max(1, joints.length)) + ROUNDING)),
-  );
   const found: Worst[] = [{ value: valueOf(middle), poseRad: middle }];
   const pose = Float64Array.from(middle);
   for (let k = 0; k < levels ** joints.length; k++) {
@@ -76,14 +73,15 @@ function gridBest(
 
 function climb(
   start: Worst,
-  minRad: ArrayLike<number>,
-  maxRad: ArrayLike<number>,
-  joints: readonly number[],
+  { minRad, maxRad, joints }: Ranges,
+  levels: number,
   valueOf: (pose: Float64Array) => number,
 ): Worst {
   const pose = Float64Array.from(start.poseRad);
   let top = start.value;
-  let step = Math.max(...joints.map((j) => ((maxRad[j] as number) - (minRad[j] as number)) / 4), 0);
+  // Half way to the grid's next pose: those beyond are starts of their own.
+  const widest = Math.max(...joints.map((j) => (maxRad[j] as number) - (minRad[j] as number)), 0);
+  let step = (0.5 * widest) / (levels - 1);
   for (let round = 0; round < ROUNDS && step > FINEST_RAD; round++) {
     let rose = false;
     for (const j of joints) {

@@ -203,6 +203,156 @@ describe('certified steps, on any arm and any hand, judged from the commands', (
   });
 });
 
+/** A braking arm, looked at a thousand times on its way to a stand. */
+function brakingLooks(
+  spec: ArmSpec,
+  joints: readonly MotionLimits[],
+  x: readonly number[],
+  v: readonly number[],
+  look: (poser: ReturnType<typeof chain>, pose: Float64Array, speeds: Float64Array) => void,
+): void {
+  const poser = chain(spec);
+  const stopS = joints.map(({ accelRadS2 }, j) => Math.abs(v[j] as number) / accelRadS2);
+  const longest = Math.max(...stopS);
+  for (let k = 0; k <= 1000; k++) {
+    const times = stopS.map((stop) => Math.min(stop, (longest * k) / 1000));
+    const pose = Float64Array.from(x, (from, j) => {
+      const t = times[j] as number;
+      return from + (v[j] as number) * t - 0.5 * Math.sign(v[j] as number) * (joints[j]?.accelRadS2 as number) * t * t;
+    });
+    const speeds = Float64Array.from(v, (from, j) => from * (1 - (times[j] as number) / ((stopS[j] as number) || 1)));
+    poser.pose(pose);
+    look(poser, pose, speeds);
+  }
+}
+
+const heavy = (spec: ArmSpec, stallNm: readonly number[]): ArmSpec => ({
+  ...spec,
+  links: spec.links.map((one, i) => ({
+    ...one,
+    massKg: 1,
+    motor: { stallNm: stallNm[i] as number, use: 1, holdUse: 1, stallA: null },
+  })),
+});
+
+describe('a state from which the arm would break a limit while it brakes', () => {
+  const NO_CAP = Float64Array.of(Number.POSITIVE_INFINITY);
+  const state = rigged.chain((rig) => {
+    const share = fc.array(finite(-1, 1), { minLength: rig.joints.length, maxLength: rig.joints.length });
+    return share.map((shares) => ({
+      ...rig,
+      x: startOf(rig.joints, rig.start),
+      // Such that a joint needs no more than a third of a radian to stop, as servos do.
+      v: rig.joints.map(({ speedRadS, accelRadS2 }, j) => {
+        return Math.min(speedRadS, Math.sqrt(0.6 * accelRadS2)) * (shares[j] as number);
+      }),
+    }));
+  });
+  type State = { spec: ArmSpec; joints: readonly MotionLimits[]; x: number[]; v: number[] };
+
+  /** Judges the state itself: a step that ends where it begins. */
+  const judged = ({ joints, x, v }: State, spec: ArmSpec, keepOut: readonly KeepOut[], cap: Float64Array): number => {
+    const accel = Float64Array.from(joints, ({ accelRadS2 }) => accelRadS2);
+    const load = spec.links.some(({ motor }) => motor !== null) ? loads(spec, joints.length) : null;
+    const at = Float64Array.from(x);
+    return certificate(spec, joints.length, accel, { keepOut }, load).judge(
+      at,
+      at,
+      Float64Array.from(v),
+      DT,
+      cap,
+      true,
+    );
+  };
+
+  it('is refused for the speed of a link end, wherever on the way it is highest', () => {
+    fc.assert(
+      fc.property(state, (at) => {
+        let most = 0;
+        const velocities = new Float64Array(3 * at.spec.links.length + 3);
+        brakingLooks(at.spec, at.joints, at.x, at.v, (poser, _pose, speeds) => {
+          poser.velocities(speeds, velocities);
+          for (let k = 3; k < velocities.length; k += 3) {
+            most = Math.max(most, Math.hypot(...velocities.subarray(k, k + 3)));
+          }
+        });
+        fc.pre(most > 1e-3);
+        expect(judged(at, at.spec, [], Float64Array.of(most * (1 - 1e-7)))).toBe(BREAKS.endSpeed);
+        expect(judged(at, at.spec, [], Float64Array.of(most * 1.5))).toBe(0);
+      }),
+      { numRuns: 200, endOnFailure: true },
+    );
+  });
+
+  it('is refused for a floor that a link end only just touches on the way', () => {
+    let tried = 0;
+    fc.assert(
+      fc.property(state, (at) => {
+        let first = Number.NaN;
+        let least = Number.POSITIVE_INFINITY;
+        brakingLooks(at.spec, at.joints, at.x, at.v, (poser) => {
+          let lowest = Number.POSITIVE_INFINITY;
+          for (let k = 3; k < poser.at.length; k += 3) lowest = Math.min(lowest, poser.at[k + 2] as number);
+          if (Number.isNaN(first)) first = lowest;
+          least = Math.min(least, lowest);
+        });
+        if (first - least < 1e-4) return;
+        tried++;
+        expect(judged(at, at.spec, [{ kind: 'below', zM: least + 1e-8 }], NO_CAP)).toBe(BREAKS.keepOut);
+        expect(judged(at, at.spec, [{ kind: 'below', zM: least - 1 }], NO_CAP)).toBe(0);
+      }),
+      { numRuns: 200, endOnFailure: true },
+    );
+    expect(tried).toBeGreaterThan(5);
+  });
+
+  it('is refused for a load that comes over its limit only on the way', () => {
+    let tried = 0;
+    fc.assert(
+      fc.property(state, fc.nat(), (at, which) => {
+        const n = at.joints.length;
+        const i = 1 + (which % (n - 1));
+        const weighed = loads(
+          heavy(
+            at.spec,
+            at.x.map(() => 1),
+          ),
+          n,
+        );
+        const torque = new Float64Array(n);
+        let first = Number.NaN;
+        let most = 0;
+        brakingLooks(at.spec, at.joints, at.x, at.v, (_poser, pose) => {
+          weighed.torqueNm(pose, torque);
+          const size = Math.abs(torque[i] as number);
+          if (Number.isNaN(first)) first = size;
+          most = Math.max(most, size);
+        });
+        if (most - first < 1e-4) return;
+        tried++;
+        // All motors but one are as strong as one likes.
+        const strong = at.x.map((_, j) => (j === i ? most * (1 - 1e-7) : 1e6));
+        expect(judged(at, heavy(at.spec, strong), [], NO_CAP)).toBe(BREAKS.load);
+        const stronger = strong.map((nm) => 20 * nm);
+        expect(judged(at, heavy(at.spec, stronger), [], NO_CAP)).toBe(0);
+      }),
+      { numRuns: 200, endOnFailure: true },
+    );
+    expect(tried).toBeGreaterThan(5);
+  });
+
+  it('is refused for what the step itself goes through, though both its ends are clear', () => {
+    // By hand: a bar of 0.5 m turns by 0.2 rad, 0.1 m at its end, and stands; the rod it goes through is 10 mm thick.
+    const bar = arm([link(0, Z, [0.5, 0, 0])], { heightM: 0.2 });
+    const rod: KeepOut = { kind: 'box', minM: [0.45, -0.005, 0], maxM: [0.46, 0.005, 1] };
+    const { judge } = certificate(bar, 1, Float64Array.of(10), { keepOut: [rod] }, null);
+    const turn = (from: number, to: number): number =>
+      judge(Float64Array.of(from), Float64Array.of(to), Float64Array.of(0), DT, NO_CAP, false);
+    expect(turn(-0.1, 0.1)).toBe(BREAKS.keepOut);
+    expect(turn(0.1, 0.3)).toBe(0);
+  });
+});
+
 /** An arm of 0.5 m with its tip on the way to a floor below it, and joints as quick as a hobby servo's. */
 const reach = arm([link(0, Z, [0, 0, 0.1]), link(1, Y, [0, 0, 0.25]), link(2, Y, [0, 0, 0.25])]);
 const quick: MotionLimits[] = [0, 1, 2].map(() => ({ minRad: -2.5, maxRad: 2.5, speedRadS: 3, accelRadS2: 15 }));

@@ -101,6 +101,26 @@ describe('an arm that moves as hard as it may', () => {
     expect(stands(crane(), turning).movingNm(pose)).toBeCloseTo(G * (3 * 0.2 - 0.5 * 0.4) - 0.5 * 5.4 * 0.5, 9);
   });
 
+  it('counts what two joints that turn at once do together, to either side', () => {
+    // By hand: the bar leans by 45 degrees, its mass is 0.4243 m out and 0.9243 m up. Turning at 1 and 3 rad/s it needs
+    // 2 * 0.4243 * 1 * 3 m/s^2 sideways: 0.5 kg of that, 0.9243 m up; and 9 * 0.4243 m/s^2 downwards, 0.15 m before the edge.
+    const narrow = [
+      [9, 0.15],
+      [-9, 0.15],
+      [-9, -0.15],
+      [9, -0.15],
+    ] as const;
+    const turning = { speedRadS: [1, 3], accelRadS2: [0, 0] };
+    const out = 0.6 * Math.SQRT1_2;
+    const sideways = 0.5 * 2 * out * 1 * 3 * (0.5 + out);
+    const down = 0.5 * 9 * out * 0.15;
+    const spec = crane({ ...STANDING, footprintM: narrow });
+    expect(stands(spec, turning).movingNm(Float64Array.of(0, 45 * DEG))).toBeCloseTo(
+      3.5 * G * 0.15 - sideways - down,
+      9,
+    );
+  });
+
   it('slides where friction cannot hold what pushes sideways', () => {
     const upright = Float64Array.of(0, 0);
     // By hand: 0.4 of 3.5 kg; upright, 4 rad/s^2 at 0.6 m push sideways with 0.5 * 2.4 N.

@@ -27,6 +27,17 @@ describe('the worst pose', () => {
     expect([...found.poseRad]).toEqual([1, 1, 1]);
   });
 
+  it('is found where the grid’s best pose stands under a lower top', () => {
+    // By hand: of the nine angles looked at, 0 is best with 1.3; of the top of 2 at 0.65 only the flank is looked at, 1.17 at
+    // 0.75, so only a climb from there finds it, and only one that begins with small steps.
+    const found = worst(ranges(1, 1), ([q]) => {
+      const at = q as number;
+      return Math.max(1.3 - at * at, 2 - Math.abs(at - 0.65) / 0.12);
+    });
+    expect(found.value).toBeCloseTo(2, 3);
+    expect(found.poseRad[0]).toBeCloseTo(0.65, 4);
+  });
+
   it('leaves the joints that are not varied in the middle of their range', () => {
     const found = worst({ minRad: [0, 0], maxRad: [1, 0.5], joints: [0] }, (pose) => pose[0] as number);
     expect([...found.poseRad]).toEqual([1, 0.25]);
