@@ -140,27 +140,9 @@ export function settling(tip: TipMotion): Settling {
     return true;
   };
 
-  /**
-   * Leaves out the joints that stand at an end because the target pulls them there, harder than the wish pulls back: they
-   * would go, and the target would have them back.
-   */
-  const leaveOut = (q: Float64Array, preferRad: Float64Array, minRad: Float64Array, maxRad: Float64Array): void => {
-    for (let c = 0; c < m; c++) {
-      const j = joints[c] as number;
-      const at = q[j] as number;
-      let pull = 0;
-      for (let k = 0; k < 3; k++) pull += (jacobian[3 * c + k] as number) * (error[k] as number);
-      const back = WISH * Math.abs(at - (preferRad[j] as number));
-      const held =
-        (pull > back && (maxRad[j] as number) - at < AT_END_RAD) ||
-        (-pull > back && at - (minRad[j] as number) < AT_END_RAD);
-      free[c] = held ? 0 : 1;
-    }
-  };
-
   return {
     settle(anglesRad, preferRad, pitchRad, minRad, maxRad, step) {
-      leaveOut(anglesRad, preferRad, minRad, maxRad);
+      free.fill(1);
       for (let frozen = true; frozen; ) {
         frozen = false;
         wish(anglesRad, preferRad, pitchRad);
