@@ -13,6 +13,11 @@ const measured = fc
   })
   .filter((pairs) => new Set(pairs.map(([x]) => x)).size > 2);
 
+/** How many pairs of points have a slope. */
+function slopesOf(points: readonly (readonly [number, number])[]): number {
+  return points.reduce((count, [x], i) => count + points.slice(i + 1).filter(([other]) => other !== x).length, 0);
+}
+
 describe('A second opinion', () => {
   it('on the least-squares line is the same', () => {
     fc.assert(
@@ -30,15 +35,16 @@ describe('A second opinion', () => {
   });
 
   it('on the robust line is the same', () => {
-    // Of an even list with equal values in its middle, the package's median is one of the two rather than their mean.
-    const odd = measured.filter((pairs) => pairs.length % 2 === 1);
+    // Of an even list the package's median may be one of the middle two rather than their mean, so both medians, that of
+    // the slopes and that of the offsets, are taken over odd lists.
+    const odd = measured.filter((pairs) => pairs.length % 2 === 1 && slopesOf(pairs) % 2 === 1);
     fc.assert(
       fc.property(odd, (pairs) => {
         const x = pairs.map(([each]) => each);
         const y = pairs.map(([, each]) => each);
         const theirs = new TheilSenRegression(x, y);
         const { slope, offset } = theilSen(x, y);
-        expect(slope).toBeCloseTo(theirs.slope, 8);
+        expect(slope).toBeCloseTo(theirs.slope, 9);
         expect(offset).toBeCloseTo(theirs.intercept, 6);
       }),
     );
