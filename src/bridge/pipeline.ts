@@ -1,4 +1,4 @@
-import { filter, Observable, type OperatorFunction, type Subscriber, Subscription } from 'rxjs';
+import { Observable, type Observer, type OperatorFunction, type Subscription } from 'rxjs';
 import type { Drive } from '../drive/drive.ts';
 import type { DriveEvent } from '../drive/events.ts';
 import type { FollowerStage } from '../drive/follower-stage.ts';
@@ -11,23 +11,11 @@ export type Send = (command: FollowerStage) => void;
 export type OnBug = (follower: FollowerStage, bug: unknown) => void;
 
 /**
- * The way of one reading, for a live run, a trace and a replay alike: events, conditioned once, shared by all followers,
- * each of which makes its own commands and sends them through one guarded subscription.
+ * The way of one reading, for a live run, a trace and a replay alike: events, conditioned once, then every follower in
+ * rig order, each of which makes its own commands and sends them.
  */
 export function pipeline(events$: Observable<DriveEvent>, drive: Drive, send: Send, onBug: OnBug): Subscription {
-  const conditioned$ = events$.pipe(conditioned(drive.leader), shared());
-  const all = new Subscription();
-  for (const follower of drive.followers) {
-    all.add(
-      conditioned$.pipe(followed(follower, send)).subscribe({
-        error(bug) {
-          follower.giveUp();
-          onBug(follower, bug);
-        },
-      }),
-    );
-  }
-  return all;
+  return events$.pipe(conditioned(drive.leader)).subscribe(followed(drive.followers, send, onBug));
 }
 
 /** The leader's stage sees each event first; what its buttons stand for goes on before it: a stop waits for no step. */
@@ -54,40 +42,31 @@ function conditioned(leader: LeaderStage): OperatorFunction<DriveEvent, DriveEve
 }
 
 /**
- * One subscription for all followers, whoever of them leaves. The stock `share` would make an object for each of them at
- * every event (RxJS as Node loads it walks subscribers by an iterator), and garbage must not grow with the troupe.
+ * Every follower sees every event and makes at most one command of it, computed only when its port can take it, and sent
+ * at once. A stage that throws, or a wire, ends its own follower and no other. One guarded loop, not a stream for each:
+ * RxJS would cost 64 arms a tenth of their time, and say nothing that the loop does not.
  */
-function shared<T>(): OperatorFunction<T, T> {
-  return (source$) => {
-    let heard: readonly Subscriber<T>[] = [];
-    let connected = false;
-    return new Observable((out) => {
-      heard = [...heard, out];
-      if (!connected) {
-        connected = true;
-        source$.subscribe({
-          next(value) {
-            const now = heard;
-            for (let k = 0; k < now.length; k++) (now[k] as Subscriber<T>).next(value);
-          },
-          error: (bug) => heard.forEach((one) => one.error(bug)),
-          complete: () => heard.forEach((one) => one.complete()),
-        });
-      }
-      return () => {
-        heard = heard.filter((one) => one !== out);
-      };
-    });
+function followed(all: readonly FollowerStage[], send: Send, onBug: OnBug): Partial<Observer<DriveEvent>> {
+  let following = all;
+  const end = (follower: FollowerStage, bug: unknown): void => {
+    following = following.filter((one) => one !== follower);
+    follower.giveUp();
+    onBug(follower, bug);
   };
-}
-
-/**
- * One follower: at most one command an event, computed only when its port can take it, and sent at once. One operator
- * guards both, so that a stage that throws, or a wire, ends this follower's stream and no other.
- */
-function followed(follower: FollowerStage, send: Send): OperatorFunction<DriveEvent, never> {
-  return filter((event): event is never => {
-    if (follower.take(event)) send(follower);
-    return false;
-  });
+  return {
+    next(event) {
+      const now = following;
+      for (let f = 0; f < now.length; f++) {
+        const follower = now[f] as FollowerStage;
+        try {
+          if (follower.take(event)) send(follower);
+        } catch (bug) {
+          end(follower, bug);
+        }
+      }
+    },
+    error(bug) {
+      for (const follower of following) end(follower, bug);
+    },
+  };
 }

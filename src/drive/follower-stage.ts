@@ -38,7 +38,7 @@ export interface FollowerStage {
   /** Age of the newest reading when the last command was made, microseconds. */
   readonly readingAgeUs: number;
   /** Power or pulses are to be switched as soon as the port takes it. */
-  readonly switching: boolean;
+  switching(): boolean;
   /** Handles one event; true when a command is to go out now. */
   take(event: DriveEvent): boolean;
   /** The next instant at which it has something to do although nothing arrives; Infinity when there is none. */
@@ -148,7 +148,7 @@ export function followerStage(
   /** Where a board is too slow for its followers, one that is switched off goes first, then the one that has waited longest. */
   const mustYield = (): boolean => {
     const mine = self.dueUs();
-    for (const other of siblings) if (other !== self && (other.switching || other.dueUs() < mine)) return true;
+    for (const other of siblings) if (other !== self && (other.switching() || other.dueUs() < mine)) return true;
     return false;
   };
 
@@ -161,9 +161,7 @@ export function followerStage(
     kind: 'move',
     commands: 0,
     readingAgeUs: Number.NaN,
-    get switching() {
-      return pending.some;
-    },
+    switching: () => pending.some,
     take(event) {
       const isMine = event.kind === 'target' && event.follower === index;
       const reading = lead.fresh || isMine;
