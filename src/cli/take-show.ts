@@ -1,9 +1,14 @@
+import { existsSync } from 'node:fs';
+import { resolve } from 'node:path';
+import { stripSheet } from '../draw/strip-sheet.ts';
+import { wholeFile } from '../take/disk.ts';
 import { takeNames, takesFolder, takeFile, writtenAt, freeBytes } from '../take/folder.ts';
-import { isTakeFault } from '../take/fault.ts';
-import { openTake } from '../take/reader.ts';
+import { diskFault, isTakeFault, type TakeFault, takeFault } from '../take/fault.ts';
+import { openTake, type Take } from '../take/reader.ts';
+import { strips } from '../take/strips.ts';
 import { type FollowerSummary, summarize, type TakeSummary } from '../take/summary.ts';
 import { withTakes } from './take-files.ts';
-import { worked } from './take-work.ts';
+import { refusedStatus, worked } from './take-work.ts';
 import type { TakeWorld } from './take-world.ts';
 
 export interface ListOptions {
@@ -51,15 +56,54 @@ export async function listTakes({ takes, json }: ListOptions, world: TakeWorld):
   return 0;
 }
 
-/** Tells what a take holds. */
-export function showTake(name: string, options: ListOptions, world: TakeWorld): Promise<number> {
+export interface ShowOptions extends ListOptions {
+  /** Where its strips are drawn; undefined: nowhere. */
+  readonly svg: string | undefined;
+  /** Followers whose strips are drawn; empty: all of them. */
+  readonly only: readonly string[];
+}
+
+/** Tells what a take holds, and draws it where that is asked for. */
+export function showTake(name: string, options: ShowOptions, world: TakeWorld): Promise<number> {
   return withTakes(world, options.takes, [name], async ([take]) => {
     if (take === undefined) return 2;
     const shown = await worked(summarize(take), world);
     if ('status' in shown) return shown.status;
     world.out.write(options.json ? `${JSON.stringify(shown.done)}\n` : describe(shown.done));
-    return 0;
+    return options.svg === undefined ? 0 : drawStrips(take, options.svg, options.only, world);
   });
+}
+
+async function drawStrips(take: Take, svg: string, only: readonly string[], world: TakeWorld): Promise<number> {
+  const known = take.header.followers.map(({ name }) => name);
+  const strange = only.find((name) => !known.includes(name));
+  if (strange !== undefined)
+    return refusedStatus(
+      takeFault('TAKE_COLUMN', take.name, `it has no follower ${strange}, only ${known.join(', ')}`),
+      world.err,
+    );
+  const drawn = await worked(strips(take, only), world);
+  if ('status' in drawn) return drawn.status;
+  const fault = writeNew(resolve(svg), svg, stripSheet(drawn.done));
+  if (fault !== null) return refusedStatus(fault, world.err);
+  world.err.write(`${svg}: drawn\n`);
+  return 0;
+}
+
+/** Writes a file whole, never over one that is there. */
+function writeNew(file: string, name: string, text: string): TakeFault | null {
+  if (existsSync(file)) return takeFault('TAKE_FILE', name, 'it is there already');
+  try {
+    const whole = wholeFile(file);
+    try {
+      whole.write(Buffer.from(text));
+      return whole.keep();
+    } finally {
+      whole.drop();
+    }
+  } catch (error) {
+    return diskFault(name, error);
+  }
 }
 
 function describe(summary: TakeSummary): string {

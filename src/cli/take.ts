@@ -30,9 +30,11 @@ export function takeCommand(world: () => TakeWorld = realTakeWorld): CommandUnkn
     folder(new Command('show').description('tell what a take holds: marks, joints, peaks, smoothness, limited spans'))
       .argument('<name>')
       .option('--json', 'print it as JSON', false)
-      .action(async (name, options) => {
+      .option('--svg <file>', 'draw every joint over time, with marks and with what held it back')
+      .option('--only <followers>', 'draw only these followers; several with commas', listed)
+      .action(async (name, { json, takes, svg, only }) => {
         const { showTake } = await import('./take-show.ts');
-        process.exitCode = await showTake(name, { json: options.json, takes: options.takes }, world());
+        process.exitCode = await showTake(name, { json, takes, svg, only: only ?? [] }, world());
       }),
   );
   take.addCommand(

@@ -63,7 +63,7 @@ export interface JointSummary {
 
 const DEG = 180 / Math.PI;
 /** Longer than this between two readings is a dropout: a quarter of the usual timeout (common practice, no source). */
-const DROPOUT_US = 60 * US_PER_MS;
+export const DROPOUT_US = 60 * US_PER_MS;
 /** Spans told one by one; all are counted. */
 const SPANS_MAX = 50;
 

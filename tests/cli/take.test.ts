@@ -94,6 +94,23 @@ describe('eidograph take', () => {
     );
   });
 
+  it('draws a take, whole, and never over a file that is there', async () => {
+    const file = join(folder, 'bow.svg');
+    const { status, out, err } = await take(`show bow --svg ${file} --only wren`);
+    expect([status, err]).toEqual([0, `${file}: drawn\n`]);
+    expect(out).toMatch(/^bow: recorded/);
+    const svg = readFileSync(file, 'utf8');
+    expect(svg).toMatch(/^<svg [^]*>leader handstick<[^]*>wren<[^]*<\/svg>\n$/);
+    expect(svg).toContain('>down</text>');
+    expect(svg).not.toContain('>stork<');
+    const again = await take(`show bow --svg ${file}`);
+    expect([again.status, again.err]).toEqual([2, expect.stringContaining('it is there already')]);
+    expect(readFileSync(file, 'utf8')).toBe(svg);
+    const strange = await take(`show bow --svg ${file}2 --only crow`);
+    expect([strange.status, strange.err]).toEqual([2, expect.stringContaining('it has no follower crow')]);
+    expect(existsSync(`${file}2`)).toBe(false);
+  });
+
   it('compares two takes', async () => {
     const { joints } = JSON.parse((await take('compare bow bow-again --json')).out) as {
       joints: { joint: string; rms_deg: number }[];
