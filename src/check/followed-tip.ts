@@ -59,15 +59,14 @@ function follower(
   whole: WholeArmSpec,
   tip: TipSpec,
 ): (poseRad: Float64Array, nearM: number) => number {
-  const { mix } = remap(spec);
-  const asked = new Float64Array(spec.joints.length);
+  const { askedRad, mix } = remap(spec);
   const wanted = new Float64Array(spec.joints.length);
   const going = tipWish(whole, tip, spec.joints);
 
   const settled = (wish: TipWish, pose: Float64Array): number => {
     let left = Number.POSITIVE_INFINITY;
     for (let call = 0; call < CALLS_MAX; call++) {
-      wanted.set(asked);
+      wanted.set(askedRad);
       wish.reach(pose, wanted);
       const now = wish.leftM[0] as number;
       if (Math.abs(left - now) < SETTLED_M) return now;
@@ -77,13 +76,13 @@ function follower(
   };
 
   return (pose, nearM) => {
-    mix(pose, asked);
+    mix(pose);
     const left = settled(going, pose);
     if (left <= nearM) return left;
     // From the last place it may have bent the wrong way round: from where joints copy joints, it bends as the leader.
     const there = spec.joints.map((joint, j) => ({
       ...joint,
-      restRad: Math.min(Math.max(asked[j] as number, joint.minRad), joint.maxRad),
+      restRad: Math.min(Math.max(askedRad[j] as number, joint.minRad), joint.maxRad),
     }));
     return Math.min(left, settled(tipWish(whole, tip, there), pose));
   };

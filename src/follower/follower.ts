@@ -99,15 +99,15 @@ export function followers(specs: readonly FollowerSpec[]): readonly Follower[] {
   const rows = rowsOf(specs.map((spec) => spec.joints.length));
   const motions = governors(specs.map((spec) => spec.joints));
   const maps = remaps(specs);
-  const asked = wishes(specs, motions.all);
+  const asked = wishes(specs, motions.all, maps.askedRad);
   const speeds = speedLimits(specs, motions.all, asked.held);
   const came = outcome(specs, motions.all, asked.limits);
-  const gears = servos(specs.map((spec) => spec.servos));
+  const gears = servos(specs, motions.all.x);
   return specs.map((spec, f) =>
     follower(spec, {
       rows: rows[f] as Rows,
       motion: motions.each[f] as Governor,
-      map: maps[f] as Remap,
+      map: maps.each[f] as Remap,
       wish: asked.each[f] as Wish,
       speeds,
       came,
@@ -127,9 +127,10 @@ function follower(spec: FollowerSpec, parts: Parts): Follower {
   const rest = Float64Array.from(joints, (j) => j.restRad);
   const min = Float64Array.from(joints, (j) => j.minRad);
   const max = Float64Array.from(joints, (j) => j.maxRad);
-  const { askedRad, wantedRad, clutchRad, held, limits } = wish;
+  const { askedRad } = map;
+  const { wantedRad, clutchRad, held, limits } = wish;
   const frame: Frame = {
-    pulsesUs: new Float64Array(spec.servos.length),
+    pulsesUs: gears.pulsesUs,
     sentUs: new Float64Array(spec.servos.length),
     anglesRad: motion.x,
     pulsing: 0,
@@ -169,14 +170,14 @@ function follower(spec: FollowerSpec, parts: Parts): Follower {
       wantedRad.set(motion.x);
     },
     want(leaderRad, clutched) {
-      map.mix(leaderRad, askedRad);
+      map.mix(leaderRad);
       tip?.reach(leaderRad, askedRad);
       wish.settle(clutched);
       noteReach();
       wishing = true;
     },
     match(leaderRad, leaderRadS) {
-      map.mix(leaderRad, askedRad);
+      map.mix(leaderRad);
       map.mixSpeed(leaderRadS, motion.targetSpeed);
       if (tip !== null) {
         // How fast the solved joints will move is not known: they follow with the governor's lag.
@@ -227,17 +228,17 @@ function follower(spec: FollowerSpec, parts: Parts): Follower {
       if (whole === null) motion.step(dtS);
       else reason = whole.step(dtS, gentle, wishing);
       came.note(rows, spec, reason);
-      gears.pulses(motion.x, frame.pulsesUs);
+      gears.turn();
     },
     brake(dtS) {
       // Braking needs no certificate: each step was taken because the arm can brake from it.
       motion.braking.fill(1);
       motion.step(dtS);
       came.check(rows, spec);
-      gears.pulses(motion.x, frame.pulsesUs);
+      gears.turn();
     },
     aim() {
-      gears.pulses(motion.x, frame.pulsesUs);
+      gears.turn();
     },
     hold(health) {
       let freed = false;

@@ -5,9 +5,7 @@ import type { FollowerSpec } from './spec.ts';
 
 /** What one arm is asked for, joint by joint, on its way from the remap to the governor. */
 export interface Wish {
-  /** What the remap makes of the leader's pose, radians. */
-  readonly askedRad: Float64Array;
-  /** The same with the clutch's offset, radians. */
+  /** What the remap makes of the leader's pose, with the clutch's offset, radians. */
   readonly wantedRad: Float64Array;
   /** Added to what is asked, radians; grows while the clutch is out. */
   readonly clutchRad: Float64Array;
@@ -31,14 +29,16 @@ export interface Wishes {
   readonly limits: Uint8Array;
 }
 
-/** @param motion the governors' tables, arm after arm */
-export function wishes(specs: readonly FollowerSpec[], motion: Motion): Wishes {
+/**
+ * @param motion the governors' tables, arm after arm
+ * @param asked what the remaps make of the leader's pose, radians, arm after arm
+ */
+export function wishes(specs: readonly FollowerSpec[], motion: Motion, asked: Float64Array): Wishes {
   const joints = specs.flatMap((spec) => spec.joints);
   const n = joints.length;
   const deadband = Float64Array.from(joints, (j) => j.deadbandRad);
   const min = Float64Array.from(joints, (j) => j.minRad);
   const max = Float64Array.from(joints, (j) => j.maxRad);
-  const asked = new Float64Array(n);
   const wanted = Float64Array.from(joints, (j) => j.restRad);
   const clutch = new Float64Array(n);
   const held = new Uint8Array(n);
@@ -69,7 +69,6 @@ export function wishes(specs: readonly FollowerSpec[], motion: Motion): Wishes {
 
   const each = rowsOf(specs.map((spec) => spec.joints.length)).map(
     (rows): Wish => ({
-      askedRad: asked.subarray(rows.from, rows.to),
       wantedRad: wanted.subarray(rows.from, rows.to),
       clutchRad: clutch.subarray(rows.from, rows.to),
       held: held.subarray(rows.from, rows.to),

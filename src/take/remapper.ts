@@ -8,7 +8,8 @@ export function remapper(spec: FollowerSpec): (leaderRad: Float64Array) => Float
   const tip = spec.whole?.tip ? tipWish(spec.whole, spec.whole.tip, spec.joints) : null;
   const out = new Float64Array(spec.joints.length);
   return (leaderRad) => {
-    map.mix(leaderRad, out);
+    map.mix(leaderRad);
+    out.set(map.askedRad);
     tip?.reach(leaderRad, out);
     spec.joints.forEach(({ minRad, maxRad }, j) => {
       out[j] = Math.min(Math.max(out[j] as number, minRad), maxRad);

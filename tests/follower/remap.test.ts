@@ -5,12 +5,9 @@ import { DEG, followerJoint, followerSpec } from '../plans.ts';
 
 /** What a follower of these joints is asked for at a leader pose, in degrees. */
 function mixed(joints: readonly FollowerJointSpec[], leaderDeg: readonly number[]): number[] {
-  const wanted = new Float64Array(joints.length);
-  remap(followerSpec(joints)).mix(
-    Float64Array.from(leaderDeg, (deg) => deg * DEG),
-    wanted,
-  );
-  return [...wanted].map((rad) => rad / DEG);
+  const { mix, askedRad } = remap(followerSpec(joints));
+  mix(Float64Array.from(leaderDeg, (deg) => deg * DEG));
+  return [...askedRad].map((rad) => rad / DEG);
 }
 
 describe('the remap of a joint', () => {
@@ -53,11 +50,9 @@ describe('the remap of a joint', () => {
       followerSpec([followerJoint(0, { gain: 2 }), followerJoint(null, { restRad: 1 })]),
       followerSpec([followerJoint(1, { gain: -3 })]),
     ];
-    const asked = remaps(specs).map((one, f) => {
-      const out = new Float64Array(specs[f]?.joints.length ?? 0);
-      one.mix(Float64Array.of(5, 7), out);
-      return [...out];
-    });
+    const { each } = remaps(specs);
+    for (const { mix } of each) mix(Float64Array.of(5, 7));
+    const asked = each.map(({ askedRad }) => [...askedRad]);
     // By hand: 2 * 5 and rest; -3 * 7.
     expect(asked).toEqual([[10, 1], [-21]]);
   });

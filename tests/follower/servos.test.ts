@@ -2,7 +2,7 @@ import { describe, expect, it } from 'vitest';
 import { servos } from '../../src/follower/servos.ts';
 import type { ServoSpec } from '../../src/follower/spec.ts';
 import { compileMap } from '../../src/map/compile.ts';
-import { DEG, servoOf } from '../plans.ts';
+import { DEG, followerJoint, servoOf } from '../plans.ts';
 
 const mirrored = compileMap(
   [
@@ -14,12 +14,11 @@ const mirrored = compileMap(
 );
 
 function pulses(specs: readonly ServoSpec[], anglesDeg: readonly number[]): number[] {
-  const out = new Float64Array(specs.length);
-  servos([specs])[0]?.pulses(
-    Float64Array.from(anglesDeg, (deg) => deg * DEG),
-    out,
-  );
-  return [...out];
+  const angles = Float64Array.from(anglesDeg, (deg) => deg * DEG);
+  const joints = anglesDeg.map((_, j) => followerJoint(j));
+  const [gears] = servos([{ joints, servos: specs }], angles);
+  gears?.turn();
+  return [...(gears?.pulsesUs ?? [])];
 }
 
 describe('the pulses of servos', () => {
@@ -53,5 +52,15 @@ describe('the pulses of servos', () => {
     });
     expect(pulses([coupled], [20, 25])).toEqual([expect.closeTo(1970, 9)]);
     expect(pulses([weighted], [20, 40])).toEqual([expect.closeTo(1500, 9)]);
+  });
+
+  it("are each arm's own where several are made together", () => {
+    const arms = [
+      { joints: [followerJoint(0), followerJoint(1)], servos: [servoOf(1)] },
+      { joints: [followerJoint(0)], servos: [servoOf(0), servoOf(0, { map: mirrored })] },
+    ];
+    const all = servos(arms, Float64Array.of(0, 45 * DEG, -90 * DEG));
+    for (const { turn } of all) turn();
+    expect(all.map(({ pulsesUs }) => [...pulsesUs])).toEqual([[expect.closeTo(1970, 9)], [560, 2440]]);
   });
 });

@@ -13,10 +13,11 @@ function settled(
   from = 0,
 ): { target: number; clipped: boolean }[] {
   const { all } = governors([[joint]]);
-  const wish = wishes([followerSpec([joint])], all).each[0] as Wish;
+  const asked = new Float64Array(1);
+  const wish = wishes([followerSpec([joint])], all, asked).each[0] as Wish;
   all.target[0] = from * DEG;
   return inputs.map((input) => {
-    wish.askedRad[0] = input * DEG;
+    asked[0] = input * DEG;
     wish.settle(false);
     return { target: (all.target[0] as number) / DEG, clipped: ((wish.limits[0] as number) & LIMITS.range) !== 0 };
   });
@@ -78,8 +79,7 @@ describe('the wishes of several arms', () => {
   it('are settled one arm at a time, joint by joint in its own rows', () => {
     const specs = [followerSpec([followerJoint(0), followerJoint(1)]), followerSpec([followerJoint(0)])];
     const { all } = governors(specs.map((spec) => spec.joints));
-    const [, second] = wishes(specs, all).each as readonly [Wish, Wish];
-    second.askedRad[0] = 10 * DEG;
+    const [, second] = wishes(specs, all, Float64Array.of(0, 0, 10 * DEG)).each as readonly [Wish, Wish];
     second.settle(false);
     expect([...all.target]).toEqual([0, 0, 10 * DEG]);
     expect(second.wantedRad[0]).toBe(10 * DEG);
@@ -88,10 +88,9 @@ describe('the wishes of several arms', () => {
   it('stand still, and brake the joints that are held', () => {
     const spec = followerSpec([followerJoint(0), followerJoint(1)]);
     const { all } = governors([spec.joints]);
-    const wish = wishes([spec], all).each[0] as Wish;
+    const wish = wishes([spec], all, Float64Array.of(10 * DEG, 10 * DEG)).each[0] as Wish;
     all.targetSpeed.fill(3);
     wish.held[1] = 1;
-    wish.askedRad.fill(10 * DEG);
     wish.settle(false);
     expect([...all.targetSpeed]).toEqual([0, 0]);
     expect([...all.braking]).toEqual([0, 1]);
