@@ -1,9 +1,12 @@
 import { NAME_BUFFER, TIME_BUFFER } from './columns.ts';
-import { type Frame, frameAt, frameEnd, PREFIX_BYTES, type ReadAt } from './framing.ts';
+import { bodyAt, type Frame, frameAt, frameEnd, type ReadAt } from './framing.ts';
 
-/** What stands where in a take's file, from its frames. Grows by a few numbers a batch, four of them a second. */
+/** What stands where in a take's file, from its frames: of the same size however long the take is. */
 export interface TakeIndex {
-  readonly batches: readonly BatchPlace[];
+  /** Where to begin reading for a moment: some of its batches, in order. */
+  readonly places: readonly BatchPlace[];
+  /** Where the batches with a named row begin: marks. The first `NAMED_MAX` of them. */
+  readonly named: readonly number[];
   readonly rows: number;
   readonly lastUs: number;
   /** Up to here everything is whole. */
@@ -14,31 +17,40 @@ export interface TakeIndex {
 
 export interface BatchPlace {
   readonly offset: number;
-  readonly bytes: number;
-  readonly rows: number;
   readonly firstUs: number;
-  /** It has a row with a name: a mark. */
-  readonly named: boolean;
 }
+
+/** Twice as many at most: then every other place is given up. Ten hours leave one for each six seconds or so. */
+const PLACES = 4_096;
+const NAMED_MAX = 10_000;
 
 /** @param from where the first batch begins */
 export function indexOf(from: number, size: number, read: ReadAt): TakeIndex {
-  const batches: BatchPlace[] = [];
+  let places: BatchPlace[] = [];
+  const named: number[] = [];
+  let every = 1;
+  let batches = 0;
   let offset = from;
   let rows = 0;
   let lastUs = 0;
   for (;;) {
     const frame = frameAt(offset, size, read, [TIME_BUFFER, NAME_BUFFER]);
     if (frame === 'end' || frame === 'broken')
-      return { batches, rows, lastUs, endBytes: offset, whole: frame === 'end' };
+      return { places, named, rows, lastUs, endBytes: offset, whole: frame === 'end' };
     if (frame.kind === 'batch' && frame.rows > 0) {
       const [time, name] = frame.buffers;
-      const instants = time === undefined || time.bytes < 8 * frame.rows ? null : timesOf(frame, time.offset, read);
+      const instants =
+        time === null || time === undefined || time.bytes < 8 * frame.rows ? null : timesOf(frame, time.offset, read);
       // Time goes forward in a take: what says otherwise is not what was written.
       if (instants === null || instants.firstUs < lastUs || instants.lastUs < instants.firstUs)
-        return { batches, rows, lastUs, endBytes: offset, whole: false };
-      const bytes = frameEnd(frame) - offset;
-      batches.push({ offset, bytes, rows: frame.rows, firstUs: instants.firstUs, named: (name?.bytes ?? 0) > 0 });
+        return { places, named, rows, lastUs, endBytes: offset, whole: false };
+      if (batches % every === 0) places.push({ offset, firstUs: instants.firstUs });
+      if (places.length === 2 * PLACES) {
+        places = places.filter((_, i) => i % 2 === 0);
+        every *= 2;
+      }
+      if ((name?.bytes ?? 0) > 0 && named.length < NAMED_MAX) named.push(offset);
+      batches++;
       rows += frame.rows;
       lastUs = instants.lastUs;
     }
@@ -51,7 +63,7 @@ function timesOf(
   timeOffset: number,
   read: ReadAt,
 ): { readonly firstUs: number; readonly lastUs: number } {
-  const at = frame.offset + PREFIX_BYTES + frame.metadataBytes + timeOffset;
+  const at = bodyAt(frame) + timeOffset;
   return { firstUs: int64(read(at, 8)), lastUs: int64(read(at + 8 * (frame.rows - 1), 8)) };
 }
 

@@ -75,6 +75,13 @@ export function strangeColumn(header: TakeHeader, schema: Schema): string | null
   return schema.fields.length === wanted.length ? null : (schema.fields[wanted.length]?.name ?? '');
 }
 
-/** Places among a batch's buffers, two a column of numbers (validity, values): the stamps, and the text of names. */
-export const TIME_BUFFER = 1;
-export const NAME_BUFFER = 2 * (FIXED - 1) + 2;
+/** The column of names: the only one of text. */
+const NAME_COLUMN = FIXED - 1;
+
+/** Place of a column's values among a batch's buffers: two a column (validity, values), three for text, whose offsets these are. */
+export function bufferOf(column: number): number {
+  return 2 * column + (column > NAME_COLUMN ? 2 : 1);
+}
+
+export const TIME_BUFFER = bufferOf(0);
+export const NAME_BUFFER = bufferOf(NAME_COLUMN) + 1;

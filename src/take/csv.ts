@@ -1,114 +1,118 @@
+import { NUMBER_BYTES_MAX, putNumber } from './digits.ts';
+import { NAME_BYTES_MAX, type Row } from './row.ts';
 import type { MakeSheet } from './sheet.ts';
 import type { TableColumn } from './table.ts';
 
 /** Written out whenever this much is ready, bytes. */
 const PORTION = 256 * 1024;
-/** Room kept for one row beyond the portion: names are at most a page's text. */
-const ROW_MAX = 128 * 1024;
-/** Decimals of a number: a millionth of a degree is far below any servo. */
-const DECIMALS = 1e6;
-/** Past this a fixed-point number would lose its last decimals. */
-const FIXED_MAX = 1e9;
+/** Two signs of text for one, and the quotes: what a name may become. */
+const TEXT_BYTES_MAX = 2 * NAME_BYTES_MAX + 2;
+/** Words of codes are few; names of marks may be as many as there are rows. */
+const TEXTS_KEPT = 1_000;
 
-const ZERO = 0x30;
+const LOOPED_BYTES = 48;
+
 const COMMA = 0x2c;
 const NEWLINE = 0x0a;
-const MINUS = 0x2d;
-const POINT = 0x2e;
 
 /**
- * CSV after RFC 4180, lines ended by LF; numbers with up to six decimals, an empty cell where nothing is known. Most numbers
- * of an event are those of the event before: their digits are kept rather than made anew.
+ * CSV after RFC 4180, lines ended by LF; numbers with up to six decimals, an empty cell where nothing is known. Most cells
+ * of an event are those of the event before: runs of them are copied from its line in one piece.
  */
 export const csvSheet: MakeSheet = (columns, withTake, write) => {
-  const out = new Uint8Array(PORTION + ROW_MAX + 64 * columns.length);
+  const out = new Uint8Array(PORTION + TEXT_BYTES_MAX + NUMBER_BYTES_MAX * columns.length * 4);
   const encoder = new TextEncoder();
-  const before = new Float64Array(columns.length).fill(Number.NaN);
-  const cells = Array.from(columns, () => new Uint8Array(32));
-  const lengths = new Uint8Array(columns.length);
+  const numbers = new Float64Array(columns.length);
+  const words = columns.map(() => '');
+  /** Where each cell of the line before begins, and behind the last comma of it; nothing is known of no line. */
+  const begins = new Int32Array(columns.length + 1);
   const texts = new Map<string, Uint8Array>();
+  let hasLine = false;
   let at = 0;
-
-  const put = (bytes: Uint8Array, length: number): void => {
-    for (let i = 0; i < length; i++) out[at + i] = bytes[i] as number;
-    at += length;
-  };
 
   const textOf = (value: string): Uint8Array => {
     const known = texts.get(value);
     if (known !== undefined) return known;
     const made = encoder.encode(/[",\r\n]/.test(value) ? `"${value.replaceAll('"', '""')}"` : value);
-    // Words of codes recur without end; names of marks may be as many as there are rows.
-    if (texts.size < 1000) texts.set(value, made);
+    if (texts.size < TEXTS_KEPT) texts.set(value, made);
     return made;
   };
 
-  const cell = (column: TableColumn, i: number, row: Parameters<TableColumn['of']>[0]): void => {
+  const putText = (value: string): void => {
+    const bytes = textOf(value);
+    out.set(bytes, at);
+    at += bytes.length;
+  };
+
+  /** Whether a cell says what it said in the line before; keeps what it says now. */
+  const isSame = (column: TableColumn, i: number, row: Row): boolean => {
     if (column.kind === 'text') {
-      const bytes = textOf(column.of(row));
-      put(bytes, bytes.length);
-      return;
+      const word = column.of(row);
+      if (word === words[i]) return hasLine;
+      words[i] = word;
+      return false;
     }
     const value = column.of(row);
-    if (value !== before[i] || i === 0) {
-      lengths[i] = Number.isNaN(value) ? 0 : digits(value, cells[i] as Uint8Array, encoder);
-      before[i] = value;
-    }
-    put(cells[i] as Uint8Array, Number.isNaN(value) ? 0 : (lengths[i] as number));
+    const before = numbers[i] as number;
+    if (value === before || (Number.isNaN(value) && Number.isNaN(before))) return hasLine;
+    numbers[i] = value;
+    return false;
+  };
+
+  const put = (column: TableColumn, i: number): void => {
+    if (column.kind === 'text') putText(words[i] as string);
+    else if (!Number.isNaN(numbers[i])) at = putNumber(numbers[i] as number, out, at);
+  };
+
+  /** Copies cells `first` to before `next` of the line before, each with its comma. */
+  const copy = (first: number, next: number): void => {
+    const from = begins[first] as number;
+    const to = begins[next] as number;
+    const by = at - from;
+    // A call costs more than a few bytes.
+    if (to - from > LOOPED_BYTES) out.copyWithin(at, from, to);
+    else for (let k = from; k < to; k++) out[k + by] = out[k] as number;
+    for (let i = first; i < next; i++) begins[i] = (begins[i] as number) + by;
+    at += to - from;
   };
 
   const flush = (): void => {
     if (at > 0) write(out.slice(0, at));
     at = 0;
+    hasLine = false;
   };
 
   const header = [...(withTake ? ['take'] : []), ...columns.map(({ name }) => name)];
-  write(encoder.encode(`${header.map((name) => new TextDecoder().decode(textOf(name))).join(',')}\n`));
+  for (const [i, name] of header.entries()) {
+    if (i > 0) out[at++] = COMMA;
+    putText(name);
+  }
+  out[at++] = NEWLINE;
+  flush();
+
   return {
     add(take, row) {
       if (withTake) {
-        const bytes = textOf(take);
-        put(bytes, bytes.length);
+        putText(take);
         out[at++] = COMMA;
       }
+      let same = 0;
       for (let i = 0; i < columns.length; i++) {
-        if (i > 0) out[at++] = COMMA;
-        cell(columns[i] as TableColumn, i, row);
+        const column = columns[i] as TableColumn;
+        if (isSame(column, i, row)) continue;
+        copy(same, i);
+        begins[i] = at;
+        put(column, i);
+        out[at++] = COMMA;
+        same = i + 1;
       }
-      out[at++] = NEWLINE;
+      copy(same, columns.length);
+      begins[columns.length] = at;
+      // The last comma ends the line.
+      out[at - 1] = NEWLINE;
+      hasLine = true;
       if (at >= PORTION) flush();
     },
     end: flush,
   };
 };
-
-/** Writes a number's digits; returns how many bytes they are. */
-function digits(value: number, into: Uint8Array, encoder: InstanceType<typeof TextEncoder>): number {
-  const size = Math.abs(value);
-  if (!(size < FIXED_MAX)) return encoder.encodeInto(`${value}`, into).written;
-  let fixed = Math.round(size * DECIMALS);
-  if (fixed === 0) {
-    into[0] = ZERO;
-    return 1;
-  }
-  let at = 0;
-  if (value < 0) into[at++] = MINUS;
-  let whole = Math.floor(fixed / DECIMALS);
-  fixed -= whole * DECIMALS;
-  let places = 1;
-  for (let power = 10; power <= whole; power *= 10) places++;
-  for (let i = places - 1; i >= 0; i--) {
-    const rest = Math.floor(whole / 10);
-    into[at + i] = ZERO + (whole - 10 * rest);
-    whole = rest;
-  }
-  at += places;
-  if (fixed === 0) return at;
-  into[at++] = POINT;
-  for (let power = DECIMALS / 10; fixed > 0; power /= 10) {
-    const digit = Math.floor(fixed / power);
-    into[at++] = ZERO + digit;
-    fixed -= digit * power;
-  }
-  return at;
-}

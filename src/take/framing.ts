@@ -11,8 +11,8 @@ export interface Frame {
   readonly kind: 'schema' | 'batch' | 'other';
   /** Rows of a batch. */
   readonly rows: number;
-  /** Where the batch's buffers asked for lie in its body, bytes. */
-  readonly buffers: readonly Span[];
+  /** Where the batch's buffers asked for lie in its body; null: not inside it, or there is no such buffer. */
+  readonly buffers: readonly (Span | null)[];
 }
 
 export interface Span {
@@ -26,10 +26,13 @@ export type ReadAt = (offset: number, bytes: number) => Uint8Array;
 /** A frame; `end`: the end mark stands here; `broken`: nothing from here on can be trusted. */
 export type FrameRead = Frame | 'end' | 'broken';
 
-export const PREFIX_BYTES = 8;
+const PREFIX_BYTES = 8;
 const CONTINUATION = 0xffff_ffff;
 /** A hundred joints take some 50 KiB here; profiles add theirs to the schema. */
 const METADATA_BYTES_MAX = 16 * 1024 * 1024;
+/** A thousand rows of a hundred joints are 3 MiB; a damaged length must not become memory. */
+const BODY_BYTES_MAX = 256 * 1024 * 1024;
+const HIGH = 2 ** 32;
 const SCHEMA = 1;
 const BATCH = 3;
 
@@ -44,15 +47,21 @@ export function frameAt(offset: number, size: number, read: ReadAt, buffers: rea
   const metadataBytes = prefix.getInt32(4, true);
   if (metadataBytes === 0) return 'end';
   if (metadataBytes < 0 || metadataBytes > METADATA_BYTES_MAX || metadataBytes % 8 !== 0) return 'broken';
-  const bodyAt = offset + PREFIX_BYTES + metadataBytes;
-  if (bodyAt > size) return 'broken';
+  const body = offset + PREFIX_BYTES + metadataBytes;
+  if (body > size) return 'broken';
   const message = messageOf(view(read(offset + PREFIX_BYTES, metadataBytes)), buffers);
-  if (message === null || message.bodyBytes < 0 || bodyAt + message.bodyBytes > size) return 'broken';
+  if (message === null || message.bodyBytes < 0 || message.bodyBytes > BODY_BYTES_MAX) return 'broken';
+  if (body + message.bodyBytes > size) return 'broken';
   return { offset, metadataBytes, ...message };
 }
 
-export function frameEnd({ offset, metadataBytes, bodyBytes }: Frame): number {
-  return offset + PREFIX_BYTES + metadataBytes + bodyBytes;
+/** Where its body begins in the file. */
+export function bodyAt({ offset, metadataBytes }: Frame): number {
+  return offset + PREFIX_BYTES + metadataBytes;
+}
+
+export function frameEnd(frame: Frame): number {
+  return bodyAt(frame) + frame.bodyBytes;
 }
 
 type Message = Pick<Frame, 'kind' | 'bodyBytes' | 'rows' | 'buffers'>;
@@ -65,7 +74,7 @@ function messageOf(data: DataView, wanted: readonly number[]): Message | null {
     const header = fieldAt(data, root, 2);
     const body = fieldAt(data, root, 3);
     const code = type === null ? 0 : data.getUint8(type);
-    const bodyBytes = body === null ? 0 : Number(data.getBigInt64(body, true));
+    const bodyBytes = body === null ? 0 : int64(data, body);
     if (code !== BATCH || header === null)
       return { kind: code === SCHEMA ? 'schema' : 'other', bodyBytes, rows: 0, buffers: [] };
     return batchOf(data, header + data.getUint32(header, true), bodyBytes, wanted);
@@ -81,18 +90,23 @@ function batchOf(data: DataView, table: number, bodyBytes: number, wanted: reado
   const length = fieldAt(data, table, 0);
   const field = fieldAt(data, table, 2);
   const isCompressed = fieldAt(data, table, 3) !== null;
-  const rows = length === null ? 0 : Number(data.getBigInt64(length, true));
+  const rows = length === null ? 0 : int64(data, length);
   if (isCompressed || field === null || rows < 0) return null;
   const vector = field + data.getUint32(field, true);
   const count = data.getUint32(vector, true);
-  const buffers: Span[] = [];
-  for (let i = 0; i < count; i++) {
-    const at = vector + 4 + 16 * i;
-    const span = { offset: Number(data.getBigInt64(at, true)), bytes: Number(data.getBigInt64(at + 8, true)) };
-    if (span.offset < 0 || span.bytes < 0 || span.offset + span.bytes > bodyBytes) return null;
-    if (wanted.includes(i)) buffers.push(span);
-  }
-  return buffers.length < wanted.length ? null : { kind: 'batch', bodyBytes, rows, buffers };
+  const buffers = wanted.map((i) => (i < count ? spanAt(data, vector + 4 + 16 * i, bodyBytes) : null));
+  return { kind: 'batch', bodyBytes, rows, buffers };
+}
+
+function spanAt(data: DataView, at: number, bodyBytes: number): Span | null {
+  const offset = int64(data, at);
+  const bytes = int64(data, at + 8);
+  return offset < 0 || bytes < 0 || offset + bytes > bodyBytes ? null : { offset, bytes };
+}
+
+/** Exact below 2^53; no BigInt for each of a thousand numbers. */
+function int64(data: DataView, at: number): number {
+  return data.getInt32(at + 4, true) * HIGH + data.getUint32(at, true);
 }
 
 /** Where field `id` of the table at `table` stands, or null where it has its default. */

@@ -1,7 +1,7 @@
 import { makeData, RecordBatch, type Schema, Struct } from 'apache-arrow';
 import { type Column, columns, FIXED } from './columns.ts';
 import type { TakeHeader } from './header.ts';
-import type { Row, RowFollower } from './row.ts';
+import { NAME_BYTES_MAX, type Row, type RowFollower } from './row.ts';
 
 /** Rows of a take on their way into one batch, column by column in arrays made once. */
 export interface Page {
@@ -14,7 +14,7 @@ export interface Page {
 }
 
 /** Text in one page: marks and edits are rare; what does not fit is cut. */
-const TEXT_BYTES = 16_384;
+const TEXT_BYTES = NAME_BYTES_MAX;
 const HIGH = 2 ** 32;
 
 type Numbers = Uint8Array | Int8Array | Int16Array | Float32Array | Float64Array;

@@ -1,12 +1,13 @@
-import { closeSync, fstatSync, openSync, readSync } from 'node:fs';
+import { closeSync, fstatSync, openSync } from 'node:fs';
 import { basename } from 'node:path';
-import { type RecordBatch, RecordBatchReader, type Schema } from 'apache-arrow';
+import { RecordBatchReader, type Schema } from 'apache-arrow';
 import { strangeColumn } from './columns.ts';
 import { diskFault, takeFault, type TakeFault } from './fault.ts';
-import { frameAt, frameEnd, type ReadAt } from './framing.ts';
+import { fileWindow } from './file-window.ts';
+import { bodyAt, frameAt, frameEnd } from './framing.ts';
 import { headerFrom, PROFILES_KEY, type TakeHeader } from './header.ts';
 import { type BatchPlace, indexOf } from './batch-index.ts';
-import { halves, pageReader, whole64 } from './page-reader.ts';
+import { pageReader } from './page-reader.ts';
 import type { Row } from './row.ts';
 import { END_MARK } from './stream.ts';
 
@@ -24,11 +25,10 @@ export interface Take {
   readonly lostBytes: number | null;
   /** Rows met so far that stood in damaged batches, and were left out. */
   readonly damagedRows: number;
+  /** The first `MARKS_MAX`, in order. */
   readonly marks: readonly Mark[];
   /** Every row from the batch that holds `fromUs` on, in order, in a reused row; earlier rows of that batch come too. */
   readFrom(fromUs: number): Iterable<Row>;
-  /** The batches as Arrow has them. */
-  batches(): Iterable<RecordBatch>;
   close(): void;
 }
 
@@ -36,6 +36,11 @@ export interface Mark {
   readonly name: string;
   readonly tUs: number;
 }
+
+const MARKS_MAX = 10_000;
+/** What a frame tells and its first stamps fit in here, so that opening reads little of a long take. */
+const INDEX_WINDOW_BYTES = 16 * 1024;
+const WINDOW_BYTES = 1024 * 1024;
 
 /** Opens a take and judges every frame of it; a cut one opens with what is whole. */
 export function openTake(file: string): Take | TakeFault {
@@ -58,7 +63,7 @@ function judge(name: string, descriptor: number): Take | TakeFault {
   if (!stat.isFile()) return takeFault('TAKE_FOREIGN', name, 'it is no file');
   const { size } = stat;
   if (size === 0) return takeFault('TAKE_EMPTY', name, 'there is nothing in it');
-  const read = reading(descriptor);
+  const read = fileWindow(descriptor, INDEX_WINDOW_BYTES);
   const first = frameAt(0, size, read, []);
   if (first === 'end' || first === 'broken' || first.kind !== 'schema')
     return takeFault('TAKE_FOREIGN', name, 'it is no Arrow stream, or was cut before its first row');
@@ -72,44 +77,29 @@ function judge(name: string, descriptor: number): Take | TakeFault {
   if (strange !== null)
     return takeFault('TAKE_FOREIGN', name, `its columns are not those of a take, from "${strange}" on`);
 
-  const found = indexOf(frameEnd(first), size, read);
+  const found = indexOf(frameEnd(first), size, fileWindow(descriptor, INDEX_WINDOW_BYTES));
   if (found.rows === 0 && !found.whole)
     return takeFault('TAKE_EMPTY', name, 'it was cut before its first rows were written');
 
   let damagedRows = 0;
-  const decoded = function* (places: readonly BatchPlace[]): Generator<RecordBatch> {
-    const pieces = function* (): Generator<Uint8Array> {
-      yield head;
-      // Memory of its own each time: what is still read of one batch must not change with the next.
-      for (const { offset, bytes } of places) yield read(offset, bytes).slice();
-      yield END_MARK;
-    };
-    yield* RecordBatchReader.from(pieces());
-  };
-  const batches = function* (places: readonly BatchPlace[]): Generator<RecordBatch> {
-    for (let i = 0; i < places.length; ) {
-      try {
-        for (const batch of decoded(places.slice(i))) {
-          if (!isSound(batch, places[i]?.rows ?? 0)) break;
-          i++;
-          yield batch;
-        }
-        if (i === places.length) return;
-      } catch (error) {
-        // What damaged lengths make Arrow throw.
-        if (!(error instanceof RangeError || error instanceof TypeError || isArrows(error))) throw error;
-      }
-      damagedRows += places[i]?.rows ?? 0;
-      i++;
+  /** Rows of the batches that begin at `fromByte` or after it and before `toByte`, and end at `fromUs` or after it. */
+  const rowsOf = function* (fromByte: number, toByte: number, fromUs: number): Generator<Row> {
+    const page = pageReader(header);
+    const readNext = fileWindow(descriptor, WINDOW_BYTES);
+    for (let offset = fromByte; offset < toByte; ) {
+      const frame = frameAt(offset, found.endBytes, readNext, page.buffers);
+      // Somebody has written into the file since it was opened.
+      if (frame === 'end' || frame === 'broken') return;
+      offset = frameEnd(frame);
+      if (frame.kind !== 'batch' || frame.rows === 0) continue;
+      if (!page.open(frame, readNext(bodyAt(frame), frame.bodyBytes))) damagedRows += frame.rows;
+      else if (page.lastUs >= fromUs) for (let r = 0; r < frame.rows; r++) yield page.row(r);
     }
   };
-  const rowsOf = function* (places: readonly BatchPlace[]): Generator<Row> {
-    const pages = pageReader(header);
-    for (const batch of batches(places)) yield* pages.rows(batch);
-  };
   const marks: Mark[] = [];
-  for (const row of rowsOf(found.batches.filter(({ named }) => named)))
-    if (row.name !== '') marks.push({ name: row.name, tUs: row.tUs });
+  for (const offset of found.named)
+    for (const row of rowsOf(offset, offset + 1, 0))
+      if (row.name !== '' && marks.length < MARKS_MAX) marks.push({ name: row.name, tUs: row.tUs });
   damagedRows = 0;
 
   return {
@@ -124,65 +114,23 @@ function judge(name: string, descriptor: number): Take | TakeFault {
       return damagedRows;
     },
     marks,
-    readFrom: (fromUs) => ({ [Symbol.iterator]: () => rowsOf(found.batches.slice(batchAt(found.batches, fromUs))) }),
-    batches: () => ({ [Symbol.iterator]: () => batches(found.batches) }),
+    readFrom: (fromUs) => ({
+      [Symbol.iterator]: () => rowsOf(placeFor(found.places, fromUs), found.endBytes, fromUs),
+    }),
     close: () => closeSync(descriptor),
   };
 }
 
-/** Every column has a value for every row, and time goes forward. */
-function isSound(batch: RecordBatch, rows: number): boolean {
-  const { children } = batch.data;
-  return (
-    batch.numRows === rows &&
-    children.every(({ length, values, valueOffsets }) => {
-      const enough = valueOffsets === undefined ? values?.length : valueOffsets.length - 1;
-      return length === rows && (enough ?? 0) >= rows;
-    }) &&
-    goesForward(children[0]?.values as BigInt64Array)
-  );
-}
-
-function goesForward(stamps: BigInt64Array): boolean {
-  const parts = halves(stamps);
-  let before = 0;
-  for (let i = 0; i < parts.length; i += 2) {
-    const tUs = whole64(parts, i);
-    if (tUs < before || tUs > Number.MAX_SAFE_INTEGER) return false;
-    before = tUs;
-  }
-  return true;
-}
-
-/** Arrow throws plain errors too, where a message is not the one it expects. */
-function isArrows(error: unknown): boolean {
-  return error instanceof Error && error.constructor === Error;
-}
-
-/** The last batch that begins before `tUs`: rows at that very instant may stand at its end. */
-function batchAt(batches: readonly BatchPlace[], tUs: number): number {
+/** The last place that begins before `tUs`: rows at that very instant may stand at its end. */
+function placeFor(places: readonly BatchPlace[], tUs: number): number {
   let low = 0;
-  let high = batches.length;
+  let high = places.length;
   while (low < high) {
     const middle = (low + high) >>> 1;
-    if ((batches[middle] as BatchPlace).firstUs < tUs) low = middle + 1;
+    if ((places[middle] as BatchPlace).firstUs < tUs) low = middle + 1;
     else high = middle;
   }
-  return Math.max(0, low - 1);
-}
-
-function reading(descriptor: number): ReadAt {
-  let buffer = new Uint8Array(65_536);
-  return (offset, bytes) => {
-    if (buffer.length < bytes) buffer = new Uint8Array(bytes);
-    let got = 0;
-    while (got < bytes) {
-      const more = readSync(descriptor, buffer, got, bytes - got, offset + got);
-      if (more === 0) break;
-      got += more;
-    }
-    return buffer.subarray(0, got);
-  };
+  return places[Math.max(0, low - 1)]?.offset ?? Number.POSITIVE_INFINITY;
 }
 
 /** null where Arrow cannot make sense of it: damaged bytes make it throw errors of many kinds. */

@@ -35,6 +35,8 @@ export const ROW_KEYS = [
   'mark',
 ] as const satisfies readonly Key[];
 
+/** A name's text in UTF-8; what is longer is cut. */
+export const NAME_BYTES_MAX = 16_384;
 /** Code of a row that is no key. */
 export const NO_KEY = 255;
 /** Index of a row that is for no follower: below `ALL` and `LEADER`. */
