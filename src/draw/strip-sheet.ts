@@ -222,7 +222,7 @@ interface PlacedMark {
 
 /** Names stand in rows over the strips; marks of one column are one, and a name that finds no room is left out. */
 function placeMarks(marks: readonly { readonly name: string; readonly x: number }[]): readonly PlacedMark[] {
-  const ends = new Array<number>(MARK_ROWS_MAX).fill(Number.NEGATIVE_INFINITY);
+  const ends = Array.from({ length: MARK_ROWS_MAX }, () => Number.NEGATIVE_INFINITY);
   const placed: PlacedMark[] = [];
   let lastX = Number.NEGATIVE_INFINITY;
   for (const { name, x } of marks) {
