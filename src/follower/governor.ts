@@ -80,11 +80,13 @@ export function governors(arms: readonly (readonly JointLimits[])[]): Governors 
     const dt = dtS[0] as number;
     for (let j = from; j < to; j++) {
       const A = accel[j] as number;
+      // A division takes as long as ten sums.
+      const perA = 1 / A;
       const x0 = x[j] as number;
       const v0 = v[j] as number;
       if (braking[j] === 1) {
         const sign = v0 < 0 ? -1 : 1;
-        const t = Math.min(dt, Math.abs(v0) / A);
+        const t = Math.min(dt, Math.abs(v0) * perA);
         x[j] = x0 + v0 * t - 0.5 * sign * A * t * t;
         v[j] = t < dt ? 0 : v0 - sign * A * t;
         continue;
@@ -95,27 +97,29 @@ export function governors(arms: readonly (readonly JointLimits[])[]): Governors 
       const vt = Math.min(Math.max(vtOf[j] as number, -top), top);
       const e = r - vt * dt - x0;
       const u0 = v0 - vt;
-      const past = e - (0.5 * u0 * Math.abs(u0)) / A;
+      const past = e - 0.5 * u0 * Math.abs(u0) * perA;
       // Seen from the moving target and along s, the way the arm has to turn next: distance D, speed u, speed allowed W.
       const s = past > 0 ? 1 : past < 0 ? -1 : u0 < 0 ? -1 : 1;
       const D = s * e;
       const u = s * u0;
       const W = Math.max(0, top - s * vt);
       const peak = u > W ? W : Math.max(u, Math.min(W, Math.sqrt(Math.max(0, A * D + 0.5 * u * u))));
-      const a = peak > u ? A : peak < u ? -A : 0;
-      const t1 = Math.abs(peak - u) / A;
-      const d1 = 0.5 * (u + peak) * t1;
-      const left = D - d1;
-      const t2 = peak > 0 ? Math.max(0, left - (0.5 * peak * peak) / A) / peak : left > REST_RAD ? FOREVER_S : 0;
-      const T = t1 + t2 + peak / A;
+      const t1 = Math.abs(peak - u) * perA;
       if (dt <= t1) {
+        const a = peak > u ? A : -A;
         x[j] = x0 + s * (u * dt + 0.5 * a * dt * dt) + vt * dt;
         v[j] = vt + s * (u + a * dt);
-      } else if (dt <= t1 + t2) {
+        continue;
+      }
+      // Computed only now: the first phase is the one that an arm on its way behind a hand is mostly in.
+      const d1 = 0.5 * (u + peak) * t1;
+      const left = D - d1;
+      const t2 = peak > 0 ? Math.max(0, left - 0.5 * peak * peak * perA) / peak : left > REST_RAD ? FOREVER_S : 0;
+      const rest = t1 + t2 + peak * perA - dt;
+      if (dt <= t1 + t2) {
         x[j] = x0 + s * (d1 + peak * (dt - t1)) + vt * dt;
         v[j] = vt + s * peak;
-      } else if (dt < T) {
-        const rest = T - dt;
+      } else if (rest > 0) {
         x[j] = x0 + s * (D - 0.5 * A * rest * rest) + vt * dt;
         v[j] = vt + s * A * rest;
       } else {

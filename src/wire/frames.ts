@@ -22,7 +22,7 @@ import {
   u32,
 } from './frames-layout.ts';
 import { type PulseGrid, pulseGrid, pulseSteps } from './pulse-grid.ts';
-import type { BoardPlan, Emit, Frame, Garble, OutputWiring, ServoWiring, WireSession } from './types.ts';
+import type { BoardPlan, Emit, Frame, Garble, OutputWiring, WireSession } from './types.ts';
 
 const WRAP_US = 2 ** 32;
 /** Board time that steps back by less is a frame that came late (UDP reorders), by more a board that restarted. */
@@ -37,6 +37,7 @@ export function framesSession(plan: BoardPlan): WireSession {
   const inputOfChannel = new Int16Array(256).fill(-1);
   channels.forEach((channel, input) => (inputOfChannel[channel] = input));
   const grids = plan.outputs.map((output) => pulseGrid(output.servos, PULSE_STEPS_PER_US));
+  const channelsOf = plan.outputs.map(({ servos }) => Uint8Array.from(servos, (servo) => servo.channel));
   for (const { follower, servos } of plan.outputs) {
     if (servos.length > SERVOS_MAX) throw new RangeError(`${follower} has more than ${SERVOS_MAX} servos`);
   }
@@ -199,8 +200,8 @@ export function framesSession(plan: BoardPlan): WireSession {
       return Math.max(commandBytes((plan.outputs[output] as OutputWiring).servos.length), sealedBytes(HOST_HEAD + 2));
     },
     encode(output, frame, out) {
-      const { servos } = plan.outputs[output] as OutputWiring;
-      return putCommand(head(FROM_HOST.command), servos, grids[output] as PulseGrid, frame, out);
+      const wired = channelsOf[output] as Uint8Array;
+      return putCommand(head(FROM_HOST.command), wired, grids[output] as PulseGrid, frame, out);
     },
     limp(output, out) {
       let at = head(FROM_HOST.limp);
@@ -227,17 +228,17 @@ export function framesSession(plan: BoardPlan): WireSession {
 /** Puts the servos of a command behind its head of `at` bytes and seals it into `out`; returns its length there. */
 function putCommand(
   at: number,
-  servos: readonly ServoWiring[],
+  channels: Uint8Array,
   grid: PulseGrid,
   { pulsesUs, sentUs, pulsing }: Frame,
   out: Uint8Array,
 ): number {
   let end = at;
-  for (let servo = 0; servo < servos.length; servo++) {
+  for (let servo = 0; servo < channels.length; servo++) {
     const steps = pulseSteps(grid, servo, pulsesUs[servo] as number);
     sentUs[servo] = steps / PULSE_STEPS_PER_US;
     if (servo >= pulsing) continue;
-    outgoing[end] = (servos[servo] as ServoWiring).channel;
+    outgoing[end] = channels[servo] as number;
     outgoing[end + 1] = steps & 0xff;
     outgoing[end + 2] = steps >>> 8;
     end += SERVO_BYTES;

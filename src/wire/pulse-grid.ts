@@ -22,9 +22,9 @@ export function pulseGrid(servos: readonly ServoWiring[], stepsPerUs: number): P
  * points. Within half a step of the pulse, except at a span end that lies between two steps.
  */
 export function pulseSteps(grid: PulseGrid, servo: number, pulseUs: number): number {
-  if (Number.isNaN(pulseUs)) throw new RangeError(`pulse of servo ${servo} is not a number`);
+  if (!Number.isFinite(pulseUs)) throw new RangeError(`pulse of servo ${servo} is not a number`);
   const low = grid.low[servo] as number;
   const high = grid.high[servo] as number;
-  const steps = Math.round(pulseUs * grid.stepsPerUs);
-  return (steps < low ? low : steps > high ? high : steps) | 0;
+  const steps = (pulseUs * grid.stepsPerUs + 0.5) | 0;
+  return steps < low ? low : steps > high ? high : steps;
 }

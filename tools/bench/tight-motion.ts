@@ -42,11 +42,12 @@ export function tightMotion(joints: readonly FollowerJointSpec[]): TightMotion {
     let stirs = false;
     for (let i = first; i < end; i++) {
       const A = accel[i] as number;
+      const perA = 1 / A;
       const x0 = x[i] as number;
       const v0 = v[i] as number;
       if (braking[i] === 1) {
         const sign = v0 < 0 ? -1 : 1;
-        const t = Math.min(dt, Math.abs(v0) / A);
+        const t = Math.min(dt, Math.abs(v0) * perA);
         x[i] = x0 + v0 * t - 0.5 * sign * A * t * t;
         v[i] = t < dt ? 0 : v0 - sign * A * t;
       } else {
@@ -54,32 +55,37 @@ export function tightMotion(joints: readonly FollowerJointSpec[]): TightMotion {
         const vt = Math.min(Math.max(targetSpeed[i] as number, -top), top);
         const e = (target[i] as number) - vt * dt - x0;
         const u0 = v0 - vt;
-        const past = e - (0.5 * u0 * Math.abs(u0)) / A;
+        const past = e - 0.5 * u0 * Math.abs(u0) * perA;
         const s = past > 0 ? 1 : past < 0 ? -1 : u0 < 0 ? -1 : 1;
         const D = s * e;
         const u = s * u0;
         const W = Math.max(0, top - s * vt);
         const peak = u > W ? W : Math.max(u, Math.min(W, Math.sqrt(Math.max(0, A * D + 0.5 * u * u))));
-        const a = peak > u ? A : peak < u ? -A : 0;
-        const t1 = Math.abs(peak - u) / A;
-        const d1 = 0.5 * (u + peak) * t1;
-        const left = D - d1;
-        const t2 =
-          peak > 0 ? Math.max(0, left - (0.5 * peak * peak) / A) / peak : left > 1e-12 ? Number.POSITIVE_INFINITY : 0;
-        const T = t1 + t2 + peak / A;
+        const t1 = Math.abs(peak - u) * perA;
         if (dt <= t1) {
+          const a = peak > u ? A : -A;
           x[i] = x0 + s * (u * dt + 0.5 * a * dt * dt) + vt * dt;
           v[i] = vt + s * (u + a * dt);
-        } else if (dt <= t1 + t2) {
-          x[i] = x0 + s * (d1 + peak * (dt - t1)) + vt * dt;
-          v[i] = vt + s * peak;
-        } else if (dt < T) {
-          const rest = T - dt;
-          x[i] = x0 + s * (D - 0.5 * A * rest * rest) + vt * dt;
-          v[i] = vt + s * A * rest;
         } else {
-          x[i] = target[i] as number;
-          v[i] = vt;
+          const d1 = 0.5 * (u + peak) * t1;
+          const left = D - d1;
+          const t2 =
+            peak > 0
+              ? Math.max(0, left - 0.5 * peak * peak * perA) / peak
+              : left > 1e-12
+                ? Number.POSITIVE_INFINITY
+                : 0;
+          const rest = t1 + t2 + peak * perA - dt;
+          if (dt <= t1 + t2) {
+            x[i] = x0 + s * (d1 + peak * (dt - t1)) + vt * dt;
+            v[i] = vt + s * peak;
+          } else if (rest > 0) {
+            x[i] = x0 + s * (D - 0.5 * A * rest * rest) + vt * dt;
+            v[i] = vt + s * A * rest;
+          } else {
+            x[i] = target[i] as number;
+            v[i] = vt;
+          }
         }
         if (v[i] !== 0 && Math.abs(v[i] as number) >= 0.999 * top) limits[i] = (limits[i] as number) | AT_SPEED;
       }

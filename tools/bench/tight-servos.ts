@@ -44,7 +44,7 @@ export function tightServos(plan: Plan, x: Float64Array): TightServos {
         d * ((map[row + 2] as number) + d * ((map[row + 3] as number) + d * (map[row + 4] as number)));
       pulsesUs[k] = pulse;
       if (Number.isNaN(pulse)) throw new RangeError('pulse is not a number');
-      const rounded = Math.round(pulse * PULSE_STEPS_PER_US);
+      const rounded = (pulse * PULSE_STEPS_PER_US + 0.5) | 0;
       const lowest = low[k] as number;
       const highest = high[k] as number;
       const step = rounded < lowest ? lowest : rounded > highest ? highest : rounded;
