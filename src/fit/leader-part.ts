@@ -1,6 +1,7 @@
 import type { LeaderJoint, LeaderProfile } from '../rig/schema/leader.ts';
 import type { Capture, JointCaptures } from './captures.ts';
 import { leaderCurve } from './curves.ts';
+import { PROTRACTOR_DEG } from './map-error.ts';
 import { fitMap } from './map-fit.ts';
 import { assumedNoise, noiseOf, QUANTISATION_COUNTS } from './noise.ts';
 import { pointsReport } from './points-report.ts';
@@ -61,7 +62,11 @@ export function fitLeaderJoint(profile: LeaderProfile, index: number, captures: 
   const wanted = captures.of['leader-point'].length > 0 && sweep?.wraps !== true;
   const slope = Math.abs((Math.max(...y) - Math.min(...y)) / (Math.max(...x) - Math.min(...x)));
   const fit = wanted
-    ? fitMap(x, y, { noise: Number.isFinite(slope) ? slope * QUANTISATION_COUNTS : 0, curves: true })
+    ? fitMap(x, y, {
+        noise: Number.isFinite(slope) ? slope * QUANTISATION_COUNTS : 0,
+        usualScatter: PROTRACTOR_DEG,
+        curves: true,
+      })
     : null;
   const found = fit !== null && 'why' in fit ? complain(noMapProblem(fit, arm, joint.name, 'counts')) : fit;
   const fitted: PointsReport | null = found === null ? null : pointsReport(found, x, y, width);

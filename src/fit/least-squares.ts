@@ -23,6 +23,8 @@ export interface Polynomial {
   leverage(x: number): number;
   /** Variance of slope(x) in units of sigma squared. */
   slopeLeverage(x: number): number;
+  /** Its last term, scaled so that its squares over the points sum to 1: the coefficient then has the variance of a point. */
+  readonly last: { readonly coefficient: number; value(x: number): number };
 }
 
 /**
@@ -111,6 +113,7 @@ function polynomial(basis: readonly Member[], coefficients: readonly number[], r
     return sum;
   };
   const normOf = (k: number): number => (basis[k] as Member).norm;
+  const top = basis.length - 1;
   return {
     degree: basis.length - 1,
     n,
@@ -122,5 +125,9 @@ function polynomial(basis: readonly Member[], coefficients: readonly number[], r
     slope: (x) => summed(x, (k, _, s) => (coefficients[k] as number) * s),
     leverage: (x) => summed(x, (k, p) => (p * p) / normOf(k)),
     slopeLeverage: (x) => summed(x, (k, _, s) => (s * s) / normOf(k)),
+    last: {
+      coefficient: (coefficients[top] as number) * Math.sqrt(normOf(top)),
+      value: (x) => summed(x, (k, p) => (k === top ? p / Math.sqrt(normOf(top)) : 0)),
+    },
   };
 }

@@ -1,6 +1,7 @@
 import { curveThrough } from './curves.ts';
-import { fisherTail, studentT, studentTails } from './distributions.ts';
+import { fisherTail, studentT } from './distributions.ts';
 import { type Polynomial, polynomials } from './least-squares.ts';
+import { errorOfMap } from './map-error.ts';
 import { standingApart } from './theil-sen.ts';
 import { type Suspect, suspect, wrongPoint } from './wrong-point.ts';
 
@@ -52,9 +53,8 @@ export type NoMap =
 
 const TAILS = 0.05;
 /**
- * A bend is believed that chance would mimic this often. Lenient on purpose: a bend that is there and not believed makes the
- * stated error a lie, one that is not there and believed costs a little of it. (Tried on 400 sets each of pots loaded 10- to
- * 1000-fold, 0 to 2 % off a line, read to a degree at 7 to 25 angles.)
+ * A bend is believed that chance would mimic this often. Lenient on purpose: a bend that is there and not believed is an
+ * error of the map, one that is not there and believed costs a little of it.
  */
 const BELIEVED = 0.1;
 /** Above this, a curve describes the points' scatter rather than the pot. */
@@ -71,6 +71,8 @@ const MENTION_SIGMAS = 3;
 export interface MapFitOptions {
   /** Spread in y that each point has anyhow, from resolution and from noise while held. */
   readonly noise: number;
+  /** What points of this kind usually scatter by, before any is seen, in y. */
+  readonly usualScatter: number;
   /** False: only a straight line will do (a servo's points are joined by straight lines anyhow). */
   readonly curves: boolean;
 }
@@ -105,6 +107,9 @@ export function fitMap(x: readonly number[], y: readonly number[], options: MapF
     error95: t === null ? null : t * Math.max(used.sigma, noise) * Math.sqrt(leverage),
   });
   const mid = (from + to) / 2;
+  const scatter = { noise, usualScatter: options.usualScatter };
+  // Where chance may have made a point stand out, it may as well be right.
+  const believable = wrong === null || wrong.chance < UNDOUBTED ? [fit.all] : [fit.all, polynomials(x, y, DEGREE_MAX)];
   return {
     curve: used.degree === 1 ? 'straight' : 'monotone',
     points,
@@ -116,16 +121,13 @@ export function fitMap(x: readonly number[], y: readonly number[], options: MapF
     rms: Math.sqrt(own.reduce((sum, r) => sum + r * r, 0) / own.length),
     worst: Math.max(...own),
     sigma: used.dof > 0 ? used.sigma : null,
-    error95: errorOf(fit, from, to, noise, value),
+    error95: used.dof > 0 ? Math.max(...believable.map((all) => errorOfMap(all, value, from, to, scatter))) : null,
     slope: within(line.slope(mid), line.slopeLeverage(mid)),
     middle: { x: mid, ...within(line.value(mid), line.leverage(mid)) },
     offset: within(line.value(0), line.leverage(0)),
     value,
   };
 }
-
-/** A least-squares curve is by far least certain at its two ends, and there independently. */
-const ENDS = 2;
 
 /** Rounding, as a share of the span of y. */
 const EXACT = 1e-9;
@@ -153,7 +155,7 @@ function chosen(
     // A bend can look like a wrong point to the line: then leaving that point out does not help much.
     if (asked !== fit.used && spread(again.used, noise) > HELPS * spread(fit.used, noise)) continue;
     const second = wrongPoint(again.used, rest, noise);
-    if (second !== null && rest.length * studentTails(second.sigmas, again.used.dof - 1) < BEYOND_CHANCE)
+    if (second !== null && second.chance < BEYOND_CHANCE)
       return { why: 'wrong points', at: [x[wrong.index] as number, rest[second.index] as number] };
     return turning(again, rest) ?? { fit: again, wrong: placed(wrong, again.used, x, y) };
   }
@@ -164,6 +166,9 @@ function chosen(
 
 /** So seldom does scatter alone make a second point stand out; a few points are easily unlucky. */
 const BEYOND_CHANCE = 1e-6;
+
+/** A point that chance makes stand out so seldom is wrong beyond doubt. */
+const UNDOUBTED = 0.01;
 
 /** Leaving a wrong point out takes the spread down to this share or less. */
 const HELPS = 0.7;
@@ -232,29 +237,4 @@ function knots(curve: Polynomial, from: number, to: number): readonly (readonly 
     const at = from + ((to - from) * i) / (KNOTS - 1);
     return [at, curve.value(at)] as const;
   });
-}
-
-/**
- * Largest half width of a band that holds everywhere at once: either end may be wrong (Bonferroni). A bend too small to
- * be believed, and what a monotone cubic through the knots does between them, may still be there and are added.
- */
-function errorOf(fit: Fitted, from: number, to: number, noise: number, value: (x: number) => number): number | null {
-  const { used, all } = fit;
-  if (used.dof < 1) return null;
-  const t = studentT(TAILS / ENDS, used.dof);
-  const sigma = Math.max(used.sigma, noise);
-  // Two terms more: a bend and an S.
-  const wider = [2, 1]
-    .map((more) => all[used.degree + more])
-    .find((next) => next !== undefined && next.dof >= SPARE_MIN);
-  let band = 0;
-  let bend = 0;
-  let between = 0;
-  for (let i = 0; i <= LOOKS; i++) {
-    const at = from + ((to - from) * i) / LOOKS;
-    band = Math.max(band, t * sigma * Math.sqrt(used.leverage(at)));
-    bend = Math.max(bend, Math.abs((wider ?? used).value(at) - used.value(at)));
-    between = Math.max(between, Math.abs(value(at) - used.value(at)));
-  }
-  return Math.hypot(band, bend) + between;
 }

@@ -1,3 +1,4 @@
+import { BY_EYE_DEG } from './map-error.ts';
 import { type Estimate, fitMap, type MapFit, type NoMap } from './map-fit.ts';
 
 /** A follower's joint parked at a known angle, and the leader set alike by eye; degrees. */
@@ -26,7 +27,7 @@ export function matchPoses(pairs: readonly PosePair[]): Match | NoMap {
   const fit = fitMap(
     pairs.map(({ followerDeg }) => followerDeg),
     pairs.map(({ leaderDeg }) => leaderDeg),
-    { noise: EYE_DEG, curves: false },
+    { noise: EYE_DEG, usualScatter: BY_EYE_DEG, curves: false },
   );
   if ('why' in fit) return fit;
   const { slope, middle } = fit;

@@ -1,3 +1,4 @@
+import { PROTRACTOR_DEG } from './map-error.ts';
 import type { Estimate, MapFit, NoMap } from './map-fit.ts';
 import { fitMap } from './map-fit.ts';
 import { studentT } from './distributions.ts';
@@ -39,7 +40,7 @@ export function fitServo(
   const map = fitMap(
     pulses,
     points.map(({ angleDeg }) => angleDeg),
-    { noise, curves: true },
+    { noise, usualScatter: PROTRACTOR_DEG, curves: true },
   );
   if ('why' in map) return map;
   const betweenUs = [Math.min(...pulses), Math.max(...pulses)] as const;

@@ -32,7 +32,8 @@ export function theilSen(x: readonly number[], y: readonly number[]): RobustLine
 const QUARTILES_SIGMAS = 1.349;
 /** A bent pot puts its ends two or three of these from a line; a misread angle many more. */
 const APART_SIGMAS = 8;
-const POINTS_MIN = 8;
+/** Quartiles of fewer are too easily near each other by chance. */
+const POINTS_MIN = 9;
 
 /**
  * Points far from where most of the others run: several wrong ones hide each other from any test of one at a time.

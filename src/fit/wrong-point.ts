@@ -1,3 +1,4 @@
+import { studentTails } from './distributions.ts';
 import type { Polynomial } from './least-squares.ts';
 
 /** The point that agrees least with the others. */
@@ -7,6 +8,8 @@ export interface Suspect {
   readonly away: number;
   /** The same in standard errors of that distance, the others alone giving the spread. */
   readonly sigmas: number;
+  /** How likely scatter alone makes any of so many points stand out so far (Bonferroni). */
+  readonly chance: number;
 }
 
 /** A single point is called wrong from here on: what the others scatter by cannot explain it. */
@@ -35,7 +38,8 @@ export function suspect(fit: Polynomial, x: ArrayLike<number>, noise: number): S
     const away = residual / say;
     const others = Math.max(fit.squares - residual * away, 0) / dof;
     const sigmas = Math.abs(residual) / (Math.max(Math.sqrt(others), noise) * Math.sqrt(say));
-    if (Number.isFinite(sigmas) && (found === null || sigmas > found.sigmas)) found = { index, away, sigmas };
+    if (Number.isFinite(sigmas) && (found === null || sigmas > found.sigmas))
+      found = { index, away, sigmas, chance: Math.min(1, fit.n * studentTails(sigmas, dof)) };
   }
   return found;
 }

@@ -71,7 +71,7 @@ describe('The straight fit', () => {
 
   it('tells them apart by their residuals: scatter, a bend, and one wrong point', () => {
     const [scatter, bend, wrong] = ANSCOMBE.y.map((y) => {
-      const fit = fitMap(ANSCOMBE.x, y, { noise: 0, curves: true });
+      const fit = fitMap(ANSCOMBE.x, y, { noise: 0, usualScatter: 0.5, curves: true });
       if ('why' in fit) return fit.why;
       return `${fit.curve}${fit.wrong === null ? '' : `, ${ANSCOMBE.x[fit.wrong.index]} is wrong`}`;
     });
