@@ -34,7 +34,8 @@ export function eventSource(drive: Pick<Drive, 'dueUs'>, clock: Clock | null, st
   const subject = new Subject<DriveEvent>();
   const caused: Stamped[] = [];
   const tick: { -readonly [K in keyof TickEvent]: TickEvent[K] } = { kind: 'tick', tUs: startUs };
-  const last = { us: startUs, alarmUs: Number.POSITIVE_INFINITY };
+  // What is due changes with what is delivered and with nothing else: a drive is asked once, however often it is used.
+  const last = { us: startUs, dueUs: drive.dueUs(), alarmUs: Number.POSITIVE_INFINITY };
   let delivering = false;
   let closed = false;
   let cancel: Cancel | null = null;
@@ -50,22 +51,23 @@ export function eventSource(drive: Pick<Drive, 'dueUs'>, clock: Clock | null, st
       next.tUs = last.us;
       subject.next(next);
     }
+    last.dueUs = drive.dueUs();
     delivering = false;
   };
 
   const tickBefore = (endUs: number): void => {
     let atOnce = 0;
-    for (let dueUs = drive.dueUs(); dueUs < endUs; dueUs = drive.dueUs()) {
-      atOnce = dueUs > last.us ? 0 : atOnce + 1;
+    while (last.dueUs < endUs) {
+      atOnce = last.dueUs > last.us ? 0 : atOnce + 1;
       if (atOnce > TICKS_AT_ONCE_MAX) throw new Error('the drive asks for ticks without end');
-      tick.tUs = dueUs;
+      tick.tUs = last.dueUs;
       deliver(tick);
     }
   };
 
   const setAlarm = (): void => {
     if (clock === null) return;
-    const dueUs = drive.dueUs();
+    const { dueUs } = last;
     if (dueUs === last.alarmUs) return;
     cancel?.();
     // A microsecond later than it is due: what arrives at that very instant comes before its tick, timers or not.

@@ -25,6 +25,7 @@ import { type PulseGrid, pulseGrid, pulseSteps } from './pulse-grid.ts';
 import type { BoardPlan, Emit, Frame, Garble, OutputWiring, WireSession } from './types.ts';
 
 const WRAP_US = 2 ** 32;
+const US_PER_STEP = 1 / PULSE_STEPS_PER_US;
 /** Board time that steps back by less is a frame that came late (UDP reorders), by more a board that restarted. */
 const LATE_US = 1_000_000;
 
@@ -236,7 +237,7 @@ function putCommand(
   let end = at;
   for (let servo = 0; servo < channels.length; servo++) {
     const steps = pulseSteps(grid, servo, pulsesUs[servo] as number);
-    sentUs[servo] = steps / PULSE_STEPS_PER_US;
+    sentUs[servo] = steps * US_PER_STEP;
     if (servo >= pulsing) continue;
     outgoing[end] = channels[servo] as number;
     outgoing[end + 1] = steps & 0xff;

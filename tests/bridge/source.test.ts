@@ -89,8 +89,10 @@ describe('the stream of events', () => {
   it('raises a tick that is overdue', () => {
     const due = new Due();
     const { source, told } = watched(due);
+    source.events$.subscribe((event) => {
+      if (event.kind === 'reading' && event.tUs === 100) due.add(40);
+    });
     source.push(reading(100));
-    due.add(40);
     source.push(reading(200));
     expect(told).toEqual(['reading 100', 'tick 100', 'reading 200']);
   });
