@@ -8,6 +8,8 @@ export interface Companion {
   readonly onStart: NonNullable<LiveOptions['onStart']>;
   begin(company: Company): void;
   key(key: CompanionKey): void;
+  /** What it is doing just now, in a few words, for the head of the view; empty: nothing. */
+  standing(): string;
   /** The run is over; resolves with whether all went well. */
   end(): Promise<boolean>;
 }

@@ -4,7 +4,7 @@ import type { CommandUnknownOpts } from '@commander-js/extra-typings';
 import type { LogLevel } from '../bridge/log.ts';
 import { driving } from './driving.ts';
 import { rigOrMistakes } from './load.ts';
-import { durationOption } from './options.ts';
+import { durationOption, marksOption } from './options.ts';
 import { portOf } from './port-of.ts';
 import { logOption, type MakeRecording, recordingMaker } from './run.ts';
 import { realWorld, type World } from './world.ts';
@@ -56,12 +56,13 @@ export function demoCommand(world: () => World = realWorld): CommandUnknownOpts 
     .option('--json', 'print the status as JSON, ten lines a second')
     .option('--take <name>', 'record the run as a take; m marks, t ends it')
     .option('--count-in <time>', 'begin the recording only after this time', durationOption)
+    .option('--marks <names>', 'names that its marks get in turn, with commas; then they are numbered', marksOption)
     .option('--takes <folder>', 'where takes live')
     .addOption(logOption())
     .addHelpText('after', EXPLAINED)
-    .action(async ({ for: forUs, json, log, take, takes, countIn }) => {
+    .action(async ({ for: forUs, json, log, take, takes, countIn, marks }) => {
       const at = world();
-      const record = await recordingMaker({ take, takes, countIn }, at);
+      const record = await recordingMaker({ take, takes, countIn, marks }, at);
       process.exitCode = await demo({ for: forUs, json: json === true, log, record }, at);
     });
 }

@@ -20,6 +20,8 @@ export interface Look {
   readonly status: LiveStatus;
   readonly perSecond: readonly number[];
   readonly operator: Readonly<OperatorStanding>;
+  /** What goes along with the run does just now; empty: nothing. */
+  readonly along: string;
 }
 
 export interface Change {

@@ -78,7 +78,7 @@ export async function driving(options: DrivingOptions, world: World): Promise<nu
   const cancels = [tellStates(live, show), listenTo(world, hand, show, over, moves)];
   openKeyboard(world, rig.plan.followers.length, hand, show, over);
   const time = { isUp: false };
-  const looking = lookAround(live, hand, show, over, world, time);
+  const looking = lookAround(live, hand, show, over, world, time, companion);
   if (options.forUs !== null) {
     const timeIsUp = (): void => {
       time.isUp = true;
@@ -157,6 +157,7 @@ function lookAround(
   over: End,
   { clock }: World,
   time: { readonly isUp: boolean },
+  companion: Companion | undefined,
 ): { end(): Look } {
   const rate = rates(live.drive.followers.length);
   let outcome: (() => ParkingOutcome) | null = null;
@@ -164,7 +165,8 @@ function lookAround(
   const take = (): Look => {
     const status = live.status();
     rate.push(status);
-    return { atUs: show.atUs(), status, perSecond: rate.perSecond, operator: hand.is };
+    const along = companion?.standing() ?? '';
+    return { atUs: show.atUs(), status, perSecond: rate.perSecond, operator: hand.is, along };
   };
 
   const followHome = (): void => {

@@ -37,6 +37,17 @@ export function namesOption(text: string, before: readonly string[] | undefined)
   return [...(before ?? []), ...names];
 }
 
+/** Names of marks, in the order in which they come; each may be any text without a comma. */
+export function marksOption(text: string, before: readonly string[] | undefined): readonly string[] {
+  const names = text.split(',').map((name) => name.trim());
+  const wrong = names.find((name) => name === '' || name.length > MARK_LETTERS_MAX);
+  if (wrong !== undefined)
+    throw new InvalidArgumentError(`Name marks of 1 to ${MARK_LETTERS_MAX} letters, such as bow,turn,exit.`);
+  return [...(before ?? []), ...names];
+}
+
+const MARK_LETTERS_MAX = 80;
+
 export function logLevelOption(text: string): LogLevel {
   const level = LOG_LEVELS.find((known) => known === text);
   if (level === undefined) throw new InvalidArgumentError(`A log level is one of ${LOG_LEVELS.join(', ')}.`);

@@ -27,14 +27,15 @@ export function plainLines(out: Outlet, err: Outlet): Display {
   };
 }
 
-function standingLine({ atUs, status, perSecond }: Look): string {
+function standingLine({ atUs, status, perSecond, along }: Look): string {
   const followers = status.followers.map(({ follower, state, lag_us }, f) => {
     const port = status.boards.find((board) => board.followers.includes(follower)) ?? null;
     const lag = lag_us === null ? '' : `, lag ${milliseconds(lag_us)}`;
     const lost = damage(port);
     return `${follower} ${state} ${(perSecond[f] ?? 0).toFixed(0)}/s${lag}${lost === '' ? '' : `, ${lost}`}`;
   });
-  const parts = [`pace ${percent(status.pace)}`, contact(status.leader.reading_age_us), ...followers];
+  const does = along === '' ? [] : [along];
+  const parts = [`pace ${percent(status.pace)}`, contact(status.leader.reading_age_us), ...does, ...followers];
   return `${stamp(atUs)}  ${parts.join(' | ')}`;
 }
 

@@ -11,7 +11,7 @@ import { takesFolder } from '../take/folder.ts';
 import type { Companion } from './companion.ts';
 import { driving } from './driving.ts';
 import { rigOrMistakes } from './load.ts';
-import { chosenFollowers, durationOption, logLevelOption, namesOption, paceOption } from './options.ts';
+import { chosenFollowers, durationOption, logLevelOption, marksOption, namesOption, paceOption } from './options.ts';
 import { portOf } from './port-of.ts';
 import { realWorld, type World } from './world.ts';
 
@@ -74,14 +74,16 @@ export interface RecordOptions {
   readonly take: string | undefined;
   readonly takes: string | undefined;
   readonly countIn: number | undefined;
+  readonly marks: readonly string[] | undefined;
 }
 
 /** What records is loaded here, before anything moves: it takes a tenth of a second. */
-export async function recordingMaker({ take, takes, countIn }: RecordOptions, world: World): Promise<MakeRecording> {
+export async function recordingMaker(options: RecordOptions, world: World): Promise<MakeRecording> {
   const { recording } = await import('./take-recording.ts');
+  const { take, takes, countIn, marks } = options;
   const folder = takesFolder(takes, world.env);
-  return (rig, profiles) =>
-    recording({ folder, name: take ?? null, countInUs: countIn ?? 0, rig, profiles }, world.err.write);
+  const settings = { folder, name: take ?? null, countInUs: countIn ?? 0, marks: marks ?? [] };
+  return (rig, profiles) => recording({ ...settings, rig, profiles }, world.err.write);
 }
 
 function chosenRig(
@@ -123,14 +125,16 @@ export function runCommand(world: () => World = realWorld): CommandUnknownOpts {
     .addOption(logOption())
     .option('--take <name>', 'record the run as a take; m marks, t ends it')
     .option('--count-in <time>', 'begin the recording only after this time', durationOption)
+    .option('--marks <names>', 'names that its marks get in turn, with commas; then they are numbered', marksOption)
     .option('--takes <folder>', 'where takes live')
     .option('--log-file <file>', 'write the log there rather than to standard error')
     .addHelpText('after', EXPLAINED)
-    .action(async (file, { join, pace, only, without, dry, for: forUs, json, log, logFile, take, takes, countIn }) => {
+    .action(async (file, { join, pace, only, without, dry, for: forUs, json, log, logFile, ...asked }) => {
       const flags = { join: join === true, dry: dry === true, json: json === true };
       const rest = { pace, only, without, for: forUs, log, logFile };
       const at = world();
-      const record = await recordingMaker({ take, takes, countIn }, at);
+      const { take, takes, countIn, marks } = asked;
+      const record = await recordingMaker({ take, takes, countIn, marks }, at);
       process.exitCode = await run(file, { ...flags, ...rest, record }, at);
     });
 }

@@ -68,7 +68,14 @@ export async function playTake(name: string, options: PlayOptions, world: World,
     if (typeof fitted !== 'number') return fitted.status;
     const rows = rowsFor(take, rig, { ...score, speed: fitted }, options);
     if (isTakeFault(rows)) return refusedStatus(rows, at.err);
-    const layered = options.layer === null ? null : layering(take, rig, loaded.profiles, folder, err.write);
+    const layered =
+      options.layer === null
+        ? null
+        : recording(
+            { folder, name: options.layer.as, countInUs: null, marks: [], rig, profiles: loaded.profiles },
+            err.write,
+          );
+    if (options.layer !== null && layered === null) return 2;
     const companion = playing(take, rig, rows, score, options, layered);
     return await driving(
       {
@@ -170,16 +177,6 @@ function rowsFor(take: Take, rig: CompiledRig, score: Score, options: PlayOption
   return weightedReel(take, rig.plan, score.cast, score.by, score, score.speed, factors);
 }
 
-function layering(
-  take: Take,
-  rig: CompiledRig,
-  profiles: Parameters<typeof recording>[0]['profiles'],
-  folder: string,
-  say: (text: string) => void,
-): Recording | null {
-  return recording({ folder, name: null, countInUs: 0, rig, profiles }, say);
-}
-
 function playing(
   take: Take,
   rig: CompiledRig,
@@ -233,6 +230,11 @@ function playing(
       });
       changed('easing');
     },
+    standing() {
+      const also = recorded?.standing() ?? '';
+      const plays = running === null ? '' : standingOf(take.name, running);
+      return also === '' ? plays : `${plays}, ${also}`;
+    },
     key(key) {
       if (key === 'hand_over') running?.handOver();
       else recorded?.key(key);
@@ -242,6 +244,21 @@ function playing(
       return (await recorded?.end()) ?? true;
     },
   };
+}
+
+function standingOf(name: string, { is }: Player): string {
+  switch (is.phase) {
+    case 'easing':
+      return `easing in to ${name}`;
+    case 'counting':
+      return `${name} in ${Math.ceil(is.countUs / US_PER_S)} s`;
+    case 'playing':
+      return `playing ${name} ${Math.floor(is.atUs / US_PER_S)} s`;
+    case 'handed':
+      return `the hand leads, ${name} waits`;
+    case 'over':
+      return `${name} is over`;
+  }
 }
 
 function ownCommands({ plan }: CompiledRig): Cast {

@@ -1,3 +1,4 @@
+import { rmSync } from 'node:fs';
 import type { Observable } from 'rxjs';
 import { type Cancel, type Clock, US_PER_S } from '../clock/clock.ts';
 import type { Drive } from '../drive/drive.ts';
@@ -15,12 +16,22 @@ import { size } from './take-show.ts';
 
 export interface RecordingOptions {
   readonly folder: string;
-  /** Begins with the run under this name; null: when the key is pressed, under the next free one. */
+  /** Proved to be free before anything moves; null: it begins when the key is pressed, under the next free one. */
   readonly name: string | null;
-  /** Before it begins, microseconds; 0: with the very first event. */
-  readonly countInUs: number;
+  /** Before it begins, microseconds; 0: with the very first event; null: it begins when `start` is called. */
+  readonly countInUs: number | null;
+  /** Names that its marks get in turn; those after them are numbered. */
+  readonly marks: readonly string[];
   readonly rig: CompiledRig;
   readonly profiles: LoadedRig['profiles'];
+}
+
+/** The disk that takes live on; a test is one too. */
+export interface RecordingDisk {
+  newFile(file: string): { readonly disk: TakeDisk } | { readonly fault: TakeFault };
+  freeBytes(folder: string): number | null;
+  /** Removes a file that was made and never written to. */
+  remove(file: string): void;
 }
 
 /** A recording of a run, which the operator may begin, mark and end. */
@@ -34,74 +45,104 @@ export interface Recording extends Companion {
 const ROOM_MIN_BYTES = 64 * 1024 * 1024;
 /** From here on it is said. */
 const ROOM_LOW_BYTES = 1024 * 1024 * 1024;
-const ROOM_LOOK_US = 10 * US_PER_S;
+const LOOK_US = US_PER_S;
+const LOOKS_A_ROOM_LOOK = 10;
 const RECORDED: Made = { by: 'record', parents: [], how: {} };
 /** Batches encoded before anything moves: the first ones of a cold process would keep commands waiting. */
 const WARM_BATCHES = 30;
 
-/** Makes the file before anything is opened that could move; or says why it cannot. */
-export function recording(options: RecordingOptions, say: (text: string) => void): Recording | null {
-  const { folder, rig, profiles } = options;
+const REAL_DISK: RecordingDisk = {
+  newFile: newTakeFile,
+  freeBytes,
+  remove: (file) => rmSync(file, { force: true }),
+};
+
+interface Running {
+  readonly name: string;
+  readonly recorder: Recorder;
+  readonly cancel: Cancel;
+}
+
+/** Finds out before anything is opened that could move whether it can record; null: it cannot, and has said why. */
+export function recording(
+  options: RecordingOptions,
+  say: (text: string) => void,
+  disk: RecordingDisk = REAL_DISK,
+): Recording | null {
+  const { folder, rig, profiles, marks, countInUs } = options;
   const inputs = rig.boards.find(({ leads }) => leads)?.plan.inputs?.names ?? [];
-  let ready: { readonly name: string; readonly disk: TakeDisk } | null = null;
   let source: { readonly drive: Drive; readonly events$: Observable<DriveEvent>; readonly clock: Clock } | null = null;
   let company: Company | null = null;
-  let running: { readonly name: string; readonly recorder: Recorder; readonly cancel: Cancel } | null = null;
+  let running: Running | null = null;
   let ending: Promise<void> = Promise.resolve();
   let cancelCount: Cancel = () => {};
+  let countedUs: number | null = null;
+  let free: number | null = null;
   let isWell = true;
 
-  const tell = (text: string, weight: 'note' | 'care' = 'note'): void => company?.say({ text, weight });
+  const tell = (text: string, weight: 'note' | 'care' = 'note'): void => {
+    if (company === null) say(`${text}\n`);
+    else company.say({ text, weight });
+  };
   const refuse = (fault: TakeFault): void => {
     isWell = false;
     tell(`no take is recorded: ${takeSentence(fault)}`, 'care');
   };
 
-  const prepare = (name: string): { readonly name: string; readonly disk: TakeDisk } | TakeFault => {
+  const fileFor = (name: string): { readonly file: string; readonly disk: TakeDisk } | TakeFault => {
     const place = takeFile(folder, name);
     if ('fault' in place) return place.fault;
-    const made = newTakeFile(place.file);
-    if ('fault' in made) return made.fault;
-    const free = freeBytes(folder);
-    if (free === null || free >= ROOM_MIN_BYTES) return { name, disk: made.disk };
-    return takeFault('TAKE_DISK_FULL', name, `the disk of ${folder} has ${size(free)} left`);
+    free = disk.freeBytes(folder);
+    if (free !== null && free < ROOM_MIN_BYTES)
+      return takeFault('TAKE_DISK_FULL', name, `the disk of ${folder} has ${size(free)} left`);
+    const made = disk.newFile(place.file);
+    return 'fault' in made ? made.fault : { file: place.file, disk: made.disk };
+  };
+
+  /** A file is made to see that it can be, and goes again: whoever leaves before it begins leaves no empty take. */
+  const proved = (name: string): TakeFault | null => {
+    const made = fileFor(name);
+    if ('code' in made) return made;
+    made.disk.close(() => {});
+    disk.remove(made.file);
+    return null;
   };
 
   const headerAt = (startUs: number, fromStart: boolean, made: Made): TakeHeader =>
     takeHeader(rig, inputs, startUs, fromStart, made);
 
-  const roll = (prepared: { readonly name: string; readonly disk: TakeDisk }, fromStart: boolean, made: Made): void => {
+  const roll = (name: string, to: TakeDisk, fromStart: boolean, made: Made): void => {
     if (source === null) return;
     const { drive, events$, clock } = source;
     // Stamps are due instants, earlier than now: none is earlier than that of the event last handled.
     const startUs = drive.common.nowUs[0] as number;
-    const writer = takeWriter(prepared.name, headerAt(startUs, fromStart, made), profiles, prepared.disk);
-    const begun = recorder(drive, events$, clock, writer, startUs);
-    running = { name: prepared.name, recorder: begun, cancel: watch(begun, clock) };
+    const writer = takeWriter(name, headerAt(startUs, fromStart, made), profiles, to);
+    const begun = recorder(drive, events$, clock, writer, startUs, marks);
+    running = { name, recorder: begun, cancel: watch(begun, clock) };
   };
 
   const announce = (): void => {
-    const free = freeBytes(folder);
-    if (running !== null)
-      tell(`recording ${running.name}${free === null ? '' : `; ${size(free)} free`}; m marks, t ends`);
+    if (running === null || company === null) return;
+    const room = free === null ? '' : `; ${size(free)} free`;
+    tell(`recording ${running.name}${room}; m marks, t ends`, isLow() ? 'care' : 'note');
   };
+  const isLow = (): boolean => free !== null && free < ROOM_LOW_BYTES;
 
   /** Looks to the disk now and then, and ends while there is room for an end. */
   const watch = (begun: Recorder, clock: Clock): Cancel => {
-    let toldLow = false;
+    let looks = 0;
     const look = (): void => {
-      cancel = clock.at(clock.nowUs() + ROOM_LOOK_US, look);
-      const free = freeBytes(folder);
-      if (begun.is.fault !== null) stop();
-      else if (free !== null && free < ROOM_MIN_BYTES) {
+      cancel = clock.at(clock.nowUs() + LOOK_US, look);
+      if (begun.is.fault !== null) return stop();
+      if (++looks % LOOKS_A_ROOM_LOOK !== 0) return;
+      const wasLow = isLow();
+      free = disk.freeBytes(folder);
+      if (free !== null && free < ROOM_MIN_BYTES) {
         tell(`the disk has ${size(free)} left: the recording ends`, 'care');
         stop();
-      } else if (free !== null && free < ROOM_LOW_BYTES && !toldLow) {
-        toldLow = true;
-        tell(`the disk has ${size(free)} left`, 'care');
-      }
+      } else if (free !== null && isLow() && !wasLow) tell(`the disk has ${size(free)} left`, 'care');
     };
-    let cancel = clock.at(clock.nowUs() + US_PER_S, look);
+    let cancel = clock.at(clock.nowUs() + LOOK_US, look);
     return () => cancel();
   };
 
@@ -111,12 +152,11 @@ export function recording(options: RecordingOptions, say: (text: string) => void
     running = null;
     cancel();
     ending = begun.end().then((fault) => {
-      const length = `${(begun.is.tUs / US_PER_S).toFixed(1)} s, ${begun.is.rows} rows, ${begun.is.marks.length} marks`;
-      if (fault !== null) isWell = false;
-      tell(
-        fault === null ? `${name}: ${length}` : `${takeSentence(fault)} (${length})`,
-        fault === null ? 'note' : 'care',
-      );
+      const { tUs, rows, marks: count } = begun.is;
+      const length = `${(tUs / US_PER_S).toFixed(1)} s, ${rows} rows, ${count} ${count === 1 ? 'mark' : 'marks'}`;
+      if (fault === null) return tell(`${name}: ${length}`);
+      isWell = false;
+      tell(`${takeSentence(fault)} (${length})`, 'care');
     });
   };
 
@@ -127,56 +167,60 @@ export function recording(options: RecordingOptions, say: (text: string) => void
     return `${rig.name}-${n}`;
   };
 
-  const start = (name: string, made: Made): void => {
-    const prepared = prepare(name);
+  const start = (name: string, made: Made, fromStart = false): void => {
+    const prepared = fileFor(name);
     if ('code' in prepared) return refuse(prepared);
-    roll(prepared, false, made);
+    roll(name, prepared.disk, fromStart, made);
     announce();
   };
 
-  const count = (leftUs: number): void => {
-    if (source === null || ready === null) return;
-    const { clock } = source;
+  const count = (name: string, leftUs: number): void => {
+    if (source === null) return;
+    countedUs = leftUs;
     if (leftUs <= 0) {
-      roll(ready, false, RECORDED);
-      announce();
+      countedUs = null;
+      start(name, RECORDED);
       return;
     }
-    tell(`recording ${ready.name} in ${Math.ceil(leftUs / US_PER_S)}`);
+    tell(`recording ${name} in ${Math.ceil(leftUs / US_PER_S)}`);
+    const { clock } = source;
     const stepUs = Math.min(leftUs, US_PER_S);
-    cancelCount = clock.at(clock.nowUs() + stepUs, () => count(leftUs - stepUs));
+    cancelCount = clock.at(clock.nowUs() + stepUs, () => count(name, leftUs - stepUs));
   };
 
-  if (options.name !== null) {
-    const prepared = prepare(options.name);
-    if ('code' in prepared) {
-      say(`error: ${takeSentence(prepared)}\n`);
-      return null;
-    }
-    ready = prepared;
+  const fault = options.name === null ? null : proved(options.name);
+  if (fault !== null) {
+    say(`error: ${takeSentence(fault)}\n`);
+    return null;
   }
   warmUp(headerAt(0, false, RECORDED));
 
   return {
     onStart(drive, events$, clock) {
       source = { drive, events$, clock };
-      if (ready !== null && options.countInUs === 0) roll(ready, true, RECORDED);
+      if (options.name !== null && countInUs === 0) start(options.name, RECORDED, true);
     },
     begin(to) {
       company = to;
-      if (ready !== null && options.countInUs > 0) count(options.countInUs);
+      if (options.name !== null && countInUs !== null && countInUs > 0) count(options.name, countInUs);
       else announce();
+    },
+    standing() {
+      if (countedUs !== null) return `${options.name} in ${Math.ceil(countedUs / US_PER_S)} s`;
+      if (running === null) return '';
+      const room = isLow() && free !== null ? `, ${size(free)} free` : '';
+      return `recording ${running.name} ${Math.floor(running.recorder.is.tUs / US_PER_S)} s${room}`;
     },
     key(key) {
       if (key === 'mark') {
-        if (running === null) tell('no take is being recorded; t begins one');
-        else {
-          company?.live.key('mark');
-          tell(`${running.name}: ${running.recorder.is.marks.at(-1)}`);
-        }
+        if (running === null) return tell('no take is being recorded; t begins one');
+        company?.live.key('mark');
+        const { lastMark, marks: done } = running.recorder.is;
+        const next = marks[done] === undefined ? '' : `; next is ${marks[done]}`;
+        tell(`${running.name}: ${lastMark}${next}`);
       } else if (key === 'record') {
-        if (running === null) start(freeName(), RECORDED);
-        else stop();
+        if (running === null && countedUs === null) start(freeName(), RECORDED);
+        else if (running !== null) stop();
       }
     },
     start,

@@ -1,6 +1,6 @@
 import { readdirSync, statfsSync, statSync } from 'node:fs';
 import { homedir } from 'node:os';
-import { join, resolve } from 'node:path';
+import { dirname, join, resolve } from 'node:path';
 import { takeFault, type TakeFault } from './fault.ts';
 
 const TAKE_SUFFIX = '.arrows';
@@ -48,12 +48,13 @@ export function writtenAt(file: string): string | null {
   }
 }
 
-/** Bytes that this user can still write to the disk of a folder; null where the system does not tell. */
+/** Bytes that this user can still write to the disk of a folder, made or not; null where the system does not tell. */
 export function freeBytes(folder: string): number | null {
   try {
     const { bavail, bsize } = statfsSync(folder);
     return bavail * bsize;
-  } catch {
-    return null;
+  } catch (error) {
+    const isMissing = error instanceof Error && 'code' in error && error.code === 'ENOENT';
+    return isMissing && dirname(folder) !== folder ? freeBytes(dirname(folder)) : null;
   }
 }

@@ -13,7 +13,7 @@ import type { TakeWriter } from './writer.ts';
  */
 export interface Recorder {
   readonly is: Readonly<RecorderStanding>;
-  /** Names the present moment; an empty name is numbered. */
+  /** Names the next mark; without a name it is numbered. */
   mark(name: string): void;
   /** Ends the take; resolves with why it is not whole, or null. */
   end(): Promise<TakeFault | null>;
@@ -24,20 +24,23 @@ export interface RecorderStanding {
   tUs: number;
   rows: number;
   bytes: number;
-  readonly marks: string[];
+  /** How many marks it has, and the last one's name. */
+  marks: number;
+  lastMark: string;
   fault: TakeFault | null;
 }
 
 /** `kill -9` may lose 0.3 s: what waits for its batch, and what is on its way to the system. */
 const FLUSH_US = 200 * US_PER_MS;
-/** A power cut may lose 1.25 s: this, one batch, and the time a sync takes. */
-const SYNC_US = 800 * US_PER_MS;
-/** Names told while recording, for show; all of them are in the take. */
-const MARKS_SHOWN = 100;
+/** A power cut may lose 1.25 s: 0.8 s up to the next sync, a batch, and what writing and syncing take. */
+const FLUSHES_A_SYNC = 4;
+/** So long after a batch was handed over a sync finds it written. */
+const SYNC_AFTER_US = 50 * US_PER_MS;
 
 /**
  * Begins at once. Subscribe after the drive's own pipeline: each event is written as it has been handled.
  * @param startUs clock stamp of t_us = 0
+ * @param names of its marks, in order; those after them are numbered
  */
 export function recorder(
   drive: Drive,
@@ -45,20 +48,19 @@ export function recorder(
   clock: Clock,
   writer: TakeWriter,
   startUs: number,
+  names: readonly string[] = [],
 ): Recorder {
   const { leader, followers } = drive;
   const { row } = writer;
   const commands = followers.map((stage) => stage.commands);
-  const is: RecorderStanding = { tUs: 0, rows: 0, bytes: 0, marks: [], fault: null };
+  const is: RecorderStanding = { tUs: 0, rows: 0, bytes: 0, marks: 0, lastMark: '', fault: null };
   let asked: string | null = null;
-  let marked = 0;
 
   const nameMark = (): string => {
-    marked++;
-    const name = asked === null || asked === '' ? `mark ${marked}` : asked;
+    is.lastMark = asked ?? names[is.marks] ?? `mark ${is.marks + 1}`;
+    is.marks++;
     asked = null;
-    if (is.marks.length < MARKS_SHOWN) is.marks.push(name);
-    return name;
+    return is.lastMark;
   };
 
   const pressedMark = (): boolean => {
@@ -84,24 +86,22 @@ export function recorder(
   const subscription = events$.subscribe(write);
   let cancelFlush: Cancel = () => {};
   let cancelSync: Cancel = () => {};
+  let flushes = 0;
   const flush = (): void => {
     writer.flush();
     is.rows = writer.is.rows;
     is.bytes = writer.is.bytes;
     is.fault = writer.is.fault;
-    cancelFlush = clock.at(clock.nowUs() + FLUSH_US, flush);
-  };
-  const sync = (): void => {
-    writer.sync();
-    cancelSync = clock.at(clock.nowUs() + SYNC_US, sync);
+    const nowUs = clock.nowUs();
+    cancelFlush = clock.at(nowUs + FLUSH_US, flush);
+    if (flushes++ % FLUSHES_A_SYNC === 0) cancelSync = clock.at(nowUs + SYNC_AFTER_US, writer.sync);
   };
   flush();
-  sync();
 
   return {
     is,
     mark(name) {
-      asked = name;
+      asked = name === '' ? null : name;
     },
     end() {
       subscription.unsubscribe();

@@ -97,7 +97,7 @@ describe('a recorder', () => {
     performance.live.key('mark');
     performance.run(100_000);
     await recording.end();
-    expect(recording.is.marks).toEqual(['bow', 'mark 2']);
+    expect(recording.is).toMatchObject({ marks: 2, lastMark: 'mark 2' });
     expect(take().marks).toEqual([
       { name: 'bow', tUs: 1_000_000 },
       { name: 'mark 2', tUs: 1_250_000 },

@@ -137,7 +137,7 @@ function withinRows(blocks: readonly (readonly Line[])[], rows: number, scene: S
 }
 
 function title(scene: Scene, width: number): Line {
-  const { status, dry, rig, selected } = scene;
+  const { status, dry, rig, selected, along } = scene;
   const fresh = contact(status.leader.reading_age_us);
   const names = status.followers.filter((_, f) => selected[f]).map(({ follower }) => follower);
   const all = names.length === status.followers.length;
@@ -147,6 +147,7 @@ function title(scene: Scene, width: number): Line {
       { line: [span(rig, 'strong')], matters: 6 },
       { line: [span(dry ? 'dry: nothing is sent' : '', 'held')], matters: 7 },
       { line: [span(`pace ${percent(status.pace)}`, status.pace < 1 ? 'held' : 'plain')], matters: 8 },
+      { line: [span(along, 'strong')], matters: 7.5 },
       { line: [span(status.unison ? 'in unison' : '')], matters: 2 },
       { line: [span(fresh, status.leader.stale ? 'bad' : 'plain')], matters: status.leader.stale ? 9 : 3 },
       { line: [span(`keys: ${all ? 'all' : names.join(' ')}`, all ? 'dim' : 'strong')], matters: all ? 1 : 5 },

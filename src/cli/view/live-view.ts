@@ -42,11 +42,12 @@ export function liveView(
   let last: Look | null = null;
   let rangUs = Number.NEGATIVE_INFINITY;
 
-  const sceneOf = ({ atUs, status, perSecond, operator }: Look): Scene => ({
+  const sceneOf = ({ atUs, status, perSecond, operator, along }: Look): Scene => ({
     rig: options.rig,
     dry: options.dry,
     nowUs: atUs,
     status,
+    along,
     perSecond,
     // Who has been told something wakes where that was.
     wakesAt: status.followers.map(({ commands }, f) => (commands > 0 ? 'last' : (options.wakesAt[f] ?? 'rest'))),

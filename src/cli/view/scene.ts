@@ -8,6 +8,8 @@ export interface Scene {
   /** Since the start, microseconds. */
   readonly nowUs: number;
   readonly status: LiveStatus;
+  /** What goes along with the run does just now; empty: nothing. */
+  readonly along: string;
   /** Commands a second of each follower. */
   readonly perSecond: readonly number[];
   /** What each follower would wake at: its rest pose, or what it was last told. */

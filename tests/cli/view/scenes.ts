@@ -93,6 +93,7 @@ export function scene(changes: Partial<Scene> = {}): Scene {
     dry: false,
     nowUs: 1_000_000,
     perSecond: status.followers.map(() => 50),
+    along: '',
     wakesAt: status.followers.map(() => 'rest'),
     selected: status.followers.map(() => true),
     messages: [],
