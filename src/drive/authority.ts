@@ -75,17 +75,17 @@ export function authority(
         return;
       case 'joining':
         arm.settleHere();
-        share.begin();
+        share.begin(index);
         is.meeting = spec.joinMeet === 'move';
         return;
       case 'following':
-        share.meet();
+        share.meet(index);
         return;
       case 'holding':
         if (event === 'jogged') is.blocks |= BLOCKS.held;
         return;
       case 'parking':
-        share.begin();
+        share.begin(index);
         letClutchIn();
         return;
       case 'limp':

@@ -3,6 +3,7 @@ import { followerStage, type FollowerStage, type Start } from './follower-stage.
 import { leaderStage, type LeaderStage } from './leader-stage.ts';
 import type { Plan } from './plan.ts';
 import { shared, type Shared } from './shared.ts';
+import { shares } from './shares.ts';
 
 /**
  * One leader and its followers as a fold over events. The stages are joined by a stream in `bridge/pipeline`; each event
@@ -28,10 +29,14 @@ export function drive(plan: Plan, starts: readonly Start[], startUs: number): Dr
     plan.pace,
   );
   const leader = leaderStage(plan, common);
+  const share = shares(
+    plan.followers.map((spec) => spec.joinShare),
+    common,
+  );
   const onBoard = Array.from(common.busy, (): FollowerStage[] => []);
   const followers = makeFollowers(plan.followers).map((arm, f) => {
     const start = starts[f] as Start;
-    return followerStage(arm, f, leader, common, start, onBoard[start.board] as FollowerStage[]);
+    return followerStage(arm, f, leader, common, share, start, onBoard[start.board] as FollowerStage[]);
   });
   return {
     plan,

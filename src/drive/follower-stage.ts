@@ -3,12 +3,12 @@ import type { Follower } from '../follower/follower.ts';
 import { BLOCKS } from '../follower/reasons.ts';
 import type { FollowerSpec } from '../follower/spec.ts';
 import { authority, STAGGER_US } from './authority.ts';
-import { ALL, type BoardEvent, type DriveEvent, type TargetEvent } from './events.ts';
+import { ALL, type DriveEvent, type TargetEvent } from './events.ts';
 import { jog } from './jog.ts';
 import type { LeaderStage } from './leader-stage.ts';
 import { outbox, type CommandKind } from './outbox.ts';
 import type { Shared } from './shared.ts';
-import { shares } from './shares.ts';
+import type { Shares } from './shares.ts';
 import { standing, type Standing } from './standing.ts';
 import { steering } from './steering.ts';
 
@@ -60,13 +60,13 @@ export function followerStage(
   index: number,
   lead: LeaderStage,
   common: Shared,
+  share: Shares,
   start: Start,
   siblings: FollowerStage[],
 ): FollowerStage {
   const { spec } = arm;
   const is = standing();
   const pending = outbox();
-  const share = shares(spec.joinShare, index, common);
   const jogging = jog(spec.servos.length);
   const rule = authority(is, index, arm, lead, common, { share, pending, jogging, unasked: start.unasked });
   const aim = {
@@ -74,7 +74,7 @@ export function followerStage(
     anglesRad: arm.governor.x.slice(),
     speedsRadS: new Float64Array(spec.joints.length),
   };
-  const steer = steering(is, arm, lead, common, {
+  const steer = steering(is, index, arm, lead, common, {
     share,
     jogging,
     aim,
@@ -152,6 +152,33 @@ export function followerStage(
     return false;
   };
 
+  /** True when it is told where to be. */
+  const hear = (event: DriveEvent): boolean => {
+    switch (event.kind) {
+      case 'reading':
+      case 'tick':
+      case 'pose':
+        return false;
+      case 'target':
+        if (event.follower !== index) return false;
+        takeAim(event);
+        return true;
+      case 'lead':
+        aim.anglesRad.set(arm.governor.x);
+        aim.speedsRadS.fill(0);
+        return false;
+      case 'key':
+        if (event.follower === ALL || event.follower === index) rule.key(event);
+        return false;
+      case 'jog':
+        if (event.follower === index) rule.jog(event);
+        return false;
+      default:
+        if (common.boardOf[event.follower] === start.board) rule.board(event);
+        return false;
+    }
+  };
+
   const self: { -readonly [K in keyof FollowerStage]: FollowerStage[K] } = {
     spec,
     index,
@@ -163,19 +190,8 @@ export function followerStage(
     readingAgeUs: Number.NaN,
     switching: () => pending.some,
     take(event) {
-      const isMine = event.kind === 'target' && event.follower === index;
-      const reading = lead.fresh || isMine;
-      if (reading) is.owed = true;
-      if (event.kind === 'target') {
-        if (isMine) takeAim(event);
-      } else if (event.kind === 'lead') {
-        aim.anglesRad.set(arm.governor.x);
-        aim.speedsRadS.fill(0);
-      } else if (event.kind === 'key') {
-        if (event.follower === ALL || event.follower === index) rule.key(event);
-      } else if (event.kind === 'jog') {
-        if (event.follower === index) rule.jog(event);
-      } else if (isOfBoard(event) && common.boardOf[event.follower] === start.board) rule.board(event);
+      const fresh = hear(event) || lead.fresh;
+      if (fresh) is.owed = true;
       rule.weigh();
       // Several ports may become busy in one instant, and are told one by one: this board's own word may be yet to come.
       if (event.kind === 'blocked') return false;
@@ -184,7 +200,7 @@ export function followerStage(
       if (pending.some) return emit(pending.take());
       if (siblings.length > 1 && mustYield()) return false;
       if (is.state === 'waking') return wake();
-      return is.pulsed && move(reading);
+      return is.pulsed && move(fresh);
     },
     dueUs() {
       if (!is.present || common.busy[start.board] === 1) return Number.POSITIVE_INFINITY;
@@ -205,21 +221,8 @@ export function followerStage(
     is.meeting = spec.joinMeet === 'move';
     is.lastUs = (now[0] as number) - spec.periodUs;
     arm.frame.pulsing = spec.servos.length;
-    share.begin();
+    share.begin(index);
   }
   siblings.push(self);
   return self;
-}
-
-function isOfBoard(event: DriveEvent): event is BoardEvent {
-  switch (event.kind) {
-    case 'ready':
-    case 'down':
-    case 'reboot':
-    case 'blocked':
-    case 'free':
-      return true;
-    default:
-      return false;
-  }
 }

@@ -2,20 +2,20 @@ import { US_PER_S } from '../clock/clock.ts';
 import type { Shared } from './shared.ts';
 
 /**
- * The share of its speed limits a follower may use, by what it is doing: gentle while joining, rising if it cannot
+ * The share of its speed limits that follower `f` may use, by what it is doing: gentle while joining, rising if it cannot
  * catch up, and opening over a second once it has met the leader.
  */
 export interface Shares {
   /** Joining (or parking) begins. */
-  begin(): void;
+  begin(f: number): void;
   /** The leader is met. */
-  meet(): void;
+  meet(f: number): void;
   /** Joining has taken so long that the share is rising. */
-  impatient(): boolean;
+  impatient(f: number): boolean;
   /** common.share[0] = what holds now, pace included. */
-  joining(): void;
-  following(): void;
-  parking(): void;
+  joining(f: number): void;
+  following(f: number): void;
+  parking(f: number): void;
 }
 
 /** A join that has not met in this time speeds up, so that a fast leader is met at all. */
@@ -25,33 +25,38 @@ const RISE_US = 4 * US_PER_S;
 /** How long the limits take to open after the meeting. */
 const OPEN_US = US_PER_S;
 
-/** @param index of the follower, whose entry of `common.opened` it keeps */
-export function shares(joinShare: number, index: number, common: Shared): Shares {
+/** @param joinShares of the followers, in rig order, whose entries of `common.opened` it keeps */
+export function shares(joinShares: readonly number[], common: Shared): Shares {
   const { nowUs, pace, opened, share } = common;
-  // Doubles start as doubles, so that the engine stores them in place.
-  const at = { beganUs: Number.NaN, metUs: Number.NaN, share: Number.NaN };
-  const lateUs = (): number => (nowUs[0] as number) - at.beganUs - PATIENCE_US;
-  const risen = (): number => joinShare + (1 - joinShare) * Math.min(Math.max(lateUs() / RISE_US, 0), 1);
+  const least = Float64Array.from(joinShares);
+  const beganUs = new Float64Array(least.length).fill(Number.NaN);
+  const metUs = new Float64Array(least.length).fill(Number.NaN);
+  const shareMet = new Float64Array(least.length).fill(Number.NaN);
+  const lateUs = (f: number): number => (nowUs[0] as number) - (beganUs[f] as number) - PATIENCE_US;
+  const risen = (f: number): number => {
+    const from = least[f] as number;
+    return from + (1 - from) * Math.min(Math.max(lateUs(f) / RISE_US, 0), 1);
+  };
   return {
-    begin() {
-      at.beganUs = nowUs[0] as number;
+    begin(f) {
+      beganUs[f] = nowUs[0] as number;
     },
-    meet() {
-      at.metUs = nowUs[0] as number;
-      at.share = risen();
-      opened[index] = at.share;
+    meet(f) {
+      metUs[f] = nowUs[0] as number;
+      shareMet[f] = risen(f);
+      opened[f] = shareMet[f] as number;
     },
-    impatient: () => lateUs() > 0,
-    joining() {
-      share[0] = risen() * (pace[0] as number);
+    impatient: (f) => lateUs(f) > 0,
+    joining(f) {
+      share[0] = risen(f) * (pace[0] as number);
     },
-    following() {
-      const open = Math.min(((nowUs[0] as number) - at.metUs) / OPEN_US, 1);
-      opened[index] = at.share + (1 - at.share) * open;
-      share[0] = opened[index] * (pace[0] as number);
+    following(f) {
+      const from = shareMet[f] as number;
+      opened[f] = from + (1 - from) * Math.min(((nowUs[0] as number) - (metUs[f] as number)) / OPEN_US, 1);
+      share[0] = (opened[f] as number) * (pace[0] as number);
     },
-    parking() {
-      share[0] = joinShare * (pace[0] as number);
+    parking(f) {
+      share[0] = (least[f] as number) * (pace[0] as number);
     },
   };
 }

@@ -22,6 +22,7 @@ const WAIT_RAD = (3 * Math.PI) / 180;
 
 export function steering(
   is: Standing,
+  index: number,
   arm: Follower,
   lead: LeaderStage,
   common: Shared,
@@ -65,11 +66,11 @@ export function steering(
       arm.brake(dtS);
       return;
     }
-    share.joining();
+    share.joining(index);
     arm.limitSpeed(common.share, true);
     arm.step(dtS);
     // A leader that never stands is met once the arm, with patience gone, is as near as its limits let it follow.
-    if (arm.near(MET_RAD, share.impatient())) raise('met');
+    if (arm.near(MET_RAD, share.impatient(index))) raise('met');
   };
 
   const settle = (): void => {
@@ -92,7 +93,7 @@ export function steering(
       switch (is.state) {
         case 'following':
           wish();
-          share.following();
+          share.following(index);
           arm.limitSpeed(common.share, false);
           arm.step(dtS);
           break;
@@ -101,7 +102,7 @@ export function steering(
           break;
         case 'parking':
           arm.wantRest();
-          share.parking();
+          share.parking(index);
           arm.limitSpeed(common.share, true);
           arm.step(dtS);
           break;
