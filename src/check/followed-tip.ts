@@ -59,7 +59,8 @@ function follower(
   whole: WholeArmSpec,
   tip: TipSpec,
 ): (poseRad: Float64Array, nearM: number) => number {
-  const { askedRad, mix } = remap(spec);
+  const { askedRad, mix } = remap([spec]);
+  const rows = { from: 0, to: spec.joints.length };
   const wanted = new Float64Array(spec.joints.length);
   const going = tipWish(whole, tip, spec.joints);
 
@@ -76,7 +77,7 @@ function follower(
   };
 
   return (pose, nearM) => {
-    mix(pose);
+    mix(rows, pose);
     const left = settled(going, pose);
     if (left <= nearM) return left;
     // From the last place it may have bent the wrong way round: from where joints copy joints, it bends as the leader.

@@ -1,16 +1,16 @@
 import type { Frame } from '../wire/types.ts';
 import { burden, type Burden } from './burden.ts';
-import { type Governor, governors } from './governor.ts';
+import { type Governor, type Governors, governors } from './governor.ts';
 import { type Outcome, outcome } from './outcome.ts';
 import { LIMITS } from './reasons.ts';
-import { type Remap, remaps } from './remap.ts';
+import { type Remap, remap } from './remap.ts';
 import { type Rows, rowsOf } from './rows.ts';
 import { type Servos, servos } from './servos.ts';
 import type { FollowerJointSpec, FollowerSpec, TipSpec } from './spec.ts';
 import { type SpeedLimits, speedLimits } from './speed-limits.ts';
 import { tipWish } from './tip-wish.ts';
 import { wholeArm } from './whole-arm.ts';
-import { type Wish, wishes } from './wish.ts';
+import { type Wish, wish } from './wish.ts';
 
 /**
  * The follower kernel: a pose in, a command out. It keeps what the arm was last told, for the follower's whole life;
@@ -83,12 +83,11 @@ const STANDING_RAD_S = 1e-3;
 /** A tip target left this far away is out of reach, metres. */
 const OUT_OF_REACH_M = 0.001;
 
-/** What one arm uses of what is made for all arms together: see `rows.ts`. */
-interface Parts {
-  readonly rows: Rows;
-  readonly motion: Governor;
+/** What is made for all arms together: see `rows.ts`. */
+interface Kernels {
+  readonly motions: Governors;
   readonly map: Remap;
-  readonly wish: Wish;
+  readonly wishes: Wish;
   readonly speeds: SpeedLimits;
   readonly came: Outcome;
   readonly gears: Servos;
@@ -97,27 +96,25 @@ interface Parts {
 /** The followers of one drive. */
 export function followers(specs: readonly FollowerSpec[]): readonly Follower[] {
   const rows = rowsOf(specs.map((spec) => spec.joints.length));
+  const servoRows = rowsOf(specs.map((spec) => spec.servos.length));
   const motions = governors(specs.map((spec) => spec.joints));
-  const maps = remaps(specs);
-  const asked = wishes(specs, motions.all, maps.askedRad);
-  const speeds = speedLimits(specs, motions.all, asked.held);
-  const came = outcome(specs, motions.all, asked.limits);
-  const gears = servos(specs, motions.all.x);
+  const map = remap(specs);
+  const wishes = wish(specs, motions.all, map.askedRad);
+  const kernels = {
+    motions,
+    map,
+    wishes,
+    speeds: speedLimits(specs, motions.all, wishes.held),
+    came: outcome(specs, motions.all, wishes.limits),
+    gears: servos(specs, motions.all.x),
+  };
   return specs.map((spec, f) =>
-    follower(spec, {
-      rows: rows[f] as Rows,
-      motion: motions.each[f] as Governor,
-      map: maps.each[f] as Remap,
-      wish: asked.each[f] as Wish,
-      speeds,
-      came,
-      gears: gears[f] as Servos,
-    }),
+    follower(spec, motions.each[f] as Governor, rows[f] as Rows, servoRows[f] as Rows, kernels),
   );
 }
 
-function follower(spec: FollowerSpec, parts: Parts): Follower {
-  const { rows, motion, map, wish, speeds, came, gears } = parts;
+function follower(spec: FollowerSpec, motion: Governor, rows: Rows, servoRows: Rows, kernels: Kernels): Follower {
+  const { motions, map, wishes, speeds, came, gears } = kernels;
   const joints = spec.joints;
   const n = joints.length;
   const tip = spec.whole?.tip ? tipWish(spec.whole, spec.whole.tip, joints) : null;
@@ -127,10 +124,13 @@ function follower(spec: FollowerSpec, parts: Parts): Follower {
   const rest = Float64Array.from(joints, (j) => j.restRad);
   const min = Float64Array.from(joints, (j) => j.minRad);
   const max = Float64Array.from(joints, (j) => j.maxRad);
-  const { askedRad } = map;
-  const { wantedRad, clutchRad, held, limits } = wish;
+  const askedRad = map.askedRad.subarray(rows.from, rows.to);
+  const wantedRad = wishes.wantedRad.subarray(rows.from, rows.to);
+  const clutchRad = wishes.clutchRad.subarray(rows.from, rows.to);
+  const held = wishes.held.subarray(rows.from, rows.to);
+  const limits = wishes.limits.subarray(rows.from, rows.to);
   const frame: Frame = {
-    pulsesUs: gears.pulsesUs,
+    pulsesUs: gears.pulsesUs.subarray(servoRows.from, servoRows.to),
     sentUs: new Float64Array(spec.servos.length),
     anglesRad: motion.x,
     pulsing: 0,
@@ -170,44 +170,26 @@ function follower(spec: FollowerSpec, parts: Parts): Follower {
       wantedRad.set(motion.x);
     },
     want(leaderRad, clutched) {
-      map.mix(leaderRad);
+      map.mix(rows, leaderRad);
       tip?.reach(leaderRad, askedRad);
-      wish.settle(clutched);
+      wishes.settle(rows, clutched);
       noteReach();
       wishing = true;
     },
     match(leaderRad, leaderRadS) {
-      map.mix(leaderRad);
-      map.mixSpeed(leaderRadS, motion.targetSpeed);
+      map.mix(rows, leaderRad);
+      map.mixSpeed(rows, leaderRadS, motion.targetSpeed);
       if (tip !== null) {
         // How fast the solved joints will move is not known: they follow with the governor's lag.
         tip.reach(leaderRad, askedRad);
         for (let j = 0; j < n; j++) if (tip.reaches[j] === 1) motion.targetSpeed[j] = 0;
       }
-      for (let j = 0; j < n; j++) {
-        const want = held[j] === 1 ? (target[j] as number) : (askedRad[j] as number) + (clutchRad[j] as number);
-        const inside = Math.min(Math.max(want, min[j] as number), max[j] as number);
-        wantedRad[j] = want;
-        target[j] = inside;
-        if (inside !== want) motion.targetSpeed[j] = 0;
-        motion.braking[j] = held[j] as number;
-        limits[j] = (inside !== want ? LIMITS.range : 0) | (held[j] === 1 ? LIMITS.sick : 0);
-      }
+      wishes.match(rows);
       noteReach();
       wishing = true;
     },
     pursue(anglesRad, speedsRadS, clutched) {
-      for (let j = 0; j < n; j++) {
-        const angle = anglesRad[j] as number;
-        if (clutched) clutchRad[j] = (wantedRad[j] as number) - angle;
-        const want = held[j] === 1 ? (target[j] as number) : angle + (clutchRad[j] as number);
-        const inside = Math.min(Math.max(want, min[j] as number), max[j] as number);
-        wantedRad[j] = want;
-        target[j] = inside;
-        motion.targetSpeed[j] = clutched || held[j] === 1 || inside !== want ? 0 : (speedsRadS[j] as number);
-        motion.braking[j] = held[j] as number;
-        limits[j] = (inside !== want ? LIMITS.range : 0) | (held[j] === 1 ? LIMITS.sick : 0);
-      }
+      wishes.pursue(rows, anglesRad, speedsRadS, clutched);
       wishing = true;
     },
     wantRest() {
@@ -225,20 +207,20 @@ function follower(spec: FollowerSpec, parts: Parts): Follower {
     },
     step(dtS) {
       let reason = 0;
-      if (whole === null) motion.step(dtS);
+      if (whole === null) motions.step(rows, dtS);
       else reason = whole.step(dtS, gentle, wishing);
       came.note(rows, spec, reason);
-      gears.turn();
+      gears.turn(servoRows);
     },
     brake(dtS) {
       // Braking needs no certificate: each step was taken because the arm can brake from it.
       motion.braking.fill(1);
-      motion.step(dtS);
+      motions.step(rows, dtS);
       came.check(rows, spec);
-      gears.turn();
+      gears.turn(servoRows);
     },
     aim() {
-      gears.turn();
+      gears.turn(servoRows);
     },
     hold(health) {
       let freed = false;

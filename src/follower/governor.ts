@@ -48,6 +48,10 @@ const FOREVER_S = Number.POSITIVE_INFINITY;
 export interface Governors {
   readonly each: readonly Governor[];
   readonly all: Motion;
+  /** Moves one arm's joints by dtS[0] seconds. */
+  step(rows: Rows, dtS: Float64Array): void;
+  /** True when no joint of the arm moves. */
+  still(rows: Rows): boolean;
 }
 
 export function governor(limits: readonly JointLimits[]): Governor {
@@ -155,6 +159,8 @@ export function governors(arms: readonly (readonly JointLimits[])[]): Governors 
     }
   };
 
+  const still = (rows: Rows): boolean => allZero(v, rows);
+
   const each = rowsOf(arms.map((arm) => arm.length)).map((rows): Governor => {
     const { from, to } = rows;
     return {
@@ -166,8 +172,8 @@ export function governors(arms: readonly (readonly JointLimits[])[]): Governors 
       targetSpeed: targetSpeed.subarray(from, to),
       braking: braking.subarray(from, to),
       step: (dtS) => step(rows, dtS),
-      still: () => allZero(v, rows),
+      still: () => still(rows),
     };
   });
-  return { each, all: { x, v, speed, accel, target, targetSpeed, braking } };
+  return { each, all: { x, v, speed, accel, target, targetSpeed, braking }, step, still };
 }

@@ -1,12 +1,15 @@
 import { describe, expect, it } from 'vitest';
-import { remap, remaps } from '../../src/follower/remap.ts';
+import { remap } from '../../src/follower/remap.ts';
 import type { FollowerJointSpec } from '../../src/follower/spec.ts';
 import { DEG, followerJoint, followerSpec } from '../plans.ts';
 
 /** What a follower of these joints is asked for at a leader pose, in degrees. */
 function mixed(joints: readonly FollowerJointSpec[], leaderDeg: readonly number[]): number[] {
-  const { mix, askedRad } = remap(followerSpec(joints));
-  mix(Float64Array.from(leaderDeg, (deg) => deg * DEG));
+  const { mix, askedRad } = remap([followerSpec(joints)]);
+  mix(
+    { from: 0, to: joints.length },
+    Float64Array.from(leaderDeg, (deg) => deg * DEG),
+  );
   return [...askedRad].map((rad) => rad / DEG);
 }
 
@@ -40,7 +43,7 @@ describe('the remap of a joint', () => {
       }),
     ];
     const speeds = new Float64Array(3).fill(9);
-    remap(followerSpec(joints)).mixSpeed(Float64Array.of(3, 4), speeds);
+    remap([followerSpec(joints)]).mixSpeed({ from: 0, to: 3 }, Float64Array.of(3, 4), speeds);
     // By hand: -2 * 4; nothing; 0.5 * 3 + 0.25 * 4.
     expect([...speeds]).toEqual([-8, 0, 2.5]);
   });
@@ -50,10 +53,12 @@ describe('the remap of a joint', () => {
       followerSpec([followerJoint(0, { gain: 2 }), followerJoint(null, { restRad: 1 })]),
       followerSpec([followerJoint(1, { gain: -3 })]),
     ];
-    const { each } = remaps(specs);
-    for (const { mix } of each) mix(Float64Array.of(5, 7));
-    const asked = each.map(({ askedRad }) => [...askedRad]);
-    // By hand: 2 * 5 and rest; -3 * 7.
-    expect(asked).toEqual([[10, 1], [-21]]);
+    const { mix, askedRad } = remap(specs);
+    mix({ from: 2, to: 3 }, Float64Array.of(5, 7));
+    // By hand: -3 * 7; the other arm was not asked, and stays at rest.
+    expect([...askedRad]).toEqual([0, 1, -21]);
+    mix({ from: 0, to: 2 }, Float64Array.of(5, 7));
+    // By hand: 2 * 5 and rest.
+    expect([...askedRad]).toEqual([10, 1, -21]);
   });
 });

@@ -16,9 +16,9 @@ const mirrored = compileMap(
 function pulses(specs: readonly ServoSpec[], anglesDeg: readonly number[]): number[] {
   const angles = Float64Array.from(anglesDeg, (deg) => deg * DEG);
   const joints = anglesDeg.map((_, j) => followerJoint(j));
-  const [gears] = servos([{ joints, servos: specs }], angles);
-  gears?.turn();
-  return [...(gears?.pulsesUs ?? [])];
+  const { turn, pulsesUs } = servos([{ joints, servos: specs }], angles);
+  turn({ from: 0, to: specs.length });
+  return [...pulsesUs];
 }
 
 describe('the pulses of servos', () => {
@@ -59,8 +59,10 @@ describe('the pulses of servos', () => {
       { joints: [followerJoint(0), followerJoint(1)], servos: [servoOf(1)] },
       { joints: [followerJoint(0)], servos: [servoOf(0), servoOf(0, { map: mirrored })] },
     ];
-    const all = servos(arms, Float64Array.of(0, 45 * DEG, -90 * DEG));
-    for (const { turn } of all) turn();
-    expect(all.map(({ pulsesUs }) => [...pulsesUs])).toEqual([[expect.closeTo(1970, 9)], [560, 2440]]);
+    const { turn, pulsesUs } = servos(arms, Float64Array.of(0, 45 * DEG, -90 * DEG));
+    turn({ from: 1, to: 3 });
+    expect([...pulsesUs]).toEqual([0, 560, 2440]);
+    turn({ from: 0, to: 1 });
+    expect([...pulsesUs]).toEqual([expect.closeTo(1970, 9), 560, 2440]);
   });
 });

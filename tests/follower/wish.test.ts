@@ -3,7 +3,7 @@ import { describe, expect, it } from 'vitest';
 import { governors } from '../../src/follower/governor.ts';
 import { LIMITS } from '../../src/follower/reasons.ts';
 import type { FollowerJointSpec } from '../../src/follower/spec.ts';
-import { type Wish, wishes } from '../../src/follower/wish.ts';
+import { wish } from '../../src/follower/wish.ts';
 import { DEG, followerJoint, followerSpec } from '../plans.ts';
 
 /** The targets of one joint in a row as it is asked for `inputs`, all in degrees. */
@@ -14,12 +14,12 @@ function settled(
 ): { target: number; clipped: boolean }[] {
   const { all } = governors([[joint]]);
   const asked = new Float64Array(1);
-  const wish = wishes([followerSpec([joint])], all, asked).each[0] as Wish;
+  const { settle, limits } = wish([followerSpec([joint])], all, asked);
   all.target[0] = from * DEG;
   return inputs.map((input) => {
     asked[0] = input * DEG;
-    wish.settle(false);
-    return { target: (all.target[0] as number) / DEG, clipped: ((wish.limits[0] as number) & LIMITS.range) !== 0 };
+    settle({ from: 0, to: 1 }, false);
+    return { target: (all.target[0] as number) / DEG, clipped: ((limits[0] as number) & LIMITS.range) !== 0 };
   });
 }
 
@@ -79,22 +79,22 @@ describe('the wishes of several arms', () => {
   it('are settled one arm at a time, joint by joint in its own rows', () => {
     const specs = [followerSpec([followerJoint(0), followerJoint(1)]), followerSpec([followerJoint(0)])];
     const { all } = governors(specs.map((spec) => spec.joints));
-    const [, second] = wishes(specs, all, Float64Array.of(0, 0, 10 * DEG)).each as readonly [Wish, Wish];
-    second.settle(false);
+    const { settle, wantedRad } = wish(specs, all, Float64Array.of(20 * DEG, 20 * DEG, 10 * DEG));
+    settle({ from: 2, to: 3 }, false);
     expect([...all.target]).toEqual([0, 0, 10 * DEG]);
-    expect(second.wantedRad[0]).toBe(10 * DEG);
+    expect([...wantedRad]).toEqual([0, 0, 10 * DEG]);
   });
 
   it('stand still, and brake the joints that are held', () => {
     const spec = followerSpec([followerJoint(0), followerJoint(1)]);
     const { all } = governors([spec.joints]);
-    const wish = wishes([spec], all, Float64Array.of(10 * DEG, 10 * DEG)).each[0] as Wish;
+    const { settle, held, limits } = wish([spec], all, Float64Array.of(10 * DEG, 10 * DEG));
     all.targetSpeed.fill(3);
-    wish.held[1] = 1;
-    wish.settle(false);
+    held[1] = 1;
+    settle({ from: 0, to: 2 }, false);
     expect([...all.targetSpeed]).toEqual([0, 0]);
     expect([...all.braking]).toEqual([0, 1]);
     expect([...all.target]).toEqual([10 * DEG, 0]);
-    expect(wish.limits[1]).toBe(LIMITS.sick);
+    expect(limits[1]).toBe(LIMITS.sick);
   });
 });
