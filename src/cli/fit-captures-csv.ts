@@ -83,6 +83,7 @@ function captureOf(
     knownDeg: number('known_deg'),
     tMs: number('t_ms'),
     noiseCounts: number('noise_counts'),
+    moved: number('moved'),
     channel: number('channel'),
     attempt: number('attempt'),
   };
@@ -90,7 +91,14 @@ function captureOf(
     counts: capture.counts,
     pulse_us: capture.pulseUs,
     known_deg: capture.knownDeg,
+    moved: capture.moved,
   };
+  if (!Number.isNaN(capture.moved) && capture.moved !== 0 && capture.moved !== 1)
+    mistaken(
+      cell('moved').column,
+      `"${cell('moved').text}" is neither 1 nor 0`,
+      'write 1 where it moved, 0 where it stood',
+    );
   for (const name of step === null ? [] : CAPTURE_STEPS[step]) {
     if (cell(name).text === '' && Number.isNaN(has[name]))
       mistaken(
@@ -122,8 +130,8 @@ export const CAPTURES_HEADER = `${CAPTURE_COLUMNS.join(',')}\n`;
 
 /** One capture as a line, with its end. Numbers in shortest round-trip form. */
 export function captureLine(capture: Capture): string {
-  const { step, arm, joint, counts, pulseUs, knownDeg, tMs, noiseCounts, channel, attempt } = capture;
-  const cells = [counts, pulseUs, knownDeg, tMs, noiseCounts, channel, attempt].map((value) =>
+  const { step, arm, joint, counts, pulseUs, knownDeg, tMs, noiseCounts, moved, channel, attempt } = capture;
+  const cells = [counts, pulseUs, knownDeg, tMs, noiseCounts, moved, channel, attempt].map((value) =>
     Number.isNaN(value) ? '' : String(value),
   );
   return `${[step, arm, joint, ...cells].join(',')}\n`;

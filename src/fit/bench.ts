@@ -1,7 +1,15 @@
 import type { RigProfiles } from '../rig/compile.ts';
 import type { LeaderJoint } from '../rig/schema/leader.ts';
 import { servosOf } from '../rig/servo-list.ts';
-import { attemptOf, byJoint, type Capture, type CaptureStep, emptyCapture, type JointCaptures } from './captures.ts';
+import {
+  attemptOf,
+  byJoint,
+  type Capture,
+  type CaptureStep,
+  emptyCapture,
+  type JointCaptures,
+  nothingYet,
+} from './captures.ts';
 import { assumedNoise, noiseOf } from './noise.ts';
 import type { Prompt, SessionEffect, SessionEvent } from './prompt.ts';
 import { type Hold, judgeHold } from './stillness.ts';
@@ -131,14 +139,7 @@ function restNoise(bench: Bench, joint: number): number {
 
 export function capturesOf(bench: Bench, arm: string, joint: string): JointCaptures {
   const found = byJoint(bench.captures).find((group) => group.arm === arm && group.joint === joint);
-  const none: JointCaptures['of'] = {
-    'leader-still': [],
-    'leader-sweep': [],
-    'leader-point': [],
-    'servo-point': [],
-    match: [],
-  };
-  return found ?? { arm, joint, of: none };
+  return found ?? { arm, joint, of: nothingYet() };
 }
 
 /** Number of a new attempt at a step. */

@@ -12,6 +12,8 @@ export interface Capture {
   readonly tMs: number;
   /** Of a hold that was averaged: its standard deviation in counts; NaN: a single reading. */
   readonly noiseCounts: number;
+  /** Of a fine step: 1 if the horn was seen to move, 0 if it stood; NaN: not a step. */
+  readonly moved: number;
   /** Channel of the board it was read from; NaN: the profile's. */
   readonly channel: number;
   /** A step that is done anew has a higher number, and its captures replace the former ones; NaN: the first. */
@@ -24,6 +26,7 @@ export const CAPTURE_STEPS = {
   'leader-sweep': ['counts'],
   'leader-point': ['counts', 'known_deg'],
   'servo-point': ['pulse_us', 'known_deg'],
+  'servo-step': ['pulse_us', 'moved'],
   match: ['counts', 'pulse_us'],
 } as const;
 
@@ -38,6 +41,7 @@ export const CAPTURE_COLUMNS = [
   'known_deg',
   't_ms',
   'noise_counts',
+  'moved',
   'channel',
   'attempt',
 ] as const;
@@ -57,11 +61,7 @@ export function byJoint(captures: readonly Capture[]): readonly JointCaptures[] 
     const key = `${arm}\n${joint}`;
     let found = joints.get(key);
     if (found === undefined) {
-      found = {
-        arm,
-        joint,
-        of: { 'leader-still': [], 'leader-sweep': [], 'leader-point': [], 'servo-point': [], match: [] },
-      };
+      found = { arm, joint, of: nothingYet() };
       joints.set(key, found);
     }
     const same = found.of[step];
@@ -71,6 +71,18 @@ export function byJoint(captures: readonly Capture[]): readonly JointCaptures[] 
     if (attempt >= last) same.push(capture);
   }
   return [...joints.values()];
+}
+
+/** A list for each step. */
+export function nothingYet(): Record<CaptureStep, Capture[]> {
+  return {
+    'leader-still': [],
+    'leader-sweep': [],
+    'leader-point': [],
+    'servo-point': [],
+    'servo-step': [],
+    match: [],
+  };
 }
 
 /** Number of the attempt that a capture belongs to, from 1. */
@@ -90,6 +102,7 @@ export function emptyCapture(step: CaptureStep, arm: string, joint: string): Cap
     knownDeg: none,
     tMs: none,
     noiseCounts: none,
+    moved: none,
     channel: none,
     attempt: none,
   };

@@ -26,6 +26,9 @@ export interface PlannedEdits {
 /** Gains are told to a part in ten thousand: less than any joint's play. */
 const tenThousandth = (value: number): number => Math.round(value * 1e4) / 1e4;
 
+/** No board sends a pulse finer than half a microsecond. */
+const tenth = (value: number): number => Math.round(value * 10) / 10;
+
 /** Where fitted values belong: in the file, and at the path, that the profile's own values come from. */
 export function plannedEdits(
   rigFile: string,
@@ -87,8 +90,12 @@ function leaderValues(
   };
 }
 
-function servoValues({ points }: ServoReport, date: string): Record<string, PlainValue> {
-  return { points: points.map.map(([us, deg]) => [deg, us]), fitted: note(points, points.curve, date) };
+function servoValues({ travel, deadband_us }: ServoReport, date: string): Record<string, PlainValue> {
+  return {
+    ...(travel === null ? {} : { points: travel.points.map.map(([us, deg]) => [deg, us]) }),
+    ...(deadband_us === null ? {} : { deadband_us: tenth(deadband_us.is) }),
+    ...(travel === null ? {} : { fitted: note(travel.points, travel.points.curve, date) }),
+  };
 }
 
 function matchValues(

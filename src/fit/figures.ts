@@ -29,20 +29,32 @@ export function leaderFigures({ still, sweep, points }: JointReport): readonly F
 }
 
 export function servoFigures(servo: ServoReport): readonly FigureLine[] {
-  const { travel_deg, nominal_deg, between_us, lost_motion_deg, lost_motion_us, points } = servo;
-  const lost = lost_motion_deg === null || lost_motion_us === null;
-  return [
-    [
-      'true travel',
-      `${round(travel_deg, 1)} deg between ${round(between_us[0], 0)} and ${round(between_us[1], 0)} us ` +
-        `(the profile said ${round(nominal_deg, 1)})`,
-    ],
-    ...pointsFigures(points, 'us', 'deg/us'),
-    [
-      'lost as it turns back',
-      lost ? 'not measured both ways' : `${withError(lost_motion_deg, 2)} deg, ${round(lost_motion_us, 1)} us`,
-    ],
-  ];
+  const { travel, deadband_us, backlash_deg } = servo;
+  const lines: FigureLine[] = [];
+  if (travel !== null) {
+    const { travel_deg, nominal_deg, between_us, lost_motion_deg, points } = travel;
+    lines.push(
+      [
+        'true travel',
+        `${round(travel_deg, 1)} deg between ${round(between_us[0], 0)} and ${round(between_us[1], 0)} us ` +
+          `(the profile said ${round(nominal_deg, 1)})`,
+      ],
+      ...pointsFigures(points, 'us', 'deg/us'),
+      [
+        'lost as it turns back',
+        lost_motion_deg === null ? 'not measured both ways' : `${withError(lost_motion_deg, 2)} deg`,
+      ],
+    );
+  }
+  const slope = travel === null ? Number.NaN : Math.abs(travel.points.slope_deg_per_unit.is);
+  lines.push([
+    'deadband',
+    deadband_us === null
+      ? 'not measured in fine steps'
+      : `${withError(deadband_us, 1)} us${Number.isNaN(slope) ? '' : `, ${round(deadband_us.is * slope, 2)} deg`}`,
+  ]);
+  if (backlash_deg !== null) lines.push(['backlash', `${withError(backlash_deg, 2)} deg`]);
+  return lines;
 }
 
 export function matchFigures({ from, gain, direction, offset_deg, points }: MatchReport): readonly FigureLine[] {

@@ -2,14 +2,15 @@ import type { FollowerJoint, FollowerProfile } from '../rig/schema/follower.ts';
 import { servosOf } from '../rig/servo-list.ts';
 import type { JointCaptures } from './captures.ts';
 import { servoCurve } from './curves.ts';
+import { backlashOf, deadbandOf } from './deadband.ts';
 import type { LeaderMap } from './leader-part.ts';
 import { POINTS_ENOUGH } from './leader-part.ts';
 import { matchPoses } from './match.ts';
 import { figure, pointsReport } from './points-report.ts';
 import { type FitProblem, noMapProblem, problem } from './problems.ts';
-import type { MatchReport, ServoReport } from './report.ts';
+import type { MatchReport, ServoReport, TravelReport } from './report.ts';
 import { fitServo } from './servo-fit.ts';
-import { matchWords, pointsWords, round } from './words.ts';
+import { matchWords, pointsWords, servoWords } from './words.ts';
 
 export interface FollowerPart {
   readonly servo: ServoReport | null;
@@ -19,8 +20,6 @@ export interface FollowerPart {
 
 /** A protractor at a horn is read no better than this, degrees (common practice, no source). */
 const READ_DEG = 0.2;
-/** Travel that falls short by more than this share is worth a word. */
-const SHORT_SHARE = 0.03;
 
 /** @param mapOf the leader's maps, fitted or as they were, by joint name */
 export function fitFollowerJoint(
@@ -32,11 +31,13 @@ export function fitFollowerJoint(
   const joint = profile.joints[index] as FollowerJoint;
   const arm = profile.follower;
   const wantsServo = captures.of['servo-point'].length > 0;
+  const steps = captures.of['servo-step'].map(({ pulseUs, moved }) => ({ pulseUs, moved: moved !== 0 }));
   const wantsMatch = captures.of.match.length > 0;
   const listed = servoAlone(profile, joint.name);
   if (listed === null) {
     const wrong = 'no servo turns this joint alone';
-    const problems = wantsServo || wantsMatch ? [problem('FIT_NO_SERVO', arm, joint.name, wrong)] : [];
+    const problems =
+      wantsServo || wantsMatch || steps.length > 0 ? [problem('FIT_NO_SERVO', arm, joint.name, wrong)] : [];
     return { servo: null, match: null, problems };
   }
   const problems: FitProblem[] = [];
@@ -49,13 +50,10 @@ export function fitFollowerJoint(
   const fit = wantsServo ? fitServo(points, former, READ_DEG) : null;
   const found = fit !== null && 'why' in fit ? complain(noMapProblem(fit, arm, joint.name, 'us')) : fit;
   const angleOf = found?.map.value ?? former;
-  const servo: ServoReport | null =
+  const travel: TravelReport | null =
     found === null
       ? null
-      : withServoNotes({
-          follower: arm,
-          joint: joint.name,
-          channel: listed.channel,
+      : {
           points: pointsReport(
             found.map,
             points.map((p) => p.pulseUs),
@@ -66,8 +64,25 @@ export function fitFollowerJoint(
           nominal_deg: found.nominalDeg,
           between_us: found.betweenUs,
           lost_motion_deg: found.lostMotionDeg === null ? null : figure(found.lostMotionDeg),
-          lost_motion_us: found.lostMotionUs,
-        });
+        };
+  const deadband = deadbandOf(steps);
+  const lost = found?.lostMotionDeg ?? null;
+  const backlash =
+    found === null || lost === null || deadband === null
+      ? null
+      : backlashOf(lost, deadband.is * Math.abs(found.map.slope.is));
+  const measured = {
+    follower: arm,
+    joint: joint.name,
+    channel: listed.channel,
+    travel,
+    deadband_us: deadband === null ? null : figure(deadband),
+    backlash_deg: backlash === null ? null : figure(backlash),
+  };
+  const servo: ServoReport | null =
+    travel === null && steps.length === 0
+      ? null
+      : { ...measured, notes: servoWords(measured, POINTS_ENOUGH, steps.length) };
   const match = wantsMatch ? matched(profile, joint, captures, angleOf, mapOf, complain) : null;
   return { servo, match, problems };
 }
@@ -81,22 +96,6 @@ export function servoAlone(
   const only = turning.length === 1 ? turning[0] : undefined;
   if (only === undefined || Object.keys(only.turns).length !== 1 || only.turns[name] !== 1) return null;
   return only.servo;
-}
-
-function withServoNotes(servo: Omit<ServoReport, 'notes'>): ServoReport {
-  const { travel_deg, nominal_deg, between_us, lost_motion_deg, lost_motion_us, points } = servo;
-  const notes = [...pointsWords(points, 'us', POINTS_ENOUGH)];
-  if (travel_deg < (1 - SHORT_SHARE) * nominal_deg)
-    notes.push(
-      `it turns ${round(travel_deg, 1)} deg between ${round(between_us[0], 0)} and ${round(between_us[1], 0)} us, ` +
-        `${round(nominal_deg - travel_deg, 1)} deg less than the profile said`,
-    );
-  if (lost_motion_deg !== null && lost_motion_us !== null)
-    notes.push(
-      `${round(lost_motion_deg.is, 2)} deg are lost as it turns back (backlash and deadband together; as a deadband ` +
-        `alone, at most ${round(lost_motion_us, 0)} us)`,
-    );
-  return { ...servo, notes };
 }
 
 function matched(

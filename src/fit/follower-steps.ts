@@ -17,13 +17,11 @@ import {
   undone,
 } from './bench.ts';
 import { emptyCapture } from './captures.ts';
-import { leaderCurve } from './curves.ts';
-import { matchFigures, servoFigures } from './figures.ts';
-import { fitFollowerJoint } from './follower-part.ts';
+import { matchFigures } from './figures.ts';
 import { hornCentring } from './horn.ts';
-import { fitLeaderJoint, type LeaderMap } from './leader-part.ts';
 import { home, jogTo } from './motion.ts';
 import { problemLine } from './problems.ts';
+import { fitted, servoFound } from './servo-found.ts';
 import { round } from './words.ts';
 
 /** Steps of a follower's servo; they return what was found, in words. */
@@ -152,12 +150,7 @@ export function* travelStep(bench: Bench, servo: BenchServo): Step<Outcome> {
   }
   yield* home(bench);
   if (taken === 0) return undone('No angle was written.');
-  const { servo: report, problems } = fitted(bench, servo);
-  return done([
-    ...(report === null ? [] : servoFigures(report).map(([what, value]) => `${joint}: ${what}: ${value}`)),
-    ...(report?.notes ?? []).map((note) => `${joint}: ! ${note}`),
-    ...problems.map(problemLine),
-  ]);
+  return done(servoFound(bench, servo, null));
 }
 
 /** @param source index of the leader joint that it copies */
@@ -209,18 +202,4 @@ export function* matchStep(bench: Bench, servo: BenchServo, source: number): Ste
 function spanOf(bench: Bench, { arm, joint }: BenchServo): readonly [number, number] | null {
   const pulses = capturesOf(bench, arm, joint).of['servo-point'].map(({ pulseUs }) => pulseUs);
   return pulses.length < 2 ? null : [Math.min(...pulses), Math.max(...pulses)];
-}
-
-function fitted(bench: Bench, servo: BenchServo): ReturnType<typeof fitFollowerJoint> {
-  const { leader, followers } = bench.profiles;
-  const profile = followers[servo.follower] as FollowerProfile;
-  const index = profile.joints.findIndex(({ name }) => name === servo.joint);
-  const maps = new Map<string, LeaderMap>(
-    leader.joints.map((joint, j) => {
-      const captures = capturesOf(bench, leader.leader, joint.name);
-      const map = captures.of['leader-point'].length > 0 ? fitLeaderJoint(leader, j, captures).map : leaderCurve(joint);
-      return [joint.name, map];
-    }),
-  );
-  return fitFollowerJoint(profile, index, capturesOf(bench, servo.arm, servo.joint), maps);
 }

@@ -19,14 +19,18 @@ function* cleared(bench: Bench, servo: BenchServo): Step {
   for (let shown = waiting; !bench.awake.has(servo.follower); shown = { ...waiting, lines: [] }) yield shown;
 }
 
-/** Sends a servo somewhere, slowly, and returns when it is there. Another one that is away comes home first. */
-export function* jogTo(bench: Bench, servo: BenchServo, pulseUs: number): Step {
+/**
+ * Sends a servo somewhere, slowly, and returns when it is there. Another one that is away comes home first.
+ * @param words what is said meanwhile; where it goes to, when absent
+ */
+export function* jogTo(bench: Bench, servo: BenchServo, pulseUs: number, words?: string): Step {
   yield* cleared(bench, servo);
   const { away } = bench;
   if (away !== null && (away.follower !== servo.follower || away.servo !== servo.servo)) yield* home(bench);
   bench.away = { follower: servo.follower, servo: servo.servo };
   bench.effects.push({ kind: 'jog', follower: servo.follower, servo: servo.servo, pulseUs });
-  yield* arrived(servo.follower, false, `${servo.arm} ${servo.joint} goes to ${Math.round(pulseUs)} us ...`);
+  const said = words ?? `${servo.arm} ${servo.joint} goes to ${Math.round(pulseUs)} us ...`;
+  yield* arrived(servo.follower, false, said === '' ? [] : [said]);
 }
 
 /** Brings the servo that is away back to where its joint says. */
@@ -34,7 +38,7 @@ export function* home(bench: Bench): Step {
   const { away } = bench;
   if (away === null) return;
   sendHome(bench);
-  yield* arrived(away.follower, true, 'The last servo goes back to its middle ...');
+  yield* arrived(away.follower, true, ['The last servo goes back to its middle ...']);
 }
 
 /** The same without waiting, for a step that is left. */
@@ -42,8 +46,8 @@ export function sendHome(bench: Bench): void {
   if (bench.away !== null) bench.effects.push({ kind: 'jog', ...bench.away, pulseUs: Number.NaN });
 }
 
-function* arrived(follower: number, isHome: boolean, words: string): Step {
-  for (let shown = prompt([words]); ; shown = prompt([])) {
+function* arrived(follower: number, isHome: boolean, words: readonly string[]): Step {
+  for (let shown = prompt(words); ; shown = prompt([])) {
     const event = yield shown;
     if (event.kind === 'jogged' && event.follower === follower && event.home === isHome) return;
   }

@@ -20,7 +20,7 @@ export function leaderPlots(joint: JointReport, captures: readonly Capture[]): r
 }
 
 export function servoPlots(servo: ServoReport): readonly string[] {
-  return mapPlots(servo.points, 'us');
+  return servo.travel === null ? [] : mapPlots(servo.travel.points, 'us');
 }
 
 export function matchPlots({ points, follower }: MatchReport): readonly string[] {

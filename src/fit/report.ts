@@ -96,13 +96,22 @@ export interface ServoReport {
   readonly follower: string;
   readonly joint: string;
   readonly channel: number;
+  /** From angles at pulses; null: none was measured. */
+  readonly travel: TravelReport | null;
+  /** Smallest change of pulse that it answers going onward, from fine steps; null: not measured. */
+  readonly deadband_us: Figure | null;
+  /** Play of gears and horn: what is lost as it turns back, less what the deadband leaves; null: one of them is not known. */
+  readonly backlash_deg: Figure | null;
+  readonly notes: readonly string[];
+}
+
+export interface TravelReport {
   readonly points: PointsReport;
   readonly travel_deg: number;
   readonly nominal_deg: number;
   readonly between_us: readonly [number, number];
+  /** Angle at one pulse come to from either side, the difference; null: not measured both ways. */
   readonly lost_motion_deg: Figure | null;
-  readonly lost_motion_us: number | null;
-  readonly notes: readonly string[];
 }
 
 export interface MatchReport {

@@ -19,8 +19,6 @@ export interface ServoFit {
   readonly nominalDeg: number;
   /** Angle come to with pulses rising less that with pulses falling, at equal pulses: backlash and deadband together. */
   readonly lostMotionDeg: Estimate | null;
-  /** The same as a pulse: the deadband is no wider. */
-  readonly lostMotionUs: number | null;
 }
 
 /** Pulses this near to each other are one place, microseconds: half the finest step of hobby servos. */
@@ -44,15 +42,12 @@ export function fitServo(
   );
   if ('why' in map) return map;
   const betweenUs = [Math.min(...pulses), Math.max(...pulses)] as const;
-  const lost = lostMotion(points, map);
-  const usPerDeg = 1 / Math.abs(map.slope.is);
   return {
     map,
     travelDeg: Math.abs(map.value(betweenUs[1]) - map.value(betweenUs[0])),
     betweenUs,
     nominalDeg: Math.abs(nominal(betweenUs[1]) - nominal(betweenUs[0])),
-    lostMotionDeg: lost,
-    lostMotionUs: lost === null ? null : Math.abs(lost.is) * usPerDeg,
+    lostMotionDeg: lostMotion(points, map),
   };
 }
 

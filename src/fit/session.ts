@@ -2,6 +2,7 @@ import type { RigProfiles } from '../rig/compile.ts';
 import { type Bench, type BenchServo, benchServos, type Outcome, prompt, type Step } from './bench.ts';
 import type { Capture, CaptureStep } from './captures.ts';
 import { servoAlone } from './follower-part.ts';
+import { deadbandStep } from './deadband-step.ts';
 import { hornStep, matchStep, servoWiringStep, travelStep } from './follower-steps.ts';
 import { pointsStep, stillStep, sweepStep, wiringStep } from './leader-steps.ts';
 import { sendHome } from './motion.ts';
@@ -233,6 +234,11 @@ function stepsOf(bench: Bench): readonly ListedStep[] {
       name: `travel of ${servo.arm} ${servo.joint}`,
       mark: has(servo.arm, servo.joint, 'servo-point'),
       run: () => travelStep(bench, servo),
+    })),
+    ...alone.map((servo) => ({
+      name: `deadband of ${servo.arm} ${servo.joint}`,
+      mark: has(servo.arm, servo.joint, 'servo-step'),
+      run: () => deadbandStep(bench, servo),
     })),
     ...alone.flatMap((servo) => {
       const source = sourceOf(servo);

@@ -1,5 +1,5 @@
 import type { Hold } from './stillness.ts';
-import type { MatchReport, PointsReport, SweepReport } from './report.ts';
+import type { MatchReport, PointsReport, ServoReport, SweepReport } from './report.ts';
 
 /** Sentences of a fit: what was found, and after a semicolon what to do about it. */
 
@@ -55,6 +55,38 @@ export function sweepWords(sweep: SweepReport): readonly string[] {
       `hysteresis of ${round(Math.abs(sweep.hysteresis_deg), 2)} deg between sweep up and sweep down, ` +
         'more than the hand wobbles; look for play between joint and pot',
     );
+  return out;
+}
+
+/** Travel that falls short by more than this share is worth a word. */
+const SHORT_SHARE = 0.03;
+
+/** @param steps fine steps that were tried for the deadband */
+export function servoWords(
+  { travel, deadband_us, backlash_deg }: Omit<ServoReport, 'notes'>,
+  enough: number,
+  steps: number,
+): readonly string[] {
+  const out: string[] = [];
+  if (travel !== null) {
+    const { points, travel_deg, nominal_deg, between_us } = travel;
+    out.push(...pointsWords(points, 'us', enough));
+    if (travel_deg < (1 - SHORT_SHARE) * nominal_deg)
+      out.push(
+        `it turns ${round(travel_deg, 1)} deg between ${round(between_us[0], 0)} and ${round(between_us[1], 0)} us, ` +
+          `${round(nominal_deg - travel_deg, 1)} deg less than the profile said`,
+      );
+  }
+  const lost = travel?.lost_motion_deg ?? null;
+  if (steps > 0 && deadband_us === null)
+    out.push('its deadband is not known yet; take fine steps until it has moved twice the same way');
+  else if (lost !== null && backlash_deg === null)
+    out.push(
+      `${round(lost.is, 2)} deg are lost as it turns back, backlash and deadband together; ` +
+        'measure its deadband in fine steps to tell them apart',
+    );
+  else if (lost === null && deadband_us !== null)
+    out.push('its backlash is not known; measure its travel both ways to have it');
   return out;
 }
 

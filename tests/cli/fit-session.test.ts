@@ -8,7 +8,7 @@ import { measure } from '../../src/cli/fit-session.ts';
 import { fitCaptures } from '../../src/fit/fit.ts';
 import { memoryPort } from '../../src/port/memory.ts';
 import { loadRig } from '../../src/rig/load.ts';
-import { countsOf, heldJoint, type Horn, play, replies, sitting } from '../fit/workbench.ts';
+import { countsOf, heldJoint, plantedServo, play, replies, sitting } from '../fit/workbench.ts';
 import { scratch } from './rigs.ts';
 
 const files = scratch();
@@ -46,6 +46,11 @@ function bench() {
     clock.at(clock.nowUs() + 10_000, tick);
   };
   clock.at(10_000, tick);
+  const horns = [
+    plantedServo('base', (us) => (us - 1500) / 10.5 + 3, { deadbandUs: 5, playUs: 10.5 }),
+    // Mounted the other way round, and short of its nominal travel.
+    plantedServo('elbow', (us) => -(us - 1500) / 11 - 2, { deadbandUs: 3, playUs: 0 }),
+  ];
   const arm = memoryPort(clock, 'tcp:wren:1');
   let pulses = [Number.NaN, Number.NaN];
   let text = '';
@@ -54,15 +59,12 @@ function bench() {
       text += new TextDecoder().decode(bytes);
       const lines = text.split('\n');
       text = lines.pop() ?? '';
-      const last = lines.at(-1);
-      if (last !== undefined) pulses = last.split(',').map(Number);
+      for (const line of lines) {
+        pulses = line.split(',').map(Number);
+        for (const [i, horn] of horns.entries()) horn.feed(pulses[i] as number);
+      }
     },
   });
-  const horns: Horn[] = [
-    { joint: 'base', deg: (us) => (us - 1500) / 10.5 + 3, pulseUs: () => pulses[0] as number },
-    // Mounted the other way round, and short of its nominal travel.
-    { joint: 'elbow', deg: (us) => -(us - 1500) / 11 - 2, pulseUs: () => pulses[1] as number },
-  ];
   const seat = sitting(clock, ({ address }) => (address.text === 'tcp:leader:1' ? hand.port : arm.port));
   return { clock, leader, hand, arm, horns, seat, pulses: () => pulses };
 }
@@ -121,7 +123,17 @@ describe('A session', () => {
     expect(base?.sweep?.span_counts[0]).toBeCloseTo(2000 - 13 * 125, -1);
     expect(base?.sweep?.ends_confirmed).toBe(true);
     expect(base?.sweep?.hysteresis_seen).toBe(false);
-    expect(report.servos.map(({ travel_deg }) => Math.round(travel_deg))).toEqual([171, 164]);
+    expect(report.servos.map(({ travel }) => Math.round(travel?.travel_deg ?? 0))).toEqual([171, 164]);
+    // They answer 6 us and 4 us, and not a microsecond less; the one has a degree of play, the other none.
+    for (const [i, [deadbandUs, playDeg]] of [
+      [5, 1],
+      [3, 0],
+    ].entries() as IterableIterator<[number, [number, number]]>) {
+      const { deadband_us, backlash_deg } = report.servos[i] ?? {};
+      expect(deadband_us).toEqual({ is: deadbandUs + 0.5, error_95: 0.5 });
+      expect(Math.abs((backlash_deg?.is ?? Number.NaN) - playDeg)).toBeLessThan(backlash_deg?.error_95 ?? 0);
+      expect(backlash_deg?.error_95).toBeLessThan(0.8);
+    }
     expect(report.matches.map(({ direction }) => direction)).toEqual(['same', 'reversed']);
     expect(report.matches[0]?.gain.is).toBeCloseTo(0.7, 1);
     expect(report.matches[0]?.offset_deg.is).toBeCloseTo(5, 0);

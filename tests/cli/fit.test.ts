@@ -154,6 +154,49 @@ describe('eidograph fit --from', () => {
     ]);
   });
 
+  it('writes a deadband that was measured in fine steps, and nothing else of that servo', () => {
+    const alone = RIG.replace(/followers: .*/, 'followers: [wren.yaml]');
+    files.write('bench.yaml', alone);
+    const steps = [
+      [1500, 1],
+      [1503, 1],
+      [1507, 0],
+      [1508, 1],
+      [1512, 0],
+      [1513, 1],
+    ].map(([us, moved]) => `servo-step,wren,base,,${us},,${moved}\n`);
+    const { status, out } = fit(`step,arm,joint,counts,pulse_us,known_deg,moved\n${steps.join('')}`);
+    expect(status).toBe(0);
+    expect(out).toMatch(/deadband +4\.5 \+- 0\.5 us/);
+    expect(read('wren.yaml')).toBe(
+      WREN.replace(
+        'servo: { channel: 0, points: [[-90, 600], [90, 2400]] }',
+        'servo: { channel: 0, points: [[-90, 600], [90, 2400]], deadband_us: 4.5 }',
+      ),
+    );
+  });
+
+  it('tells backlash from deadband where the travel was measured both ways too', () => {
+    files.write('bench.yaml', RIG.replace(/followers: .*/, 'followers: [wren.yaml]'));
+    // A degree is lost at each pulse: 1 us a tenth of a degree, 4.5 us of deadband; 0.55 degrees are play.
+    const ways = [700, 1100, 1500, 1900, 2300, 1900, 1500, 1100, 700].map(
+      (us, i) => `servo-point,wren,base,,${us},${((us - 1500) / 10 + (i < 5 ? -0.5 : 0.5)).toFixed(1)},\n`,
+    );
+    const steps = '1500,,1 1503,,1 1507,,0 1508,,1'.split(' ').map((cells) => `servo-step,wren,base,,${cells}\n`);
+    const header = 'step,arm,joint,counts,pulse_us,known_deg,moved\n';
+    const servo = (text: string) =>
+      (JSON.parse(fit(header + text, { json: true, dryRun: true }).out) as FitReport).servos[0];
+    expect(servo(ways.join(''))).toMatchObject({
+      deadband_us: null,
+      backlash_deg: null,
+      notes: [expect.stringContaining('1.00 deg are lost as it turns back, backlash and deadband together') as string],
+    });
+    const both = servo(ways.join('') + steps.join(''));
+    expect(both?.travel?.lost_motion_deg?.is).toBeCloseTo(1, 6);
+    expect(both?.backlash_deg?.is).toBeCloseTo(0.55, 2);
+    expect(both?.notes).toEqual([]);
+  });
+
   it('writes a report that needs no other file', () => {
     const { status } = fit(HEADER + points('base'), { dryRun: true, report: files.path('report.html') });
     expect(status).toBe(0);
@@ -223,6 +266,15 @@ describe('Bad captures', () => {
     ],
     [`${HEADER}leader-point,stick,base,1,,\n`, /captures\.csv:2:\d+: a leader-point needs known_deg/],
     [`${HEADER}leader-point,stick,base,one,,2\n`, /captures\.csv:2:25: "one" is no number/],
+    [
+      'step,arm,joint,counts,pulse_us,known_deg,moved\nservo-step,wren,base,,1500,,yes\n',
+      /captures\.csv:2:29: "yes" is no number/,
+    ],
+    [
+      'step,arm,joint,counts,pulse_us,known_deg,moved\nservo-step,wren,base,,1500,,2\n',
+      /captures\.csv:2:29: "2" is neither 1 nor 0/,
+    ],
+    [`${HEADER}servo-step,wren,base,,1500,\n`, /captures\.csv:2:1: a servo-step needs moved/],
     [`${HEADER}leader-point,stick,base,1\n`, /captures\.csv:2:1: 4 cells under 6 columns/],
   ])('that cannot be read are told with their place (%#)', (text, words) => {
     const { status, err } = fit(text);

@@ -1,5 +1,6 @@
 import fc from 'fast-check';
 import { describe, expect, it } from 'vitest';
+import { backlashOf, deadbandOf } from '../../src/fit/deadband.ts';
 import { driftOf } from '../../src/fit/drift.ts';
 import { hornCentring } from '../../src/fit/horn.ts';
 import { leastDeviation } from '../../src/fit/linearity.ts';
@@ -10,6 +11,7 @@ import { suggest, varianceLeft } from '../../src/fit/suggest.ts';
 import { wiringOf } from '../../src/fit/wiring.ts';
 import { oneEuro } from '../../src/leader/one-euro.ts';
 import { random } from '../../src/sim/random.ts';
+import { plantedServo } from './workbench.ts';
 
 const steps = (from: number, to: number, n: number): number[] =>
   Array.from({ length: n }, (_, i) => from + ((to - from) * i) / (n - 1));
@@ -113,7 +115,6 @@ describe('A servo measured both ways', () => {
     expect(found.travelDeg).toBeCloseTo(160, 0);
     expect(found.nominalDeg).toBeCloseTo(160, 6);
     expect(found.lostMotionDeg?.is).toBeCloseTo(1.2, 6);
-    expect(found.lostMotionUs).toBeCloseTo(12, 0);
   });
 
   it('has no lost motion to tell when it was measured one way only', () => {
@@ -125,6 +126,68 @@ describe('A servo measured both ways', () => {
     if ('why' in found) throw new Error(found.why);
     expect(found.lostMotionDeg).toBeNull();
     expect(found.map.slope.is).toBeCloseTo(-1 / 11, 9);
+  });
+});
+
+describe('A deadband', () => {
+  const steps = (...pairs: readonly (readonly [us: number, moved: 0 | 1])[]) =>
+    pairs.map(([pulseUs, moved]) => ({ pulseUs, moved: moved === 1 }));
+
+  it('is the smallest change that is answered onward from where it last moved', () => {
+    // The first move only finds where it stands. Then 4 us and 3 us are too little, 5 us and 4 us enough: 4.5 and 3.5.
+    const found = deadbandOf(steps([1500, 1], [1503, 1], [1507, 0], [1508, 1], [1511, 0], [1512, 1]));
+    expect(found?.is).toBeCloseTo(4, 9);
+    // Half a microsecond of step, and a t of 12.71 for two trials that are 1 apart: 12.71 * sqrt(1/2) / sqrt(2).
+    expect(found?.error95).toBeCloseTo(Math.hypot(0.5, 12.706 * 0.5), 2);
+  });
+
+  it('is known to half a step from one trial', () => {
+    expect(deadbandOf(steps([1500, 1], [1502, 1], [1504, 0], [1508, 1]))).toEqual({ is: 4, error95: 2 });
+  });
+
+  it('has nothing to do with the play that a turn takes out', () => {
+    expect(deadbandOf(steps([1500, 1], [1503, 1], [1490, 0], [1488, 1]))).toBeNull();
+    expect(deadbandOf(steps([1500, 1], [1503, 1], [1490, 0], [1488, 1], [1484, 0], [1483, 1]))).toEqual({
+      is: 4.5,
+      error95: 0.5,
+    });
+    // Forth, back a little and forth again: nobody knows where in its play it was.
+    expect(deadbandOf(steps([1500, 1], [1503, 1], [1506, 0], [1502, 0], [1508, 1]))).toBeNull();
+  });
+
+  it('is not known from nothing', () => {
+    expect(deadbandOf([])).toBeNull();
+    expect(deadbandOf(steps([1500, 1], [1501, 0], [1502, 0]))).toBeNull();
+  });
+
+  it('of any servo is found to the microsecond it was stepped with, whatever its play', () => {
+    const planted = fc.record({
+      deadbandUs: fc.integer({ min: 0, max: 12 }),
+      playUs: fc.double({ min: 0, max: 20, noNaN: true }),
+      up: fc.boolean(),
+    });
+    fc.assert(
+      fc.property(planted, ({ deadbandUs, playUs, up }) => {
+        const horn = plantedServo('base', (us) => us, { deadbandUs, playUs });
+        horn.feed(1500);
+        const way = up ? 1 : -1;
+        const found: { pulseUs: number; moved: boolean }[] = [];
+        for (let us = 1500; us < 1600; us++) {
+          const was = horn.standsDeg();
+          horn.feed(1500 + way * (us - 1500));
+          found.push({ pulseUs: horn.pulseUs(), moved: horn.standsDeg() !== was });
+        }
+        const { is = Number.NaN, error95 } = deadbandOf(found) ?? {};
+        expect(Math.abs(is - (deadbandUs + 0.5))).toBeLessThan(1e-9);
+        expect(error95).toBeCloseTo(0.5, 9);
+      }),
+    );
+  });
+
+  it('is taken from what is lost as a servo turns back, and the rest is backlash', () => {
+    // 1.5 degrees are lost, 5 us of deadband are 0.5 degrees: 0.5 to 1.5 degrees are play, whatever it stopped short by.
+    expect(backlashOf({ is: 1.5, error95: 0.375 }, 0.5)).toEqual({ is: 1, error95: 0.625 });
+    expect(backlashOf({ is: 0.2, error95: null }, 0.4)).toEqual({ is: 0, error95: null });
   });
 });
 

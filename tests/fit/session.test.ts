@@ -189,6 +189,7 @@ it('Captures are read back as they were written', () => {
     knownDeg: fc.double({ noNaN: true, noDefaultInfinity: true }),
     tMs: number,
     noiseCounts: number,
+    moved: fc.constantFrom(0, 1),
     channel: number,
     attempt: number,
   });

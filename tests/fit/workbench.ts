@@ -61,10 +61,42 @@ export function countsOf({ pot, angleAt }: HeldJoint, tUs: number, channel: numb
 /** A servo's horn as it is. */
 export interface Horn {
   readonly joint: string;
-  /** Degrees of the joint at a pulse. */
+  /** Degrees of the joint at a pulse, in the middle of its play. */
   deg(pulseUs: number): number;
   /** The pulse it has now. */
   pulseUs(): number;
+  /** Where it stands now, deadband and play included, degrees. */
+  standsDeg(): number;
+}
+
+/** A servo that answers no change of up to `deadbandUs`, on whose gears a horn hangs with play; it is there at once. */
+export interface PlantedServo extends Horn {
+  feed(pulseUs: number): void;
+}
+
+export function plantedServo(
+  joint: string,
+  deg: (pulseUs: number) => number,
+  { deadbandUs, playUs }: { readonly deadbandUs: number; readonly playUs: number },
+): PlantedServo {
+  let pulse = Number.NaN;
+  let shaft = Number.NaN;
+  let horn = Number.NaN;
+  return {
+    joint,
+    deg,
+    pulseUs: () => pulse,
+    standsDeg: () => deg(horn),
+    feed(pulseUs) {
+      pulse = pulseUs;
+      if (Number.isNaN(shaft)) {
+        shaft = pulseUs;
+        horn = pulseUs;
+      }
+      if (Math.abs(pulseUs - shaft) > deadbandUs) shaft = pulseUs;
+      horn = Math.min(shaft + playUs / 2, Math.max(shaft - playUs / 2, horn));
+    },
+  };
 }
 
 export interface Person {
@@ -104,6 +136,9 @@ function sweep(
   }
 }
 
+/** The end of a stick on a horn is seen to move from here on. */
+const SEEN_DEG = 0.1;
+
 export interface PersonOptions {
   readonly stopsDeg: readonly [number, number];
   readonly sweepS: number;
@@ -126,13 +161,14 @@ export function replies(person: Person, { stopsDeg, sweepS }: PersonOptions): (a
   };
   const at = (text: string, untilUs = 0): Reply => ({ text, untilUs });
   let moving = '';
+  let stood: { joint: string; deg: number } | null = null;
   return (ask, before) => {
     if (ask.includes('a number: that step')) return at('');
     if (ask.startsWith('Type yes')) return at('yes');
     if (ask.includes('past the middle')) {
       moving = /(\w+) is at its middle pulse/.exec(before)?.[1] ?? '';
       const horn = hornOf(moving);
-      return at(horn.deg(horn.pulseUs()).toFixed(1));
+      return at(horn.standsDeg().toFixed(1));
     }
     if (ask.startsWith('Teeth')) return at('');
     if (ask.startsWith('Enter when you have')) {
@@ -170,7 +206,18 @@ export function replies(person: Person, { stopsDeg, sweepS }: PersonOptions): (a
         before.split('\n').findLast((l) => /goes (outward|to)/.test(l)) ?? '',
       );
       const horn = hornOf(joint?.[1] ?? joint?.[2] ?? '');
-      return at((Math.round(2 * (horn.deg(horn.pulseUs()) + error())) / 2).toFixed(1));
+      return at((Math.round(2 * (horn.standsDeg() + error())) / 2).toFixed(1));
+    }
+    if (/^At \d+ us \(Enter: it stood/.test(ask)) {
+      const creeping = /(\w+) of \w+ now creeps/.exec(
+        before.split('\n').findLast((l) => l.includes('now creeps')) ?? '',
+      );
+      const joint = creeping?.[1] ?? '';
+      const standsDeg = hornOf(joint).standsDeg();
+      // At the first step there is nothing to compare with.
+      const moved = stood?.joint === joint && Math.abs(standsDeg - stood.deg) > SEEN_DEG;
+      stood = { joint, deg: standsDeg };
+      return at(moved ? 'm' : '');
     }
     if (ask.startsWith('Pose ')) {
       // Where the pot has lost its track, holding it again does not help.
@@ -178,7 +225,7 @@ export function replies(person: Person, { stopsDeg, sweepS }: PersonOptions): (a
       const joint =
         /\w+ (\w+) goes to/.exec(before.split('\n').findLast((l) => l.includes('goes to')) ?? '')?.[1] ?? '';
       const horn = hornOf(joint);
-      const { source, deg } = person.alike(joint, horn.deg(horn.pulseUs()));
+      const { source, deg } = person.alike(joint, horn.standsDeg());
       // Further than the leader turns: nobody can set it so.
       if (deg < stopsDeg[0] || deg > stopsDeg[1]) return at('next');
       source.go(deg + error(), 0.3);
