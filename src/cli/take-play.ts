@@ -10,10 +10,12 @@ import { takesFolder } from '../take/folder.ts';
 import type { Made } from '../take/header.ts';
 import { type Phase, player, type Player } from '../take/player.ts';
 import type { Take } from '../take/reader.ts';
+import type { Motion } from '../take/motion.ts';
+import { pacedReel } from '../take/paced-reel.ts';
 import { reel } from '../take/reel.ts';
 import type { Row } from '../take/row.ts';
 import { type Demand, leastStretch, stretchFor } from '../take/stretching.ts';
-import { weightedReel, weights } from '../take/weighted.ts';
+import { weights } from '../take/weighted.ts';
 import type { Companion, Company } from './companion.ts';
 import { driving } from './driving.ts';
 import { rigOrMistakes } from './load.ts';
@@ -64,10 +66,12 @@ export async function playTake(name: string, options: PlayOptions, world: World,
     const score = isTakeFault(rig) ? rig : scoreFor(take, rig, options);
     if (isTakeFault(rig)) return refusedStatus(rig, at.err);
     if (isTakeFault(score)) return refusedStatus(score, at.err);
-    const fitted = options.keepLimits ? await fitToLimits(take, rig, score, at) : score.speed;
-    if (typeof fitted !== 'number') return fitted.status;
-    const rows = rowsFor(take, rig, { ...score, speed: fitted }, options);
-    if (isTakeFault(rows)) return refusedStatus(rows, at.err);
+    const paced = await paceFor(take, rig, score, options, at);
+    if (paced !== null && 'status' in paced) return paced.status;
+    const rows =
+      paced === null
+        ? reel(take, { ...score, loopBlendS: loopBlendS(options) })
+        : pacedReel(paced.motion, paced.factors);
     const layered =
       options.layer === null
         ? null
@@ -138,43 +142,56 @@ function scoreFor(take: Take, rig: CompiledRig, options: PlayOptions): Score | T
   return { ...stretch, cast: { leader, followers }, by: options.by, speed: options.speed, posed };
 }
 
-/** The speed at which every follower keeps its limits: the asked one, or as much slower as it takes. */
-async function fitToLimits(
+/** Each follower's own time, where it has one. */
+interface Pace {
+  readonly motion: Motion;
+  readonly factors: readonly number[];
+}
+
+/** null: the take is played as it is, at the asked speed. */
+async function paceFor(
   take: Take,
   rig: CompiledRig,
   score: Score,
+  options: PlayOptions,
   world: TakeWorld,
-): Promise<number | { readonly status: number }> {
-  const judged = await worked(leastStretch(take, rig.plan, score.cast, score.by, score), world);
+): Promise<Pace | { readonly status: number } | null> {
+  if (!options.keepLimits && !options.weight) return null;
+  const { plan } = rig;
+  const own = options.weight ? weights(take, plan) : plan.followers.map(() => 1);
+  if (isTakeFault(own)) return { status: refusedStatus(own, world.err) };
+  const blendS = loopBlendS(options);
+  // The blend lasts what was asked for at the asked speed.
+  const motion = { ...score, take, plan, loopBlendS: blendS === null ? null : blendS * score.speed };
+  const factors = own.map((factor) => factor / score.speed);
+  if (!options.keepLimits) return { motion, factors };
+  const judged = await worked(leastStretch(motion, factors), world);
   if ('status' in judged) return judged;
-  const demands = judged.done;
-  for (const { follower, of, factor } of demands.filter(({ kind }) => kind === 'load'))
-    world.err.write(
-      `${follower}: ${of} would have to hold ${factor.toFixed(2)} times what its motor may, even standing still; no slowness cures that: balance the arm, or change the motion\n`,
-    );
-  const needed = stretchFor(demands);
-  // At the asked speed everything is faster by it, so time has to be stretched by so much more.
-  const factor = Math.max(1, needed * score.speed);
+  for (const sentence of sentencesOf(judged.done)) world.err.write(`${sentence}\n`);
+  const stretch = stretchFor(judged.done);
+  return { motion, factors: factors.map((factor) => factor * stretch) };
+}
+
+function loopBlendS({ loopBlendUs }: PlayOptions): number | null {
+  return loopBlendUs === null ? null : loopBlendUs / US_PER_S;
+}
+
+function sentencesOf(demands: readonly Demand[]): readonly string[] {
+  const loads = demands.filter(({ kind }) => kind === 'load');
   const worst = demands.find(({ kind }) => kind !== 'load');
-  world.err.write(
-    factor === 1 || worst === undefined
-      ? 'every follower keeps its limits as it is\n'
-      : `time is stretched ${factor.toFixed(2)} times: ${describe(worst)} asks for it\n`,
-  );
-  return score.speed / factor;
+  return [
+    ...loads.map(
+      ({ follower, of, factor, atS }) =>
+        `${follower}: ${of} would have to hold ${factor.toFixed(2)} times what its motor may at ${atS.toFixed(1)} s, even standing still; no slowness cures that: balance the arm, or change the motion`,
+    ),
+    worst === undefined
+      ? 'every follower keeps its limits as it is'
+      : `time is stretched ${stretchFor(demands).toFixed(2)} times: ${describe(worst)} asks for it`,
+  ];
 }
 
-function describe({ follower, of, kind }: Demand): string {
-  return `the ${kind} of ${follower}'s ${of}`;
-}
-
-function rowsFor(take: Take, rig: CompiledRig, score: Score, options: PlayOptions): Iterator<Row> | TakeFault {
-  const { loopBlendUs } = options;
-  if (!options.weight)
-    return reel(take, { ...score, loopBlendS: loopBlendUs === null ? null : loopBlendUs / US_PER_S });
-  const factors = weights(take, rig.plan);
-  if (isTakeFault(factors)) return factors;
-  return weightedReel(take, rig.plan, score.cast, score.by, score, score.speed, factors);
+function describe({ follower, of, kind, atS }: Demand): string {
+  return `the ${kind} of ${follower}'s ${of} at ${atS.toFixed(1)} s`;
 }
 
 function playing(
@@ -188,8 +205,8 @@ function playing(
   let company: Company | null = null;
   let running: Player | null = null;
   const { layer } = options;
-  // With weights each follower has commands of its own, whoever led them.
-  const own = options.weight ? ownCommands(rig) : null;
+  // On a time of its own each follower has commands of its own, whoever led them.
+  const own = options.weight || options.keepLimits ? ownCommands(rig) : null;
   const made: Made = {
     by: 'layer',
     parents: [{ take: take.name, rows: take.rows }],
@@ -211,7 +228,7 @@ function playing(
         return say('the hand leads; o gives back to the take');
       case 'over':
         recorded?.stop();
-        say(`${take.name}: played; ${timing(running)}`);
+        company.sayLast({ text: `${take.name}: played; ${timing(running)}`, weight: 'note' });
         if (!options.stay) company.parkAndLeave();
     }
   };

@@ -1,24 +1,20 @@
 import { type Chain, chain as makeChain } from '../arm/chain.ts';
-import { type Loads, loads } from '../arm/load.ts';
-import { US_PER_S } from '../clock/clock.ts';
-import type { Plan } from '../drive/plan.ts';
+import { loads } from '../arm/load.ts';
 import type { FollowerSpec } from '../follower/spec.ts';
-import type { Cast } from './cast.ts';
-import type { Stretch } from './derive.ts';
-import { butterworth, zeroPhase } from './low-pass.ts';
-import type { Take } from './reader.ts';
-import { resampled } from './resample.ts';
-import { askedOf } from './asked.ts';
+import { type Motion, playing, samples, SAMPLES_HZ, samplesOfRound } from './motion.ts';
+import { accelAt, peakSpeed, type Piece, pieces, REACH } from './smooth-path.ts';
 
-/** What a stretch of a take asks of a follower beyond its limits. */
+/** What a motion asks of a follower beyond its limits. */
 export interface Demand {
   readonly follower: string;
   /** The joint, or `link ends` for the cap on them. */
   readonly of: string;
   /** `load`: what it would have to hold standing still is too much already, and no slowness cures that. */
   readonly kind: 'speed' | 'acceleration' | 'end speed' | 'load';
-  /** How much longer the take has to be for it, over 1; for a load, how many times too heavy it is. */
+  /** How much longer the motion has to be for it, over 1; for a load, how many times too heavy it is. */
   readonly factor: number;
+  /** Where in the stretch it asks for most, seconds. */
+  readonly atS: number;
 }
 
 /** The factor by which time has to be stretched: 1 where every limit is kept. */
@@ -26,127 +22,125 @@ export function stretchFor(demands: readonly Demand[]): number {
   return demands.reduce((most, { kind, factor }) => (kind === 'load' ? most : Math.max(most, factor)), 1);
 }
 
-/** Rate at which motions are judged, and the cutoff that keeps a converter's step from looking like one: 1e5 deg/s^2 in 1 ms. */
-const RATE_HZ = 100;
-const CUTOFF_HZ = 5;
-/** Judged in stretches, so that memory does not grow with the take; their ends overlap by what the filter remembers. */
-const WINDOW_US = 120 * US_PER_S;
-const OVERLAP_US = 2 * US_PER_S;
-/** Samples between two looks at what an arm would have to hold. */
+/** A joint counts as moving at its limit from 0.999 of it on: motions are stretched to stay just below. */
+const LIMIT_SHARE = 0.998;
+/** Pieces of the path between two looks at what an arm would have to hold. */
 const LOAD_EVERY = 10;
+const STEPS_A_LOOK = 500;
 
 /**
- * The least factor by which time has to be stretched so that every follower keeps its limits, and what asks for it. Played
- * a factor slower a path has speeds by 1/factor and accelerations by 1/factor^2 (J. M. Hollerbach, "Dynamic scaling of
- * manipulator trajectories", ASME J. Dyn. Sys. 106 (1984) 102-106).
+ * The least factor by which time has to be stretched so that every follower keeps its limits along the path it is then
+ * commanded along, and what asks for it. Played a factor slower a path has speeds by 1/factor and accelerations by
+ * 1/factor^2 (J. M. Hollerbach, "Dynamic scaling of manipulator trajectories", ASME J. Dyn. Sys. 106 (1984) 102-106).
+ * @param factors by which each follower of the rig is slower than the take anyhow
  */
-export function* leastStretch(
-  take: Take,
-  plan: Plan,
-  cast: Cast,
-  by: 'leader' | 'commands',
-  { fromUs, toUs }: Stretch,
-): Generator<number, readonly Demand[]> {
-  const watches = plan.followers.map((spec, f) => demandWatch(spec, by === 'leader' || cast.followers[f] !== null));
-  const anglesOf = askedOf(plan, cast, by);
-  for (let startUs = fromUs; startUs < toUs; startUs += WINDOW_US) {
-    const first = Math.max(fromUs, startUs - OVERLAP_US);
-    const last = Math.min(toUs, startUs + WINDOW_US + OVERLAP_US);
-    const tracks = plan.followers.map((spec) => spec.joints.map((): number[] => []));
-    for (const row of resampled(take, RATE_HZ, first, last))
-      tracks.forEach((joints, f) => {
-        const angles = anglesOf(row, f);
-        joints.forEach((track, j) => track.push(angles?.[j] ?? Number.NaN));
-      });
-    tracks.forEach((joints, f) => watches[f]?.judge(joints.map(filtered)));
-    yield (startUs - fromUs) / (toUs - fromUs);
+export function* leastStretch(motion: Motion, factors: readonly number[]): Generator<number, readonly Demand[]> {
+  const { plan } = motion;
+  let from = 0;
+  const watches = playing(motion).map((f) => {
+    const spec = plan.followers[f] as FollowerSpec;
+    const watch = demandWatch(spec, from, plan.pace, factors[f] as number);
+    from += spec.joints.length;
+    return watch;
+  });
+  const round = samplesOfRound(motion);
+  // A loop goes on into its second round: the seam is judged with what lies on either side of it.
+  const count = round + 2 * REACH + 2;
+  let k = 0;
+  for (const piece of pieces(samples(motion, playing(motion)))) {
+    const atS = Math.max(0, k - REACH) / SAMPLES_HZ;
+    for (const watch of watches) watch.look(piece, atS, k % LOAD_EVERY === 0);
+    k++;
+    if (k === count) break;
+    if (k % STEPS_A_LOOK === 0) yield k / count;
   }
   return watches.flatMap((watch) => watch.demands()).toSorted((a, b) => b.factor - a.factor);
 }
 
-/** Before the first reading nothing is asked: the first known angle stands for it. */
-function filtered(track: readonly number[]): Float64Array {
-  const values = Float64Array.from(track);
-  const known = values.findIndex((value) => !Number.isNaN(value));
-  if (known < 0) return new Float64Array(0);
-  values.fill(values[known] as number, 0, known);
-  zeroPhase(values, butterworth(CUTOFF_HZ, RATE_HZ), RATE_HZ);
-  return values;
+/** The most that was asked of something, and when. */
+interface Most {
+  value: number;
+  atS: number;
 }
 
 interface DemandWatch {
-  judge(tracks: readonly Float64Array[]): void;
+  look(piece: Piece, atS: number, weighs: boolean): void;
   demands(): readonly Demand[];
 }
 
-function demandWatch(spec: FollowerSpec, plays: boolean): DemandWatch {
-  const speed = new Float64Array(spec.joints.length);
-  const accel = new Float64Array(spec.joints.length);
+/** @param from where in a sample its joints begin */
+function demandWatch(spec: FollowerSpec, from: number, pace: number, factor: number): DemandWatch {
+  const none = (): Most => ({ value: 0, atS: 0 });
+  const speeds = spec.joints.map(none);
+  const accels = spec.joints.map(none);
+  const shares = spec.joints.map(none);
+  const ends = none();
   const cap = spec.whole?.endSpeedMS ?? null;
-  const chain = spec.whole === undefined || cap === null ? null : makeChain(spec.whole.arm);
+  const end = spec.whole === undefined || cap === null ? null : endSpeeds(makeChain(spec.whole.arm));
   const load = spec.whole === undefined ? null : loads(spec.whole.arm, spec.joints.length);
-  const shares = new Float64Array(spec.joints.length);
-  let endSpeed = 0;
+  const angles = new Float64Array(spec.joints.length);
+  const held = new Float64Array(spec.joints.length);
   return {
-    judge(tracks) {
-      if (!plays) return;
-      tracks.forEach((track, j) => {
-        for (let k = 1; k < track.length; k++) {
-          const v = ((track[k] as number) - (track[k - 1] as number)) * RATE_HZ;
-          if (Math.abs(v) > (speed[j] as number)) speed[j] = Math.abs(v);
-          if (k + 1 >= track.length) continue;
-          const a =
-            ((track[k + 1] as number) - 2 * (track[k] as number) + (track[k - 1] as number)) * RATE_HZ * RATE_HZ;
-          if (Math.abs(a) > (accel[j] as number)) accel[j] = Math.abs(a);
-        }
+    look(piece, atS, weighs) {
+      spec.joints.forEach((_, j) => {
+        raise(speeds[j] as Most, peakSpeed(piece, from + j), atS);
+        raise(accels[j] as Most, Math.abs(accelAt(piece, from + j)), atS);
       });
-      if (load !== null) heaviest(load, tracks, shares);
-      if (chain !== null) endSpeed = Math.max(endSpeed, fastestEnd(chain, tracks));
+      if (load === null) return;
+      whereItBegins(piece, from, angles);
+      if (end !== null) raise(ends, end(angles), atS);
+      if (!weighs) return;
+      load.shares(angles, true, held);
+      held.forEach((share, j) => raise(shares[j] as Most, share, atS));
     },
     demands() {
-      const found: Demand[] = spec.joints.flatMap(({ name, speedRadS, accelRadS2 }, j): Demand[] => [
-        { follower: spec.name, of: name, kind: 'speed', factor: (speed[j] as number) / speedRadS },
-        { follower: spec.name, of: name, kind: 'load', factor: shares[j] as number },
-        { follower: spec.name, of: name, kind: 'acceleration', factor: Math.sqrt((accel[j] as number) / accelRadS2) },
-      ]);
-      if (cap !== null) found.push({ follower: spec.name, of: 'link ends', kind: 'end speed', factor: endSpeed / cap });
-      return found.filter(({ factor }) => factor > 1);
+      const { name: follower } = spec;
+      const found = spec.joints.flatMap(({ name: of, speedRadS, accelRadS2 }, j): Demand[] => {
+        const [speed, accel, share] = [speeds[j], accels[j], shares[j]] as [Most, Most, Most];
+        const tooFast = speed.value / (LIMIT_SHARE * pace * speedRadS * factor);
+        const tooHard = Math.sqrt(accel.value / (LIMIT_SHARE * accelRadS2)) / factor;
+        return [
+          { follower, of, kind: 'speed', factor: tooFast, atS: speed.atS },
+          { follower, of, kind: 'acceleration', factor: tooHard, atS: accel.atS },
+          { follower, of, kind: 'load', factor: share.value, atS: share.atS },
+        ];
+      });
+      if (cap !== null) {
+        const tooFast = ends.value / (LIMIT_SHARE * cap * factor);
+        found.push({ follower, of: 'link ends', kind: 'end speed', factor: tooFast, atS: ends.atS });
+      }
+      return found.filter((demand) => demand.factor > 1);
     },
   };
 }
 
-/** Raises `most` to the share of what each motor may hold that the heaviest pose asks for. */
-function heaviest(load: Loads, tracks: readonly Float64Array[], most: Float64Array): void {
-  const angles = new Float64Array(tracks.length);
-  const held = new Float64Array(tracks.length);
-  for (let k = 0; k < (tracks[0]?.length ?? 0); k += LOAD_EVERY) {
-    tracks.forEach((track, j) => {
-      angles[j] = track[k] as number;
-    });
-    load.shares(angles, true, held);
-    for (let j = 0; j < held.length; j++) if ((held[j] as number) > (most[j] as number)) most[j] = held[j] as number;
-  }
+function raise(most: Most, value: number, atS: number): void {
+  if (value <= most.value) return;
+  most.value = value;
+  most.atS = atS;
 }
 
-/** m/s, by the way each link end makes from one sample to the next. */
-function fastestEnd(chain: Chain, tracks: readonly Float64Array[]): number {
-  const angles = new Float64Array(tracks.length);
-  const before = new Float64Array(chain.at.length);
-  let farthest = 0;
-  for (let k = 0; k < (tracks[0]?.length ?? 0); k++) {
-    tracks.forEach((track, j) => {
-      angles[j] = track[k] as number;
-    });
+function whereItBegins([a, b, c]: Piece, from: number, out: Float64Array): void {
+  for (let j = 0; j < out.length; j++)
+    out[j] = ((a[from + j] as number) + 4 * (b[from + j] as number) + (c[from + j] as number)) / 6;
+}
+
+/** m/s, by the way each link end makes from one call to the next, a sample's time later. */
+function endSpeeds(chain: Chain): (angles: Float64Array) => number {
+  const before = new Float64Array(chain.at.length).fill(Number.NaN);
+  return (angles) => {
     chain.pose(angles);
-    for (let at = 3; k > 0 && at < before.length; at += 3) {
+    let farthest = 0;
+    for (let at = 3; at < before.length; at += 3) {
       const way = Math.hypot(
         (chain.at[at] as number) - (before[at] as number),
         (chain.at[at + 1] as number) - (before[at + 1] as number),
         (chain.at[at + 2] as number) - (before[at + 2] as number),
       );
-      farthest = Math.max(farthest, way);
+      // Before the first call nobody was anywhere.
+      if (way > farthest) farthest = way;
     }
     before.set(chain.at);
-  }
-  return farthest * RATE_HZ;
+    return farthest * SAMPLES_HZ;
+  };
 }
