@@ -62,7 +62,7 @@ export function scenery(file: string | null): Scenery {
   };
 }
 
-export function header(): TakeHeader {
+function header(): TakeHeader {
   const { plan } = scene(FOLLOWERS, 'frames');
   const inputs = plan.leader.joints.map(({ name }) => name);
   return takeHeader({ name: 'bench', plan }, inputs, 0, true, { by: 'record', parents: [], how: {} });

@@ -1,224 +1,132 @@
-import { closeSync, mkdtempSync, openSync, readFileSync, rmSync, writeSync } from 'node:fs';
+import { mkdtempSync, rmSync } from 'node:fs';
 import { tmpdir } from 'node:os';
 import { join } from 'node:path';
-import { RecordBatchReader, RecordBatchStreamWriter } from 'apache-arrow';
-import { pipeline } from '../../src/bridge/pipeline.ts';
-import { eventSource } from '../../src/bridge/source.ts';
-import { virtualClock } from '../../src/clock/virtual.ts';
-import { drive as makeDrive } from '../../src/drive/drive.ts';
-import { newTakeFile, offlineDisk, wholeFile } from '../../src/take/disk.ts';
-import { exportTakes } from '../../src/take/export.ts';
-import { type TakeHeader, takeHeader } from '../../src/take/header.ts';
-import { openTake, type Take } from '../../src/take/reader.ts';
-import { recorder } from '../../src/take/recorder.ts';
-import { summarize } from '../../src/take/summary.ts';
-import { takeWriter } from '../../src/take/writer.ts';
-import { JOINTS, scene } from './scene.ts';
+import { memories, type TakeMemory } from './take-memory.ts';
+import { type Rate, rates } from './take-rates.ts';
+import { FOLLOWERS, INTERVAL_US, opened, repeated, scenery } from './take-scene.ts';
+import { JOINTS } from './scene.ts';
+import { median, quantile } from './task.ts';
 
-/** What recording costs, and how fast a take is opened, shown and exported beside a plain Arrow copy of its bytes. */
+/** What recording costs, how fast a take is opened, shown and exported beside a plain Arrow copy, and how much memory each takes. */
 export interface TakeFigures {
   /** Of one core, at 1 kHz with 8 joints and 3 followers. */
   readonly recordingShare: number;
-  /** 99 in 100 readings are handled in this much more time with a recording than without, microseconds. */
+  /** 99 in 100 readings are handled in this much more time with a recording than without, microseconds; and the slowest. */
   readonly addedP99Us: number;
+  readonly worstUs: number;
+  readonly minutes: number;
   readonly rows: number;
   readonly megabytes: number;
-  readonly rates: readonly { readonly what: string; readonly rowsPerS: number; readonly overCopy: number }[];
+  readonly rates: readonly Rate[];
+  readonly memory: readonly TakeMemory[];
 }
 
 export interface TakeSize {
+  /** Recorded at 1 kHz. */
   readonly readings: number;
-  readonly rows: number;
+  /** Takes of so many times that: a short and a long one of what is opened, shown and exported. */
+  readonly times: readonly [number, number];
+  /** And of what is recorded and played to see its memory. */
+  readonly played: readonly [number, number];
+  readonly rounds: number;
 }
 
-/** The whole one is an hour at 100 Hz. */
+/** The whole one is an hour. */
 export const TAKE_SIZES = {
-  whole: { readings: 60_000, rows: 360_000 },
-  tiny: { readings: 1_000, rows: 2_000 },
-} as const;
+  whole: { readings: 60_000, times: [6, 60], played: [1, 10], rounds: 3 },
+  tiny: { readings: 1_000, times: [1, 2], played: [1, 2], rounds: 1 },
+} as const satisfies Record<string, TakeSize>;
 
-const FOLLOWERS = 3;
-const INTERVAL_US = 1_000;
 /** Readings between two turns of the loop, in which the disk is heard. */
 const TURN = 100;
+const WARM_UP = 5_000;
 
 export async function takeFigures(size: TakeSize): Promise<TakeFigures> {
   const folder = mkdtempSync(join(tmpdir(), 'eidograph-bench-'));
   try {
-    const costs = await recordingCosts(folder, size.readings);
-    return { ...costs, ...readingRates(folder, size.rows) };
+    const recorded = join(folder, 'recorded.arrows');
+    const costs = await recordingCosts(recorded, size);
+    const made = new Map<number, string>();
+    const times = (count: number): string => {
+      const file = made.get(count) ?? repeated(recorded, folder, count);
+      made.set(count, file);
+      return file;
+    };
+    const [short, long] = size.times.map(times) as [string, string];
+    const played = size.played.map(times) as [string, string];
+    const take = opened(long);
+    take.close();
+    return {
+      ...costs,
+      minutes: (size.readings * size.times[1] * INTERVAL_US) / 60e6,
+      rows: take.rows,
+      megabytes: take.bytes / 1e6,
+      rates: await rates(long, size.rounds),
+      memory: await memories({ record: played, show: [short, long], play: played, export: [short, long] }),
+    };
   } finally {
     rmSync(folder, { recursive: true, force: true });
   }
 }
 
-function header(): TakeHeader {
-  const { plan } = scene(FOLLOWERS, 'frames');
-  const inputs = plan.leader.joints.map(({ name }) => name);
-  return takeHeader({ name: 'bench', plan }, inputs, 0, true, { by: 'record', parents: [], how: {} });
-}
+type Costs = Pick<TakeFigures, 'recordingShare' | 'addedP99Us' | 'worstUs'>;
 
-async function recordingCosts(
-  folder: string,
-  readings: number,
-): Promise<{ recordingShare: number; addedP99Us: number }> {
+/** @param file of the last take that is recorded, which stays */
+async function recordingCosts(file: string, { readings, rounds }: TakeSize): Promise<Costs> {
   // The first pair only warms: a cold process would be what is measured.
-  await handled(folder, 'warm', Math.min(readings, 5_000));
-  await handled(null, 'warm', Math.min(readings, 5_000));
-  const plain = await handled(null, 'plain', readings);
-  const recorded = await handled(folder, 'recorded', readings);
+  await handled(`${file}.warm`, Math.min(readings, WARM_UP));
+  await handled(null, Math.min(readings, WARM_UP));
+  const pairs: { readonly plain: Handled; readonly recorded: Handled }[] = [];
+  for (let round = 0; round < rounds; round++) {
+    rmSync(file, { force: true });
+    pairs.push({ plain: await handled(null, readings), recorded: await handled(file, readings) });
+  }
   return {
-    recordingShare: (recorded.cpuUs - plain.cpuUs) / (readings * INTERVAL_US),
-    addedP99Us: recorded.p99Us - plain.p99Us,
+    recordingShare: median(pairs.map(({ plain, recorded }) => recorded.cpuUs - plain.cpuUs)) / (readings * INTERVAL_US),
+    addedP99Us: median(pairs.map(({ plain, recorded }) => recorded.p99Us - plain.p99Us)),
+    worstUs: median(pairs.map(({ recorded }) => recorded.worstUs)),
   };
 }
 
-/** @param folder null: nothing is recorded */
-async function handled(
-  folder: string | null,
-  name: string,
-  readings: number,
-): Promise<{ cpuUs: number; p99Us: number }> {
-  const { plan } = scene(FOLLOWERS, 'frames');
-  const starts = plan.followers.map((_, board) => ({ poseRad: null, unasked: true, awake: true, board }));
-  const drive = makeDrive(plan, starts, 0);
-  const source = eventSource(drive, null, 0);
-  const clock = virtualClock(0);
-  pipeline(
-    source.events$,
-    drive,
-    () => {},
-    (_, bug) => {
-      throw bug;
-    },
-  );
-  const disk = folder === null ? null : newTakeFile(join(folder, `${name}.arrows`));
-  if (disk !== null && 'fault' in disk) throw new Error(disk.fault.detail);
-  const take =
-    disk === null ? null : recorder(drive, source.events$, clock, takeWriter(name, header(), null, disk.disk), 0);
+interface Handled {
+  readonly cpuUs: number;
+  readonly p99Us: number;
+  readonly worstUs: number;
+}
+
+/** @param file null: nothing is recorded */
+async function handled(file: string | null, readings: number): Promise<Handled> {
+  const { read, recorder } = scenery(file);
   const times = new Float64Array(readings);
-  const event = { kind: 'reading' as const, tUs: 0, counts: new Float64Array(JOINTS) };
   const before = process.cpuUsage();
-  for (let i = 0; i < readings; i++) {
-    const tUs = i * INTERVAL_US;
-    event.tUs = tUs;
-    for (let j = 0; j < JOINTS; j++) event.counts[j] = Math.round(2000 + 800 * Math.sin(i / 300 + j));
+  for (let k = 0; k < readings; k++) {
     const begun = performance.now();
-    clock.runTo(tUs);
-    source.push(event);
-    times[i] = 1e3 * (performance.now() - begun);
-    if (i % TURN === 0) await new Promise((resume) => setImmediate(resume));
+    read(k);
+    times[k] = 1e3 * (performance.now() - begun);
+    if (k % TURN === 0) await new Promise((resume) => setImmediate(resume));
   }
   const { user, system } = process.cpuUsage(before);
-  const fault = (await take?.end()) ?? null;
+  const fault = (await recorder?.end()) ?? null;
   if (fault !== null) throw new Error(fault.detail);
   times.sort();
-  return { cpuUs: user + system, p99Us: times[Math.floor(0.99 * readings)] as number };
+  return { cpuUs: user + system, p99Us: quantile(times, 0.99), worstUs: quantile(times, 1) };
 }
 
-function readingRates(folder: string, rows: number): Pick<TakeFigures, 'rows' | 'megabytes' | 'rates'> {
-  const file = join(folder, 'hour.arrows');
-  const hour = wholeFile(file);
-  const writer = takeWriter('hour', header(), null, offlineDisk(hour));
-  for (let i = 0; i < rows; i++) {
-    const { row } = writer;
-    row.tUs = i * 10_000;
-    for (let j = 0; j < JOINTS; j++) {
-      row.counts[j] = Math.round(2000 + 800 * Math.sin(i / 300 + j));
-      row.poseRad[j] = Math.sin(i / 300 + j);
-    }
-    for (const arm of row.followers) {
-      // Followers at 50 Hz: every other row has a command, the others stand as they were.
-      arm.commanded = i % 2;
-      arm.state = 3;
-      if (i % 2 === 0) continue;
-      for (let j = 0; j < JOINTS; j++) {
-        arm.angleRad[j] = 0.7 * Math.sin(i / 300 + j);
-        arm.targetRad[j] = 0.71 * Math.sin(i / 300 + j);
-        arm.speedRadS[j] = 0.2 * Math.cos(i / 300 + j);
-      }
-    }
-    writer.append();
-    if (i % 25 === 24) writer.flush();
-  }
-  writer.finish();
-  hour.keep();
-
-  const megabytes = readFileSync(file).length / 1e6;
-  const rate = (work: () => void): number => {
-    const times = [0, 1, 2].map(() => {
-      const begun = performance.now();
-      work();
-      return (performance.now() - begun) / 1e3;
-    });
-    return rows / (times.toSorted((a, b) => a - b)[1] as number);
-  };
-  const copy = rate(() => plainCopy(file, join(folder, 'copy.arrows')));
-  const open = rate(() => opened(file).close());
-  const show = rate(() => whole(file, (take) => summarize(take)));
-  const csv = rate(() => exported(file, join(folder, 'out.csv'), 'csv'));
-  const parquet = rate(() => exported(file, join(folder, 'out.parquet'), 'parquet'));
-  const of = (what: string, rowsPerS: number): TakeFigures['rates'][number] => ({
-    what,
-    rowsPerS,
-    overCopy: copy / rowsPerS,
-  });
-  const rates = [
-    of('a plain Arrow copy', copy),
-    of('open', open),
-    of('show', show),
-    of('export to CSV', csv),
-    of('export to Parquet', parquet),
-  ];
-  return { rows, megabytes, rates };
-}
-
-/** Every batch decoded by Arrow and encoded by Arrow again. */
-function plainCopy(from: string, to: string): void {
-  const writer = new RecordBatchStreamWriter();
-  const out = openSync(to, 'w');
-  for (const batch of RecordBatchReader.from(readFileSync(from))) writer.write(batch);
-  writer.finish();
-  writeSync(out, writer.toUint8Array(true));
-  closeSync(out);
-}
-
-function opened(file: string): Take {
-  const take = openTake(file);
-  if ('code' in take) throw new Error(take.detail);
-  return take;
-}
-
-function whole(file: string, work: (take: Take) => Generator<number>): void {
-  const take = opened(file);
-  const steps = work(take);
-  while (steps.next().done !== true);
-  take.close();
-}
-
-function exported(file: string, to: string, format: 'csv' | 'parquet'): void {
-  const out = openSync(to, 'w');
-  whole(
-    file,
-    (take) =>
-      exportTakes(
-        [take],
-        { format, columns: [], rateHz: null },
-        (bytes) => void writeSync(out, bytes),
-      ) as Generator<number>,
-  );
-  closeSync(out);
-}
-
-export function takeReport({ recordingShare, addedP99Us, rows, megabytes, rates }: TakeFigures): string {
+export function takeReport(figures: TakeFigures): string {
+  const { recordingShare, addedP99Us, worstUs, minutes, rows, megabytes } = figures;
   return [
     '',
-    `Recording 8 joints and ${FOLLOWERS} followers at 1 kHz: ${(100 * recordingShare).toFixed(2)} % of a core (asked: under 5 %),`,
-    `  p99 of a reading's handling ${addedP99Us.toFixed(0)} us more (asked: under 1,000)`,
-    `A take of ${rows} rows, ${megabytes.toFixed(0)} MB, rows a second and times a plain Arrow copy:`,
-    ...rates.map(
-      ({ what, rowsPerS, overCopy }) =>
-        `  ${what.padEnd(20)}${rowsPerS.toFixed(0).padStart(10)}   ${overCopy.toFixed(2)}`,
+    `Recording ${JOINTS} joints and ${FOLLOWERS} followers at 1 kHz: ${(100 * recordingShare).toFixed(2)} % of a core (asked: under 5 %),`,
+    `  p99 of a reading's handling ${addedP99Us.toFixed(0)} us more (asked: under 1,000); the slowest of all took ${worstUs.toFixed(0)} us`,
+    `A take of ${minutes.toFixed(1)} minutes, ${rows} rows, ${megabytes.toFixed(0)} MB; rows a second, and times a plain Arrow copy:`,
+    ...figures.rates.map(
+      ({ what, rowsPerS, overCopy, asked }) =>
+        `  ${what.padEnd(22)}${rowsPerS.toFixed(0).padStart(10)}   ${overCopy.toFixed(2)}${asked === null ? '' : `   asked: at most ${asked}, ${overCopy <= asked ? 'met' : 'not met'}`}`,
+    ),
+    'Peak memory of a process that does it with a short take and with one about ten times as long, MB:',
+    ...figures.memory.map(
+      ({ what, peakMegabytes: [short, long] }) =>
+        `  ${what.padEnd(22)}${short.toFixed(0).padStart(10)}   ${long.toFixed(0)}`,
     ),
   ].join('\n');
 }
