@@ -12,6 +12,7 @@ import { type Phase, player, type Player } from '../take/player.ts';
 import type { Take } from '../take/reader.ts';
 import type { Motion } from '../take/motion.ts';
 import { pacedReel } from '../take/paced-reel.ts';
+import { readingAhead } from '../take/read-ahead.ts';
 import { reel } from '../take/reel.ts';
 import type { Row } from '../take/row.ts';
 import { type Demand, leastStretch, stretchFor } from '../take/stretching.ts';
@@ -68,10 +69,11 @@ export async function playTake(name: string, options: PlayOptions, world: World,
     if (isTakeFault(score)) return refusedStatus(score, at.err);
     const paced = await paceFor(take, rig, score, options, at);
     if (paced !== null && 'status' in paced) return paced.status;
+    const ahead = readingAhead(take);
     const rows =
       paced === null
-        ? reel(take, { ...score, loopBlendS: loopBlendS(options) })
-        : pacedReel(paced.motion, paced.factors);
+        ? reel(ahead, { ...score, loopBlendS: loopBlendS(options) })
+        : pacedReel({ ...paced.motion, take: ahead }, paced.factors);
     const layered =
       options.layer === null
         ? null

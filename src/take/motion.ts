@@ -50,6 +50,7 @@ export function* samples(motion: Motion, followers: readonly number[]): Generato
       }
       yield sample;
     }
+    motion.take.fetch(motion.fromUs, motion.fromUs);
     if (motion.loopBlendS !== null && last.length > 0) yield* seam(last, first, motion.loopBlendS);
   } while (motion.loopBlendS !== null && last.length > 0);
 }

@@ -7,6 +7,7 @@ import { fileWindow } from './file-window.ts';
 import { bodyAt, frameAt, frameEnd } from './framing.ts';
 import { headerFrom, PROFILES_KEY, type TakeHeader } from './header.ts';
 import { type BatchPlace, indexOf } from './batch-index.ts';
+import { fetcher } from './read-ahead.ts';
 import { pageReader } from './page-reader.ts';
 import type { Row } from './row.ts';
 import { END_MARK } from './stream.ts';
@@ -29,6 +30,8 @@ export interface Take {
   readonly marks: readonly Mark[];
   /** Every row from the batch that holds `fromUs` on, in order, in a reused row; earlier rows of that batch come too. */
   readFrom(fromUs: number): Iterable<Row>;
+  /** Has the system bring this stretch into its memory without waiting for it, so that reading it is quick. */
+  fetch(fromUs: number, toUs: number): void;
   close(): void;
 }
 
@@ -41,6 +44,8 @@ const MARKS_MAX = 10_000;
 /** What a frame tells and its first stamps fit in here, so that opening reads little of a long take. */
 const INDEX_WINDOW_BYTES = 16 * 1024;
 const WINDOW_BYTES = 1024 * 1024;
+
+const FETCHED_BYTES_MAX = 16 * 1024 * 1024;
 
 /** Opens a take and judges every frame of it; a cut one opens with what is whole. */
 export function openTake(file: string): Take | TakeFault {
@@ -101,6 +106,7 @@ function judge(name: string, descriptor: number): Take | TakeFault {
     for (const row of rowsOf(offset, offset + 1, 0))
       if (row.name !== '' && marks.length < MARKS_MAX) marks.push({ name: row.name, tUs: row.tUs });
   damagedRows = 0;
+  const pages = fetcher(descriptor);
 
   return {
     name,
@@ -117,12 +123,25 @@ function judge(name: string, descriptor: number): Take | TakeFault {
     readFrom: (fromUs) => ({
       [Symbol.iterator]: () => rowsOf(placeFor(found.places, fromUs), found.endBytes, fromUs),
     }),
-    close: () => closeSync(descriptor),
+    fetch(fromUs, toUs) {
+      const from = placeFor(found.places, fromUs);
+      // Up to the place after the last one that is wanted.
+      const next = found.places[placesBefore(found.places, toUs)]?.offset ?? found.endBytes;
+      pages.fetch(from, Math.min(next, from + FETCHED_BYTES_MAX));
+    },
+    close() {
+      pages.end();
+      closeSync(descriptor);
+    },
   };
 }
 
 /** The last place that begins before `tUs`: rows at that very instant may stand at its end. */
 function placeFor(places: readonly BatchPlace[], tUs: number): number {
+  return places[Math.max(0, placesBefore(places, tUs) - 1)]?.offset ?? Number.POSITIVE_INFINITY;
+}
+
+function placesBefore(places: readonly BatchPlace[], tUs: number): number {
   let low = 0;
   let high = places.length;
   while (low < high) {
@@ -130,7 +149,7 @@ function placeFor(places: readonly BatchPlace[], tUs: number): number {
     if ((places[middle] as BatchPlace).firstUs < tUs) low = middle + 1;
     else high = middle;
   }
-  return places[Math.max(0, low - 1)]?.offset ?? Number.POSITIVE_INFINITY;
+  return low;
 }
 
 /** null where Arrow cannot make sense of it: damaged bytes make it throw errors of many kinds. */

@@ -15,13 +15,18 @@ export interface ReelOptions extends Stretch {
 export function* reel(take: Take, { fromUs, toUs, speed, loopBlendS }: ReelOptions): Generator<Row> {
   const lengthUs = Math.round((toUs - fromUs) / speed);
   let startUs = 0;
+  // Looked up before anything plays: later it would have to wait for the disk.
+  const seam =
+    loopBlendS === null
+      ? null
+      : { from: momentAt(speed, endOf(take, toUs)), to: momentAt(speed, startOf(take, fromUs)), seconds: loopBlendS };
   yield* stretched(take, { fromUs, toUs }, speed, startUs);
-  if (loopBlendS === null) return;
-  const from = momentAt(speed, endOf(take, toUs));
-  const to = momentAt(speed, startOf(take, fromUs));
+  if (seam === null) return;
+  const { from, to, seconds } = seam;
   for (;;) {
-    yield* blended(take.header, from, to, loopBlendS, startUs + lengthUs);
-    startUs += lengthUs + Math.round(loopBlendS * US_PER_S);
+    take.fetch(fromUs, fromUs);
+    yield* blended(take.header, from, to, seconds, startUs + lengthUs);
+    startUs += lengthUs + Math.round(seconds * US_PER_S);
     yield* stretched(take, { fromUs, toUs }, speed, startUs);
   }
 }

@@ -6,6 +6,7 @@ import fc from 'fast-check';
 import { describe, expect, it } from 'vitest';
 import { isTakeFault } from '../../src/take/fault.ts';
 import { openTake } from '../../src/take/reader.ts';
+import { readingAhead } from '../../src/take/read-ahead.ts';
 import { bytesOf, fileWriter, headerOf, opened, rowsOf, takesFolderForTests, TWO_ARMS } from './studio.ts';
 
 const folder = takesFolderForTests();
@@ -64,6 +65,27 @@ describe('a take', () => {
     expect(rows[0]?.tUs).toBeLessThanOrEqual(500_000);
     expect(rows[0]?.tUs).toBeGreaterThan(500_000 - 2 * ROWS * 4_000);
     expect(rows.at(-1)?.tUs).toBe(take.durationUs);
+  });
+
+  it('is brought into memory ahead of one who plays it, a second before it is due at the latest', async () => {
+    const take = opened(await written('ahead'));
+    const fetched: [number, number][] = [];
+    const watched = { ...take, fetch: (fromUs: number, toUs: number) => void fetched.push([fromUs, toUs]) };
+    let rows = 0;
+    for (const row of readingAhead(watched).readFrom(0)) {
+      const [fromUs, toUs] = fetched.at(-1) ?? [Number.NaN, Number.NaN];
+      expect(fromUs).toBeLessThanOrEqual(row.tUs);
+      expect(toUs).toBeGreaterThan(row.tUs + 1_000_000);
+      rows++;
+    }
+    expect(rows).toBe(take.rows);
+    // The stamps leap by two hours once; before and after it there are 0.8 s of rows each.
+    expect(fetched).toHaveLength(2);
+    // Reading a part that is fetched meanwhile, and closing, disturb nobody.
+    take.fetch(0, take.durationUs);
+    take.fetch(0, take.durationUs);
+    expect(rowsOf(take)).toHaveLength(rows);
+    take.close();
   });
 
   it('opens, cut at any byte, with all whole batches, and says that its end is missing', async () => {
