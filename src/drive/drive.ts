@@ -36,7 +36,7 @@ export function drive(plan: Plan, starts: readonly Start[], startUs: number): Dr
   const onBoard = Array.from(common.busy, (): FollowerStage[] => []);
   const followers = makeFollowers(plan.followers).map((arm, f) => {
     const start = starts[f] as Start;
-    return followerStage(arm, f, leader, common, share, start, onBoard[start.board] as FollowerStage[]);
+    return followerStage(arm, f, { lead: leader, common, share }, start, onBoard[start.board] as FollowerStage[]);
   });
   return {
     plan,

@@ -2,15 +2,16 @@ import { US_PER_MS, US_PER_S } from '../clock/clock.ts';
 import type { Follower } from '../follower/follower.ts';
 import { BLOCKS } from '../follower/reasons.ts';
 import type { FollowerSpec } from '../follower/spec.ts';
-import { authority, STAGGER_US } from './authority.ts';
-import { ALL, type DriveEvent, type TargetEvent } from './events.ts';
+import { type Aim, aim } from './aim.ts';
+import { type Authority, authority, STAGGER_US } from './authority.ts';
+import { ALL, type DriveEvent } from './events.ts';
 import { jog } from './jog.ts';
 import type { LeaderStage } from './leader-stage.ts';
 import { outbox, type CommandKind } from './outbox.ts';
 import type { Shared } from './shared.ts';
 import type { Shares } from './shares.ts';
 import { standing, type Standing } from './standing.ts';
-import { steering } from './steering.ts';
+import { type Steering, steering } from './steering.ts';
 
 /** How a follower stands when the drive is made. */
 export interface Start {
@@ -54,175 +55,197 @@ const EARLY_SHARE = 0.1;
 /** A longer pause than this many periods is not made up for. */
 const PERIODS_MAX = 2;
 
-/** @param siblings the stages made before on the same board; filled by `drive` as stages are made */
-export function followerStage(
-  arm: Follower,
-  index: number,
-  lead: LeaderStage,
-  common: Shared,
-  share: Shares,
-  start: Start,
-  siblings: FollowerStage[],
-): FollowerStage {
-  const { spec } = arm;
-  const is = standing();
-  const pending = outbox();
-  const jogging = jog(spec.servos.length);
-  const rule = authority(is, index, arm, lead, common, { share, pending, jogging, unasked: start.unasked });
-  const aim = {
-    atUs: Number.NEGATIVE_INFINITY,
-    anglesRad: arm.governor.x.slice(),
-    speedsRadS: new Float64Array(spec.joints.length),
-  };
-  const steer = steering(is, index, arm, lead, common, {
-    share,
-    jogging,
-    aim,
-    raise: rule.raise,
-    cutPower: rule.cutPower,
-  });
-  const { nowUs: now, dtS } = common;
+/** What all stages of one drive share. */
+export interface Company {
+  readonly lead: LeaderStage;
+  readonly common: Shared;
+  readonly share: Shares;
+}
 
-  const emit = (kind: CommandKind): true => {
-    self.kind = kind;
-    self.commands++;
-    common.taken[start.board] = 1;
-    return true;
-  };
+/** A class, because its few hot methods run for every follower at every event: closures of 64 stages are 64 of each. */
+class Stage implements FollowerStage {
+  readonly spec: FollowerSpec;
+  readonly index: number;
+  readonly board: number;
+  readonly arm: Follower;
+  readonly is: Standing = standing();
+  kind: CommandKind = 'move';
+  commands = 0;
+  readingAgeUs = Number.NaN;
+  readonly #lead: LeaderStage;
+  readonly #common: Shared;
+  readonly #siblings: FollowerStage[];
+  readonly #pending = outbox();
+  readonly #aim: Aim;
+  readonly #rule: Authority;
+  readonly #steer: Steering;
 
-  /** What is no number moves nothing. */
-  const takeAim = ({ tUs, anglesRad, speedsRadS }: TargetEvent): void => {
-    for (let j = 0; j < spec.joints.length; j++) {
-      if (!Number.isFinite(anglesRad[j]) || !Number.isFinite(speedsRadS[j])) continue;
-      aim.anglesRad[j] = anglesRad[j] as number;
-      aim.speedsRadS[j] = speedsRadS[j] as number;
-    }
-    aim.atUs = tUs;
-  };
+  constructor(arm: Follower, index: number, { lead, common, share }: Company, start: Start, siblings: FollowerStage[]) {
+    const { spec } = arm;
+    const { is } = this;
+    const pending = this.#pending;
+    const jogging = jog(spec.servos.length);
+    this.spec = spec;
+    this.index = index;
+    this.board = start.board;
+    this.arm = arm;
+    this.#lead = lead;
+    this.#common = common;
+    this.#siblings = siblings;
+    this.#aim = aim(arm.governor.x);
+    this.#rule = authority(is, index, arm, lead, common, { share, pending, jogging, unasked: start.unasked });
+    this.#steer = steering(is, index, arm, lead, common, { share, jogging, aim: this.#aim, rule: this.#rule });
+  }
 
-  const wake = (): boolean => {
-    if (!is.going || (now[0] as number) < is.nextPulseUs) return false;
-    arm.frame.pulsing++;
-    arm.aim();
-    // From this pulse, not from when it was due: a port that was blocked must not let two servos start at once.
-    is.nextPulseUs = (now[0] as number) + STAGGER_US;
-    is.lastUs = now[0] as number;
-    if (arm.frame.pulsing === spec.servos.length) {
-      is.pulsed = true;
-      rule.raise('awake');
-    }
-    return emit('move');
-  };
+  switching(): boolean {
+    return this.#pending.some;
+  }
 
-  /** A target of its own is awaited a little: a command made just before it came would be a period behind it. */
-  const periodNowUs = (): number => (lead.byTargets ? Math.round(spec.periodUs * (1 + EARLY_SHARE)) : spec.periodUs);
+  take(event: DriveEvent): boolean {
+    const { is } = this;
+    const { busy, taken } = this.#common;
+    const fresh = this.#hear(event) || this.#lead.fresh;
+    if (fresh) is.owed = true;
+    this.#rule.weigh();
+    // Several ports may become busy in one instant, and are told one by one: this board's own word may be yet to come.
+    if (event.kind === 'blocked') return false;
+    if (!is.present || busy[this.board] === 1 || taken[this.board] === 1) return false;
+    // What switches an arm off waits for nobody's motion.
+    if (this.#pending.some) return this.#emit(this.#pending.take());
+    if (this.#siblings.length > 1 && this.#mustYield()) return false;
+    if (is.state === 'waking') return this.#wake();
+    return is.pulsed && this.#move(fresh);
+  }
 
-  const move = (early: boolean): boolean => {
-    const sinceUs = (now[0] as number) - is.lastUs;
-    if (sinceUs < (early ? spec.periodUs * (1 - EARLY_SHARE) : periodNowUs())) return false;
-    if (!is.owed && !is.moving && sinceUs < KEEP_ALIVE_US) return false;
-    is.owed = false;
-    const gap = sinceUs > PERIODS_MAX * spec.periodUs;
-    // A jogged servo creeps: it neither needs braking nor is where its joint says.
-    if (gap && is.moving && is.state !== 'jogging') {
-      // It was on its way when its port stopped taking commands. Braking all the while is the one motion that is
-      // short, keeps the acceleration limit over the gap, and needs no leap afterwards.
-      if (sinceUs > lead.kernel.spec.timeoutUs) is.blocks |= BLOCKS.contact;
-      dtS[0] = sinceUs / US_PER_S;
-      steer.brake(dtS);
-      is.owed = true;
-    } else {
-      dtS[0] = (gap ? PERIODS_MAX * spec.periodUs : sinceUs) / US_PER_S;
-      steer.step(dtS);
-    }
-    if (arm.burden !== null) {
-      // The whole pause counts here: a still arm that is told where it is twice a second warms all the same.
-      dtS[0] = Math.min(sinceUs, KEEP_ALIVE_US) / US_PER_S;
-      arm.burden.bear(arm.governor.x, is.moving, dtS);
-    }
-    is.lastUs = now[0] as number;
-    self.readingAgeUs = (now[0] as number) - lead.lastUs;
-    return emit('move');
-  };
+  dueUs(): number {
+    const { is } = this;
+    if (!is.present || this.#common.busy[this.board] === 1) return Number.POSITIVE_INFINITY;
+    if (this.#pending.some) return this.#common.nowUs[0] as number;
+    if (is.state === 'waking') return is.going ? is.nextPulseUs : Number.POSITIVE_INFINITY;
+    if (!is.pulsed) return Number.POSITIVE_INFINITY;
+    return is.lastUs + (is.owed || is.moving ? this.#periodUs() : KEEP_ALIVE_US);
+  }
 
-  /** Where a board is too slow for its followers, one that is switched off goes first, then the one that has waited longest. */
-  const mustYield = (): boolean => {
-    const mine = self.dueUs();
-    for (const other of siblings) if (other !== self && (other.switching() || other.dueUs() < mine)) return true;
-    return false;
-  };
+  giveUp(): void {
+    this.#rule.giveUp();
+  }
 
   /** True when it is told where to be. */
-  const hear = (event: DriveEvent): boolean => {
+  #hear(event: DriveEvent): boolean {
     switch (event.kind) {
       case 'reading':
       case 'tick':
       case 'pose':
         return false;
       case 'target':
-        if (event.follower !== index) return false;
-        takeAim(event);
+        if (event.follower !== this.index) return false;
+        this.#aim.take(event);
         return true;
       case 'lead':
-        aim.anglesRad.set(arm.governor.x);
-        aim.speedsRadS.fill(0);
+        this.#aim.stay(this.arm.governor.x);
         return false;
       case 'key':
-        if (event.follower === ALL || event.follower === index) rule.key(event);
+        if (event.follower === ALL || event.follower === this.index) this.#rule.key(event);
         return false;
       case 'jog':
-        if (event.follower === index) rule.jog(event);
+        if (event.follower === this.index) this.#rule.jog(event);
         return false;
       default:
-        if (common.boardOf[event.follower] === start.board) rule.board(event);
+        if (this.#common.boardOf[event.follower] === this.board) this.#rule.board(event);
         return false;
     }
-  };
+  }
 
-  const self: { -readonly [K in keyof FollowerStage]: FollowerStage[K] } = {
-    spec,
-    index,
-    board: start.board,
-    arm,
-    is,
-    kind: 'move',
-    commands: 0,
-    readingAgeUs: Number.NaN,
-    switching: () => pending.some,
-    take(event) {
-      const fresh = hear(event) || lead.fresh;
-      if (fresh) is.owed = true;
-      rule.weigh();
-      // Several ports may become busy in one instant, and are told one by one: this board's own word may be yet to come.
-      if (event.kind === 'blocked') return false;
-      if (!is.present || common.busy[start.board] === 1 || common.taken[start.board] === 1) return false;
-      // What switches an arm off waits for nobody's motion.
-      if (pending.some) return emit(pending.take());
-      if (siblings.length > 1 && mustYield()) return false;
-      if (is.state === 'waking') return wake();
-      return is.pulsed && move(fresh);
-    },
-    dueUs() {
-      if (!is.present || common.busy[start.board] === 1) return Number.POSITIVE_INFINITY;
-      if (pending.some) return now[0] as number;
-      if (is.state === 'waking') return is.going ? is.nextPulseUs : Number.POSITIVE_INFINITY;
-      if (!is.pulsed) return Number.POSITIVE_INFINITY;
-      return is.lastUs + (is.owed || is.moving ? periodNowUs() : KEEP_ALIVE_US);
-    },
-    giveUp: rule.giveUp,
-  };
+  #emit(kind: CommandKind): true {
+    this.kind = kind;
+    this.commands++;
+    this.#common.taken[this.board] = 1;
+    return true;
+  }
 
+  #wake(): boolean {
+    const { is, arm } = this;
+    const nowUs = this.#common.nowUs[0] as number;
+    if (!is.going || nowUs < is.nextPulseUs) return false;
+    arm.frame.pulsing++;
+    arm.aim();
+    // From this pulse, not from when it was due: a port that was blocked must not let two servos start at once.
+    is.nextPulseUs = nowUs + STAGGER_US;
+    is.lastUs = nowUs;
+    if (arm.frame.pulsing === this.spec.servos.length) {
+      is.pulsed = true;
+      this.#rule.raise('awake');
+    }
+    return this.#emit('move');
+  }
+
+  /** A target of its own is awaited a little: a command made just before it came would be a period behind it. */
+  #periodUs(): number {
+    const { periodUs } = this.spec;
+    return this.#lead.byTargets ? Math.round(periodUs * (1 + EARLY_SHARE)) : periodUs;
+  }
+
+  #move(early: boolean): boolean {
+    const { is, arm } = this;
+    const { nowUs, dtS } = this.#common;
+    const { periodUs } = this.spec;
+    const sinceUs = (nowUs[0] as number) - is.lastUs;
+    if (sinceUs < (early ? periodUs * (1 - EARLY_SHARE) : this.#periodUs())) return false;
+    if (!is.owed && !is.moving && sinceUs < KEEP_ALIVE_US) return false;
+    is.owed = false;
+    const gap = sinceUs > PERIODS_MAX * periodUs;
+    // A jogged servo creeps: it neither needs braking nor is where its joint says.
+    if (gap && is.moving && is.state !== 'jogging') {
+      // It was on its way when its port stopped taking commands. Braking all the while is the one motion that is
+      // short, keeps the acceleration limit over the gap, and needs no leap afterwards.
+      if (sinceUs > this.#lead.kernel.spec.timeoutUs) is.blocks |= BLOCKS.contact;
+      dtS[0] = sinceUs / US_PER_S;
+      this.#steer.brake(dtS);
+      is.owed = true;
+    } else {
+      dtS[0] = (gap ? PERIODS_MAX * periodUs : sinceUs) / US_PER_S;
+      this.#steer.step(dtS);
+    }
+    if (arm.burden !== null) {
+      // The whole pause counts here: a still arm that is told where it is twice a second warms all the same.
+      dtS[0] = Math.min(sinceUs, KEEP_ALIVE_US) / US_PER_S;
+      arm.burden.bear(arm.governor.x, is.moving, dtS);
+    }
+    is.lastUs = nowUs[0] as number;
+    this.readingAgeUs = (nowUs[0] as number) - this.#lead.lastUs;
+    return this.#emit('move');
+  }
+
+  /** Where a board is too slow for its followers, one that is switched off goes first, then the one that has waited longest. */
+  #mustYield(): boolean {
+    const mine = this.dueUs();
+    for (const other of this.#siblings) if (other !== this && (other.switching() || other.dueUs() < mine)) return true;
+    return false;
+  }
+}
+
+/** @param siblings the stages made before on the same board; filled by `drive` as stages are made */
+export function followerStage(
+  arm: Follower,
+  index: number,
+  company: Company,
+  start: Start,
+  siblings: FollowerStage[],
+): FollowerStage {
+  const { spec } = arm;
+  const stage = new Stage(arm, index, company, start, siblings);
   if (start.poseRad !== null) arm.place(start.poseRad);
   arm.aim();
   if (start.awake) {
+    const { is } = stage;
     is.present = true;
     is.pulsed = true;
     is.state = 'joining';
     is.meeting = spec.joinMeet === 'move';
-    is.lastUs = (now[0] as number) - spec.periodUs;
+    is.lastUs = (company.common.nowUs[0] as number) - spec.periodUs;
     arm.frame.pulsing = spec.servos.length;
-    share.begin(index);
+    company.share.begin(index);
   }
-  siblings.push(self);
-  return self;
+  siblings.push(stage);
+  return stage;
 }

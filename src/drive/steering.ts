@@ -1,6 +1,7 @@
 import { US_PER_S } from '../clock/clock.ts';
 import type { Follower } from '../follower/follower.ts';
-import type { StateEvent } from '../follower/states.ts';
+import type { Aim } from './aim.ts';
+import type { Authority } from './authority.ts';
 import type { Jog } from './jog.ts';
 import type { LeaderStage } from './leader-stage.ts';
 import type { Shared } from './shared.ts';
@@ -20,105 +21,139 @@ const MET_RAD = (1 * Math.PI) / 180;
 const AHEAD_PERIODS = 2;
 const WAIT_RAD = (3 * Math.PI) / 180;
 
+interface Parts {
+  readonly share: Shares;
+  readonly jogging: Jog;
+  readonly aim: Aim;
+  readonly rule: Authority;
+}
+
+class ByState implements Steering {
+  readonly #is: Standing;
+  readonly #index: number;
+  readonly #arm: Follower;
+  readonly #lead: LeaderStage;
+  readonly #common: Shared;
+  readonly #parts: Parts;
+  readonly #standing: Float64Array;
+  readonly #ahead: Float64Array;
+
+  constructor(is: Standing, index: number, arm: Follower, lead: LeaderStage, common: Shared, parts: Parts) {
+    this.#is = is;
+    this.#index = index;
+    this.#arm = arm;
+    this.#lead = lead;
+    this.#common = common;
+    this.#parts = parts;
+    this.#standing = new Float64Array(parts.aim.speedsRadS.length);
+    this.#ahead = new Float64Array(parts.aim.speedsRadS.length);
+  }
+
+  step(dtS: Float64Array): void {
+    const is = this.#is;
+    const arm = this.#arm;
+    const { share } = this.#parts;
+    switch (is.state) {
+      case 'following':
+        this.#wish();
+        share.following(this.#index);
+        arm.limitSpeed(this.#common.share, false);
+        arm.step(dtS);
+        break;
+      case 'joining':
+        this.#join(dtS);
+        break;
+      case 'parking':
+        arm.wantRest();
+        share.parking(this.#index);
+        arm.limitSpeed(this.#common.share, true);
+        arm.step(dtS);
+        break;
+      case 'jogging':
+        this.#jog(dtS);
+        return;
+      default:
+        arm.brake(dtS);
+    }
+    this.#settle();
+  }
+
+  brake(dtS: Float64Array): void {
+    this.#arm.brake(dtS);
+    this.#settle();
+  }
+
+  /** On its way from the last target the take goes on as fast as it then did, for as long as the next one may take. */
+  #pursue(): void {
+    const is = this.#is;
+    const { aim } = this.#parts;
+    const ahead = this.#ahead;
+    if (is.state !== 'following') {
+      this.#arm.pursue(aim.anglesRad, this.#standing, is.clutched);
+      return;
+    }
+    const sinceUs = (this.#common.nowUs[0] as number) - aim.atUs;
+    const aheadS = Math.min(sinceUs, AHEAD_PERIODS * this.#arm.spec.periodUs) / US_PER_S;
+    for (let j = 0; j < ahead.length; j++)
+      ahead[j] = (aim.anglesRad[j] as number) + aheadS * (aim.speedsRadS[j] as number);
+    this.#arm.pursue(ahead, aim.speedsRadS, is.clutched);
+  }
+
+  #wish(): void {
+    const is = this.#is;
+    const lead = this.#lead;
+    if (lead.byTargets) this.#pursue();
+    else if (lead.speedRadS !== null && is.state === 'following' && !is.clutched)
+      this.#arm.match(lead.poseRad, lead.speedRadS);
+    else this.#arm.want(lead.poseRad, is.clutched);
+  }
+
+  #join(dtS: Float64Array): void {
+    const is = this.#is;
+    const arm = this.#arm;
+    const { share, rule } = this.#parts;
+    this.#wish();
+    is.meeting ||= arm.passed(WAIT_RAD);
+    if (!is.meeting) {
+      arm.brake(dtS);
+      return;
+    }
+    share.joining(this.#index);
+    arm.limitSpeed(this.#common.share, true);
+    arm.step(dtS);
+    // A leader that never stands is met once the arm, with patience gone, is as near as its limits let it follow.
+    if (arm.near(MET_RAD, share.impatient(this.#index))) rule.raise('met');
+  }
+
+  #jog(dtS: Float64Array): void {
+    const { jogging, rule } = this.#parts;
+    this.#arm.aim();
+    const going = jogging.step(dtS, this.#arm.frame.pulsesUs);
+    this.#is.moving = jogging.moving;
+    if (!going) rule.raise('jogged');
+  }
+
+  /** What coming to a stand entails. */
+  #settle(): void {
+    const is = this.#is;
+    const arm = this.#arm;
+    const { rule } = this.#parts;
+    is.moving = !arm.governor.still();
+    if (is.moving) return;
+    if (is.state === 'parking' && arm.atRest()) {
+      rule.raise('rested');
+      if (is.limpAfterPark) rule.raise('limp');
+    } else if (is.state === 'stopped' && arm.spec.stopCategory === 1 && is.pulsed) rule.cutPower();
+  }
+}
+
 export function steering(
   is: Standing,
   index: number,
   arm: Follower,
   lead: LeaderStage,
   common: Shared,
-  parts: {
-    readonly share: Shares;
-    readonly jogging: Jog;
-    /** What the last `target` event said. */
-    readonly aim: { readonly atUs: number; readonly anglesRad: Float64Array; readonly speedsRadS: Float64Array };
-    readonly raise: (event: StateEvent) => void;
-    readonly cutPower: () => void;
-  },
+  parts: Parts,
 ): Steering {
-  const { share, jogging, raise, aim } = parts;
-  const standing = new Float64Array(aim.speedsRadS.length);
-  const ahead = new Float64Array(aim.speedsRadS.length);
-  const now = common.nowUs;
-
-  /** On its way from the last target the take goes on as fast as it then did, for as long as the next one may take. */
-  const pursue = (): void => {
-    if (is.state !== 'following') {
-      arm.pursue(aim.anglesRad, standing, is.clutched);
-      return;
-    }
-    const aheadS = Math.min((now[0] as number) - aim.atUs, AHEAD_PERIODS * arm.spec.periodUs) / US_PER_S;
-    for (let j = 0; j < ahead.length; j++)
-      ahead[j] = (aim.anglesRad[j] as number) + aheadS * (aim.speedsRadS[j] as number);
-    arm.pursue(ahead, aim.speedsRadS, is.clutched);
-  };
-
-  const wish = (): void => {
-    if (lead.byTargets) pursue();
-    else if (lead.speedRadS !== null && is.state === 'following' && !is.clutched)
-      arm.match(lead.poseRad, lead.speedRadS);
-    else arm.want(lead.poseRad, is.clutched);
-  };
-
-  const join = (dtS: Float64Array): void => {
-    wish();
-    is.meeting ||= arm.passed(WAIT_RAD);
-    if (!is.meeting) {
-      arm.brake(dtS);
-      return;
-    }
-    share.joining(index);
-    arm.limitSpeed(common.share, true);
-    arm.step(dtS);
-    // A leader that never stands is met once the arm, with patience gone, is as near as its limits let it follow.
-    if (arm.near(MET_RAD, share.impatient(index))) raise('met');
-  };
-
-  const settle = (): void => {
-    if (is.moving) return;
-    if (is.state === 'parking' && arm.atRest()) {
-      raise('rested');
-      if (is.limpAfterPark) raise('limp');
-    } else if (is.state === 'stopped' && arm.spec.stopCategory === 1 && is.pulsed) parts.cutPower();
-  };
-
-  const brake = (dtS: Float64Array): void => {
-    arm.brake(dtS);
-    is.moving = !arm.governor.still();
-    settle();
-  };
-
-  return {
-    brake,
-    step(dtS) {
-      switch (is.state) {
-        case 'following':
-          wish();
-          share.following(index);
-          arm.limitSpeed(common.share, false);
-          arm.step(dtS);
-          break;
-        case 'joining':
-          join(dtS);
-          break;
-        case 'parking':
-          arm.wantRest();
-          share.parking(index);
-          arm.limitSpeed(common.share, true);
-          arm.step(dtS);
-          break;
-        case 'jogging': {
-          arm.aim();
-          const going = jogging.step(dtS, arm.frame.pulsesUs);
-          is.moving = jogging.moving;
-          if (!going) raise('jogged');
-          return;
-        }
-        default:
-          brake(dtS);
-          return;
-      }
-      is.moving = !arm.governor.still();
-      settle();
-    },
-  };
+  return new ByState(is, index, arm, lead, common, parts);
 }
