@@ -21,6 +21,8 @@ export interface Company {
   readonly live: Live;
   readonly clock: Clock;
   say(sentence: Sentence): void;
+  /** Says it, and again when the screen has been given back. */
+  sayLast(sentence: Sentence): void;
   parkAndLeave(): void;
   leave(): void;
 }

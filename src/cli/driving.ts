@@ -73,8 +73,8 @@ export async function driving(options: DrivingOptions, world: World): Promise<nu
     leave: over.because,
     companion: (key) => companion?.key(key),
   });
-  const { say } = show;
-  companion?.begin({ live, clock, say, parkAndLeave: hand.parkAndLeave, leave: () => over.because('over') });
+  const { say, sayLast } = show;
+  companion?.begin({ live, clock, say, sayLast, parkAndLeave: hand.parkAndLeave, leave: () => over.because('over') });
   const cancels = [tellStates(live, show), listenTo(world, hand, show, over, moves)];
   openKeyboard(world, rig.plan.followers.length, hand, show, over);
   const time = { isUp: false };

@@ -67,22 +67,23 @@ export function smoothTake(
 
 export function compareTakes(
   names: readonly [string, string],
-  options: { readonly takes: string | undefined; readonly json: boolean },
+  options: { readonly takes: string | undefined; readonly json: boolean; readonly timed: boolean },
   world: TakeWorld,
 ): Promise<number> {
   return withTakes(world, options.takes, names, async ([a, b]) => {
     if (a === undefined || b === undefined) return 2;
-    const compared = await worked(compare(a, b), world);
+    const compared = await worked(compare(a, b, options.timed), world);
     if ('status' in compared) return compared.status;
-    world.out.write(options.json ? `${JSON.stringify(compared.done)}\n` : comparison(compared.done));
+    world.out.write(options.json ? `${JSON.stringify(compared.done)}\n` : comparison(compared.done, options.timed));
     return 0;
   });
 }
 
-function comparison({ a, b, joints, tips, worst_shift_s, length_ratio }: Comparison): string {
+function comparison({ a, b, joints, tips, worst_shift_s, length_ratio }: Comparison, timed: boolean): string {
   const shift = `${Math.abs(worst_shift_s).toFixed(2)} s ${worst_shift_s < 0 ? 'behind' : 'ahead'}`;
+  const laid = timed ? 'at the same instants' : `laid over each other in time, ${shift} at worst`;
   return [
-    `${b} laid over ${a} in time: ${shift} at worst, ${length_ratio.toFixed(3)} times as long`,
+    `${b} beside ${a}, ${laid}; ${length_ratio.toFixed(3)} times as long`,
     ...joints.map(
       ({ joint, rms_deg, worst_deg }) =>
         `  ${joint.padEnd(20)} ${rms_deg.toFixed(2)} deg rms, ${worst_deg.toFixed(2)} deg at worst`,

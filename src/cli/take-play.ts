@@ -206,6 +206,7 @@ function playing(
 ): Companion {
   let company: Company | null = null;
   let running: Player | null = null;
+  let begun = false;
   const { layer } = options;
   // On a time of its own each follower has commands of its own, whoever led them.
   const own = options.weight || options.keepLimits ? ownCommands(rig) : null;
@@ -224,7 +225,9 @@ function playing(
       case 'counting':
         return say(`${take.name}: begins in ${Math.ceil(options.countInUs / US_PER_S)} s`);
       case 'playing':
-        if (layer !== null) recorded?.start(layer.as, made);
+        // It goes on while the hand leads and the take waits.
+        if (layer !== null && !begun) recorded?.start(layer.as, made);
+        begun = true;
         return say(`${take.name}: plays`);
       case 'handed':
         return say('the hand leads; o gives back to the take');
@@ -246,6 +249,7 @@ function playing(
         posed: score.posed,
         countInUs: options.countInUs,
         changed,
+        passed: (mark) => recorded?.mark(mark),
       });
       changed('easing');
     },

@@ -39,6 +39,8 @@ export interface Recording extends Companion {
   /** Begins now under a name; a fault has been said. */
   start(name: string, made: Made): void;
   stop(): void;
+  /** Marks this moment under a name. */
+  mark(name: string): void;
 }
 
 /** Less room than this and no recording begins; a running one ends while the disk can still take its end. */
@@ -154,9 +156,12 @@ export function recording(
     ending = begun.end().then((fault) => {
       const { tUs, rows, marks: count } = begun.is;
       const length = `${(tUs / US_PER_S).toFixed(1)} s, ${rows} rows, ${count} ${count === 1 ? 'mark' : 'marks'}`;
-      if (fault === null) return tell(`${name}: ${length}`);
-      isWell = false;
-      tell(`${takeSentence(fault)} (${length})`, 'care');
+      if (fault !== null) isWell = false;
+      company?.sayLast(
+        fault === null
+          ? { text: `recorded ${name}: ${length}, in ${folder}`, weight: 'note' }
+          : { text: `${takeSentence(fault)} (${length})`, weight: 'care' },
+      );
     });
   };
 
@@ -225,6 +230,10 @@ export function recording(
     },
     start,
     stop,
+    mark(name) {
+      running?.recorder.mark(name);
+      company?.live.key('mark');
+    },
     async end() {
       cancelCount();
       stop();

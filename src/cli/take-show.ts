@@ -51,7 +51,9 @@ export async function listTakes({ takes, json }: ListOptions, world: TakeWorld):
     const made = one.parents.length === 0 ? '' : `  ${one.made_by} of ${one.parents.join(' and ')}`;
     const facts = `${one.duration_s.toFixed(1).padStart(8)} s  ${`${one.rows}`.padStart(8)} rows  ${size(one.bytes).padStart(9)}`;
     const cut = one.whole ? '' : '  cut off';
-    world.out.write(`${one.take.padEnd(width)}  ${facts}  ${one.rig}  ${one.marks} marks${made}${cut}\n`);
+    world.out.write(
+      `${one.take.padEnd(width)}  ${facts}  ${one.rig}  ${one.marks} ${one.marks === 1 ? 'mark' : 'marks'}${made}${cut}\n`,
+    );
   }
   return 0;
 }
@@ -138,7 +140,7 @@ function describeFollower(arm: FollowerSummary): readonly string[] {
         .slice(0, SPANS_SHOWN)
         .map(
           ({ by, from_s, to_s }) =>
-            `      ${by === 'range' ? 'clipped by its range' : `held back by ${by}`} ${span(from_s, to_s)}`,
+            `      ${by === 'range' ? 'clipped by its range' : `held back by ${by.replace('_', ' ')}`} ${span(from_s, to_s)}`,
         ),
     ]),
   ];

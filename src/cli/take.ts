@@ -3,7 +3,7 @@ import type { CommandUnknownOpts } from '@commander-js/extra-typings';
 import { durationOption } from './options.ts';
 import type { PlayOptions } from './take-play.ts';
 import { realTakeWorld, type TakeWorld } from './take-world.ts';
-import { realWorld } from './world.ts';
+import { realWorld, type World } from './world.ts';
 
 const EXPLAINED = `
 A take is one file of the takes folder, NAME.arrows: an Arrow stream that any Arrow reader opens. Takes live
@@ -13,7 +13,14 @@ written over: each edit makes a new take that remembers its parents.
 Moments are marks, or times such as 2.5s, 500ms or -1s (from the end).`;
 
 /** `eidograph take …`: each subcommand loads what it needs, so that the others start without it. */
-export function takeCommand(world: () => TakeWorld = realTakeWorld): CommandUnknownOpts {
+export function takeCommand(
+  world: () => TakeWorld = realTakeWorld,
+  stage: () => World = realWorld,
+): CommandUnknownOpts {
+  const play = async (name: string, options: PlayOptions): Promise<number> => {
+    const { playTake } = await import('./take-play.ts');
+    return playTake(name, options, stage(), world());
+  };
   const take = new Command('take')
     .description('list, show, play, edit, compare and export recordings')
     .addHelpText('after', EXPLAINED);
@@ -79,10 +86,12 @@ export function takeCommand(world: () => TakeWorld = realTakeWorld): CommandUnkn
     folder(new Command('compare').description('lay one take over another in time, and tell how far they differ'))
       .argument('<a>')
       .argument('<b>')
+      .option('--timed', 'at the same instants, rather than laid over each other in time', false)
       .option('--json', 'print it as JSON', false)
       .action(async (a, b, options) => {
         const { compareTakes } = await import('./take-edit.ts');
-        process.exitCode = await compareTakes([a, b], { json: options.json, takes: options.takes }, world());
+        const { json, takes, timed } = options;
+        process.exitCode = await compareTakes([a, b], { json, takes, timed }, world());
       }),
   );
   take.addCommand(
@@ -167,11 +176,6 @@ function playOptions(options: ReturnType<ReturnType<typeof played>['opts']>): Sh
     join: join === true,
     json: json === true,
   };
-}
-
-async function play(name: string, options: PlayOptions): Promise<number> {
-  const { playTake } = await import('./take-play.ts');
-  return playTake(name, options, realWorld(), realTakeWorld());
 }
 
 function folder<A extends unknown[]>(command: Command<A>): Command<A, { takes?: string | undefined }> {

@@ -3,6 +3,7 @@ import type { Readable, Writable } from 'node:stream';
 import { pipeline } from 'node:stream/promises';
 import { Command } from '@commander-js/extra-typings';
 import type { CommandUnknownOpts } from '@commander-js/extra-typings';
+import type { Stamped } from '../bridge/source.ts';
 import { type Trace, trace } from '../bridge/trace.ts';
 import { US_PER_S } from '../clock/clock.ts';
 import type { CompiledRig } from '../rig/compiled.ts';
@@ -40,33 +41,33 @@ function tracing(
   input: AsyncIterable<string>,
   csv: ReadingsCsv,
 ): AsyncGenerator<string> {
-  const pieces = async function* (): AsyncGenerator<Iterable<TimedCounts>> {
+  const pieces = async function* (): AsyncGenerator<Iterable<Stamped>> {
     for await (const text of input) {
-      yield csv.push(text);
+      yield asEvents(csv.push(text));
       if (csv.hopeless) return;
     }
-    yield csv.end();
+    yield asEvents(csv.end());
   };
   return traced(rig, from, pieces(), () => csv.mistakes.length === 0);
 }
 
-/** One reading, reused. */
-export interface TimedCounts {
-  readonly tUs: number;
-  readonly counts: Float64Array;
+/** An event of its own for each: what is pushed may be stamped anew. */
+function* asEvents(readings: Iterable<{ readonly tUs: number; readonly counts: Float64Array }>): Generator<Stamped> {
+  for (const { tUs, counts } of readings) yield { kind: 'reading', tUs, counts };
 }
 
 async function* traced(
   rig: CompiledRig,
   from: readonly (Float64Array | null)[],
-  pieces: AsyncIterable<Iterable<TimedCounts>> | Iterable<Iterable<TimedCounts>>,
+  pieces: AsyncIterable<Iterable<Stamped>> | Iterable<Iterable<Stamped>>,
   isSound: () => boolean,
 ): AsyncGenerator<string> {
   const commands = commandsCsv(rig);
   let run: Trace | null = null;
   let nowUs = 0;
-  for await (const readings of pieces) {
-    for (const { tUs, counts } of readings) {
+  for await (const events of pieces) {
+    for (const event of events) {
+      const { tUs } = event;
       if (run === null) nowUs = tUs;
       run ??= trace(rig, from, tUs, commands.take);
       for (; tUs - nowUs > STEP_US; nowUs += STEP_US) {
@@ -74,7 +75,7 @@ async function* traced(
         if (commands.length > PORTION_CHARACTERS) yield commands.rows();
       }
       nowUs = tUs;
-      run.push({ kind: 'reading', tUs, counts });
+      run.push(event);
       if (commands.length > PORTION_CHARACTERS) yield commands.rows();
     }
   }
@@ -109,7 +110,7 @@ export async function traceFiles(file: string, options: TraceOptions, world: Tra
   return refused(world, [...csv.mistakes.map((mistake) => csvMistakeLine(named, mistake)), ...more]);
 }
 
-/** A take's readings through the present profiles; a rig's input that the take does not have is silent. */
+/** What moved the arms of a take, through the present profiles; a rig's input that the take does not have is silent. */
 async function traceTake(
   rig: CompiledRig,
   from: readonly (Float64Array | null)[],
@@ -117,16 +118,16 @@ async function traceTake(
   out: string | undefined,
   world: TraceWorld,
 ): Promise<number> {
-  const { openTake, readingsOf, takeSentence } = await import('../take/readings.ts');
+  const { openTake, takeSentence, tellingsOf } = await import('../take/readings.ts');
   const take = openTake(file);
   if ('code' in take) return refused(world, [takeSentence(take)]);
   const names = rig.boards.find(({ leads }) => leads)?.plan.inputs?.names ?? [];
-  const readings = readingsOf(take, names);
-  if ('code' in readings) return refused(world, [takeSentence(readings)]);
+  const told = tellingsOf(take, rig.plan, names);
+  if ('code' in told) return refused(world, [takeSentence(told)]);
   const output = out === undefined ? world.stdout : createWriteStream(out);
   try {
     await pipeline(
-      traced(rig, from, [readings], () => true),
+      traced(rig, from, [told], () => true),
       output,
       { end: out !== undefined },
     );

@@ -29,7 +29,8 @@ const BAND = 0.25;
 const DEG = 180 / Math.PI;
 const MM = 1_000;
 
-export function* compare(a: Take, b: Take): Work<Comparison> {
+/** @param timed at the same instants, rather than laid over each other in time */
+export function* compare(a: Take, b: Take, timed = false): Work<Comparison> {
   const tracks = commonTracks(a, b);
   if (tracks.length === 0) return takeFault('TAKE_UNFIT', b.name, `it has no joint in common with ${a.name}`);
   const longestS = Math.max(a.durationUs, b.durationUs) / US_PER_S;
@@ -48,12 +49,14 @@ export function* compare(a: Take, b: Take): Work<Comparison> {
 
   // A demonstration is what the hand did: where both takes know that, followers only follow.
   const led = tracks.filter(({ follower }) => follower[0] < 0).length;
-  const { path } = warp(columnsOf(left, width, led), columnsOf(right, width, led), led === 0 ? width : led, BAND);
+  const path = timed
+    ? inStep(Math.min(left.length, right.length) / width)
+    : warp(columnsOf(left, width, led), columnsOf(right, width, led), led === 0 ? width : led, BAND).path;
   yield 0.9;
   const squares = new Float64Array(width);
   const worst = new Float64Array(width);
   let shift = 0;
-  const stretch = right.length / left.length;
+  const stretch = timed ? 1 : right.length / left.length;
   for (let k = 0; k < path.length; k += 2) {
     const i = path[k] as number;
     const j = path[k + 1] as number;
@@ -79,6 +82,11 @@ export function* compare(a: Take, b: Take): Work<Comparison> {
     })),
     tips: tipsOf(a, b, tracks, left, right, path),
   };
+}
+
+/** Each sample with the one of its own instant. */
+function inStep(samples: number): Int32Array {
+  return Int32Array.from({ length: 2 * samples }, (_, k) => k >> 1);
 }
 
 /** The first `count` columns of a table; all of them where that is none. */

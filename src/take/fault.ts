@@ -20,6 +20,7 @@ export const TAKE_REMEDIES = {
   TAKE_DISK: 'look to the disk, or name another takes folder with --takes; what was written is kept',
   TAKE_DISK_SLOW: 'record to a faster disk with --takes; what was written is kept',
   TAKE_JOINTS: 'say which joint is which with --map old=new',
+  TAKE_COMMANDED: 'play it with --as-commands; only its followers can be had again',
   TAKE_RANGE: 'choose times or marks inside the take, the earlier one first',
   TAKE_MARK: 'name one of its marks, or a time such as 2.5s',
   TAKE_COLUMN: 'name columns as "eidograph take export" writes them, with * for any part, such as wren.*',

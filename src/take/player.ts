@@ -20,6 +20,8 @@ export interface PlayerOptions {
   /** Count-in once every arm stands where the take begins, microseconds. */
   readonly countInUs: number;
   readonly changed: (phase: Phase) => void;
+  /** A mark of the take has been passed. */
+  readonly passed?: (mark: string) => void;
 }
 
 /**
@@ -171,6 +173,7 @@ export function player(stage: Stage, clock: Clock, rows: Iterator<Row>, options:
     while (next !== null && beganUs + next.tUs <= nowUs) {
       const dueUs = beganUs + next.tUs;
       is.atUs = next.tUs;
+      if (next.name !== '') options.passed?.(next.name);
       if (read(next)) {
         speak(dueUs);
         late.add(clock.nowUs() - dueUs);

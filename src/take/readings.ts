@@ -1,3 +1,6 @@
+import type { DriveEvent } from '../drive/events.ts';
+import type { Plan } from '../drive/plan.ts';
+import { castLeader } from './cast.ts';
 import { takeFault, type TakeFault } from './fault.ts';
 import type { Take } from './reader.ts';
 import { EVENT_CODES } from './row.ts';
@@ -5,28 +8,60 @@ import { EVENT_CODES } from './row.ts';
 export { takeSentence } from './fault.ts';
 export { openTake } from './reader.ts';
 
+/** An event of the drive with its stamp, reused. */
+type Told = DriveEvent & { tUs: number };
+
 /**
- * The readings of a take as another board would have given them, in counts.
+ * What moved the arms of a take, as events for another rig: its readings, in counts as that rig's leader board would have
+ * given them. Where a take led, or the poses were made up afterwards, counts tell only what the hand did meanwhile: then
+ * every pose is told as it was recorded, and the readings for their buttons alone.
  * @param names of that board's inputs, in its order; one that the take does not have is NaN throughout
  */
-export function readingsOf(
-  take: Take,
-  names: readonly string[],
-): Iterable<{ readonly tUs: number; readonly counts: Float64Array }> | TakeFault {
-  const places = names.map((name) => take.header.leader.inputs.indexOf(name));
+export function tellingsOf(take: Take, plan: Plan, names: readonly string[]): Iterable<Told> | TakeFault {
+  const { inputs } = take.header.leader;
+  const places = names.map((name) => inputs.indexOf(name));
   if (places.every((place) => place < 0))
+    return takeFault('TAKE_JOINTS', take.name, `it has no input of the leader's, only ${inputs.join(', ')}`);
+  const by = ledBy(take);
+  if (by === 'commands')
     return takeFault(
-      'TAKE_JOINTS',
+      'TAKE_COMMANDED',
       take.name,
-      `it has no input of the leader's, only ${take.header.leader.inputs.join(', ')}`,
+      'its arms were led by commands, of which no reading and no pose tells',
     );
-  const counts = new Float64Array(names.length);
-  const readings = function* (): Generator<{ readonly tUs: number; readonly counts: Float64Array }> {
-    for (const row of take.readFrom(0)) {
-      if (row.event !== EVENT_CODES.reading) continue;
-      for (let i = 0; i < places.length; i++) counts[i] = row.counts[places[i] as number] ?? Number.NaN;
-      yield { tUs: row.tUs, counts };
+  const cast = by === 'hand' ? [] : castLeader(take, plan, new Map());
+  return 'code' in cast ? cast : { [Symbol.iterator]: () => tellings(take, places, cast) };
+}
+
+/** @param cast places of the leader's joints in the take where its poses are told; empty: readings are */
+function* tellings(take: Take, places: readonly number[], cast: readonly number[]): Generator<Told> {
+  const reading = { kind: 'reading' as const, tUs: 0, counts: new Float64Array(places.length) };
+  const pose = { kind: 'pose' as const, tUs: 0, poseRad: new Float64Array(cast.length) };
+  let isLed = cast.length === 0;
+  for (const row of take.readFrom(0)) {
+    const isReading = row.event === EVENT_CODES.reading;
+    if (!isLed) yield { kind: 'lead', tUs: row.tUs, posed: new Uint8Array(cast.length).fill(1), targets: false };
+    isLed = true;
+    if (isReading) {
+      reading.tUs = row.tUs;
+      for (let i = 0; i < places.length; i++) reading.counts[i] = row.counts[places[i] as number] ?? Number.NaN;
+      yield reading;
     }
-  };
-  return { [Symbol.iterator]: readings };
+    if (cast.length === 0 || !(isReading || row.event === EVENT_CODES.pose || row.event === EVENT_CODES.blend))
+      continue;
+    pose.tUs = row.tUs;
+    for (let j = 0; j < cast.length; j++) pose.poseRad[j] = row.poseRad[cast[j] as number] as number;
+    yield pose;
+  }
+}
+
+/** Who moved the arms of a take. */
+function ledBy(take: Take): 'hand' | 'poses' | 'commands' {
+  const { by } = take.header.made;
+  let found: 'hand' | 'poses' = by === 'smooth' || by === 'splice' || by === 'layer' ? 'poses' : 'hand';
+  for (const { event } of take.readFrom(0)) {
+    if (event === EVENT_CODES.target) return 'commands';
+    if (event === EVENT_CODES.pose || event === EVENT_CODES.blend) found = 'poses';
+  }
+  return found;
 }

@@ -1,5 +1,12 @@
 import { describe, expect, it } from 'vitest';
-import { chosenFollowers, durationOption, logLevelOption, namesOption, paceOption } from '../../src/cli/options.ts';
+import {
+  chosenFollowers,
+  durationOption,
+  logLevelOption,
+  marksOption,
+  namesOption,
+  paceOption,
+} from '../../src/cli/options.ts';
 
 describe('A pace', () => {
   it.each([
@@ -30,6 +37,17 @@ describe('A time', () => {
 
   it.each(['10', '0s', '-1s', '1d', '', '9999h'])('cannot be %j', (text) => {
     expect(() => durationOption(text)).toThrow('10s');
+  });
+});
+
+describe('Names of marks', () => {
+  it('come with commas, in several options, or both, and may have blanks inside', () => {
+    expect(marksOption('curtain up, bow', undefined)).toEqual(['curtain up', 'bow']);
+    expect(marksOption('exit', ['bow'])).toEqual(['bow', 'exit']);
+  });
+
+  it.each(['', 'bow,,exit', 'x'.repeat(81)])('cannot be %j', (text) => {
+    expect(() => marksOption(text, undefined)).toThrow('1 to 80 letters');
   });
 });
 

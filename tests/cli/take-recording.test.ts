@@ -132,7 +132,7 @@ describe('a recording', () => {
     expect(session.screen().split('\n')[0]).toContain('recording small-1 1 s');
     session.type('t');
     await session.pass(200);
-    expect(session.screen()).toMatch(/small-1: 1\.\d s, \d+ rows, 0 marks/);
+    expect(session.screen()).toMatch(/recorded small-1: 1\.\d s, \d+ rows, 0 marks, in /);
     expect(session.screen().split('\n')[0]).not.toContain('recording');
     await left(session);
     const take = session.of.take('small-1');
@@ -213,7 +213,7 @@ describe('a disk that fills', () => {
     session.of.room(50e6);
     await session.pass(11_000);
     expect(session.screen()).toContain('the disk has 50.0 MB left: the recording ends');
-    expect(session.screen()).toMatch(/bow: \d+\.\d s, \d+ rows/);
+    expect(session.screen()).toMatch(/recorded bow: \d+\.\d s, \d+ rows/);
     await left(session);
     expect(session.of.take('bow').lostBytes).toBeNull();
   });

@@ -6,7 +6,8 @@ import { takeCommand } from '../../src/cli/take.ts';
 import type { TakeWorld } from '../../src/cli/take-world.ts';
 import { traceFiles } from '../../src/cli/trace.ts';
 import { virtualClock } from '../../src/clock/virtual.ts';
-import { filmed, takesFolderForTests, TWO_ARMS } from '../take/studio.ts';
+import { EVENT_CODES } from '../../src/take/row.ts';
+import { fileWriter, filmed, headerOf, takesFolderForTests, TWO_ARMS } from '../take/studio.ts';
 import { rigYaml } from '../bridge/performance.ts';
 
 const folder = takesFolderForTests();
@@ -162,15 +163,16 @@ describe('eidograph take', () => {
 });
 
 describe('eidograph trace', () => {
-  it('reads a take: the commands of its readings on a rig', async () => {
+  const RIG_TEXT = rigYaml([
+    ['wren', 'sim:arm?name=wren'],
+    ['stork', 'sim:arm?name=stork'],
+  ]);
+
+  async function traced(
+    name: string,
+  ): Promise<{ readonly status: number; readonly said: string; readonly rows: string[] }> {
     const rig = join(folder, 'rig.yaml');
-    writeFileSync(
-      rig,
-      rigYaml([
-        ['wren', 'sim:arm?name=wren'],
-        ['stork', 'sim:arm?name=stork'],
-      ]),
-    );
+    writeFileSync(rig, RIG_TEXT);
     let out = '';
     const stdout = new Writable({
       write(bytes: Buffer, _, done) {
@@ -178,12 +180,44 @@ describe('eidograph trace', () => {
         done();
       },
     });
-    const said: string[] = [];
-    const options = { in: join(folder, 'bow.arrows'), out: undefined, from: undefined };
-    const status = await traceFiles(rig, options, { stdin: null, stdout, say: (text) => void said.push(text) });
-    expect([status, said]).toEqual([0, []]);
-    const rows = out.trim().split('\n');
+    let said = '';
+    const options = { in: join(folder, `${name}.arrows`), out: undefined, from: undefined };
+    const say = (text: string): void => {
+      said += text;
+    };
+    const status = await traceFiles(rig, options, { stdin: null, stdout, say });
+    return { status, said, rows: out.trim().split('\n') };
+  }
+
+  it('reads a take: the commands of its readings on a rig', async () => {
+    const { status, said, rows } = await traced('bow');
+    expect([status, said]).toEqual([0, '']);
     expect(rows[0]).toBe('t_ms,follower,state,joint,target_deg,angle_deg,pulse_us');
     expect(rows.length).toBeGreaterThan(2 * TWO_ARMS.plan.followers.length * 200);
+  });
+
+  it('reads the poses of a take whose counts do not tell them', async () => {
+    await take('splice bow bow-again --blend 2s --as spliced');
+    const { status, said, rows } = await traced('spliced');
+    expect([status, said]).toEqual([0, '']);
+    const angles = rows
+      .map((row) => row.split(','))
+      .filter(([ms, arm, , joint]) => Number(ms) > 6_200 && Number(ms) < 7_800 && arm === 'wren' && joint === 'base')
+      .map(([, , state, , target]) => [state, Number(target)] as const);
+    // In the blend there are poses and no readings: the arm goes on following, and moves.
+    expect(angles.length).toBeGreaterThan(70);
+    expect(new Set(angles.map(([state]) => state))).toEqual(new Set(['following']));
+    expect(new Set(angles.map(([, target]) => target)).size).toBeGreaterThan(50);
+  });
+
+  it('refuses a take whose arms were led by commands, with a remedy', async () => {
+    const writer = fileWriter(folder, 'commanded', headerOf(TWO_ARMS));
+    for (let i = 0; i < 100; i++) {
+      Object.assign(writer.row, { tUs: i * 10_000, event: EVENT_CODES.target, follower: 0 });
+      writer.append();
+    }
+    await writer.end();
+    const { status, said } = await traced('commanded');
+    expect([status, said]).toEqual([2, expect.stringMatching(/led by commands.*play it with --as-commands/)]);
   });
 });
