@@ -20,6 +20,8 @@ export interface FitFlags {
   /** Write what could be fitted although some could not. */
   readonly partly: boolean;
   readonly report: string | undefined;
+  /** Write the suggested smoothing and deadbands too. */
+  readonly smooth: boolean;
   readonly wish: SuggestWish;
 }
 
@@ -57,7 +59,7 @@ export function fitInto(
     date: calendar.date,
     wish: flags.wish,
   });
-  const planned = plannedEdits(rigFile, files.readRig, loaded.profiles, report);
+  const planned = plannedEdits(rigFile, files.readRig, loaded.profiles, report, flags.smooth);
   const whole: FitReport = { ...report, problems: [...report.problems, ...planned.problems] };
   if (flags.json) out(`${JSON.stringify(whole, null, 2)}\n`);
   else out(textOf(whole));

@@ -4,6 +4,7 @@ import { CAUTIONS, sentences } from '../bridge/words.ts';
 import { type Cancel, type Clock, US_PER_MS, US_PER_S } from '../clock/clock.ts';
 import type { Capture } from '../fit/captures.ts';
 import type { SessionEffect, Tape } from '../fit/prompt.ts';
+import type { SuggestWish } from '../fit/suggest.ts';
 import { session as makeSession } from '../fit/session.ts';
 import type { Port } from '../port/types.ts';
 import type { CompiledBoard } from '../rig/compiled.ts';
@@ -21,8 +22,8 @@ export interface FitTable {
   readonly isTerminal: boolean;
 }
 
-/** `fit`: what was captured is to be fitted; `quit`: it is left; `interrupted`: somebody was frightened. */
-export type FitEnding = 'fit' | 'quit' | 'interrupted';
+/** `fit`: what was captured is to be fitted; `smoothed`: and the suggested smoothing written too; `quit`: it is left; `interrupted`: somebody was frightened. */
+export type FitEnding = 'fit' | 'smoothed' | 'quit' | 'interrupted';
 
 const LOOK_US = 20 * US_PER_MS;
 /** A servo has come to rest this long after its last pulse changed. */
@@ -41,16 +42,20 @@ interface Asked {
   sinceUs: number;
 }
 
-/** Runs one session at a terminal until its operator ends it. */
+/**
+ * Runs one session at a terminal until its operator ends it.
+ * @param wish what smoothing is offered for; null: none
+ */
 export async function measure(
   { rig, profiles }: Pick<LoadedRig, 'rig' | 'profiles'>,
   captured: readonly Capture[],
+  wish: SuggestWish | null,
   keeping: Keeper,
   table: FitTable,
 ): Promise<FitEnding> {
   const { clock } = table;
   const measured = rigToMeasure(rig);
-  const session = makeSession(profiles, captured);
+  const session = makeSession(profiles, captured, wish);
   const speak = sentences(measured);
   const rl: Interface = createInterface({ input: table.input, output: table.output, terminal: table.isTerminal });
   const waking = new Set<number>();
@@ -94,7 +99,7 @@ export async function measure(
         live.jog(wanted.follower, wanted.servo, wanted.pulseUs);
         return;
       case 'end':
-        ending ??= wanted.fit ? 'fit' : 'quit';
+        ending ??= wanted.smooth ? 'smoothed' : wanted.fit ? 'fit' : 'quit';
         endUs = clock.nowUs() + HOME_US;
         return;
     }

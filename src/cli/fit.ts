@@ -62,15 +62,17 @@ export async function fitMeasured(
   const former = existsSync(at) ? capturesOf(at, files, printer) : [];
   if (former === null) return 2;
   const keeping = keeper(at);
-  const ending = await measure(loaded, former, keeping, tableFor(loaded.rig));
-  if (ending !== 'fit') {
+  const ending = await measure(loaded, former, options.smooth ? null : options.wish, keeping, tableFor(loaded.rig));
+  if (ending !== 'fit' && ending !== 'smoothed') {
     printer.err(
       `\nThe profiles are as they were. What was captured is in ${at}; the same command goes on from there.\n`,
     );
     return ending === 'quit' ? 0 : 130;
   }
   const captures = capturesOf(at, files, printer);
-  return captures === null ? 1 : fitInto(file, loaded, captures, options, files, printer);
+  return captures === null
+    ? 1
+    : fitInto(file, loaded, captures, { ...options, smooth: options.smooth || ending === 'smoothed' }, files, printer);
 }
 
 const JITTER_MM = 0.5;
@@ -121,6 +123,7 @@ export function fitCommand(
       quantityOption('mm'),
       JITTER_MM,
     )
+    .option('--smooth', 'write the suggested smoothing and deadbands too; a session asks')
     .option('--lag <ms>', 'longest delay that the suggested smoothing may add', quantityOption('ms'), LAG_MS)
     .addHelpText('after', EXPLAINED)
     .action(async (file, given) => {
@@ -132,6 +135,7 @@ export function fitCommand(
         json: given.json === true,
         dryRun: given.dryRun === true,
         partly: given.partly === true,
+        smooth: given.smooth === true,
         wish: { jitterM: metres(jitter), lagS: lag / 1000 },
       };
       if (from !== undefined && check !== undefined) {
@@ -148,14 +152,16 @@ export function fitCommand(
 }
 
 function realTable(): ((rig: CompiledRig) => FitTable) | null {
-  const { stdin, stdout } = process;
-  if (!stdin.isTTY || !stdout.isTTY) return null;
+  const { stdin, stdout, stderr } = process;
+  // Figures may go to a file while somebody sits at the terminal.
+  const output = stdout.isTTY ? stdout : stderr;
+  if (!stdin.isTTY || !output.isTTY) return null;
   const clock = realClock();
   return (rig) => ({
     clock,
     openPort: (board) => portOf(rig, board, clock),
     input: stdin,
-    output: stdout,
+    output,
     isTerminal: process.env['TERM'] !== 'dumb',
   });
 }

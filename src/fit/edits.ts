@@ -26,15 +26,22 @@ export interface PlannedEdits {
 /** Gains are told to a part in ten thousand: less than any joint's play. */
 const tenThousandth = (value: number): number => Math.round(value * 1e4) / 1e4;
 
+/** Rounded down, a deadband would let some of the noise through. */
+const upToHundredth = (value: number): number => Math.ceil(value * 100) / 100;
+
 /** No board sends a pulse finer than half a microsecond. */
 const tenth = (value: number): number => Math.round(value * 10) / 10;
 
-/** Where fitted values belong: in the file, and at the path, that the profile's own values come from. */
+/**
+ * Where fitted values belong: in the file, and at the path, that the profile's own values come from.
+ * @param smooth the suggested smoothing and deadbands are wanted too
+ */
 export function plannedEdits(
   rigFile: string,
   readFile: ReadFile,
   profiles: RigProfiles,
   report: FitReport,
+  smooth: boolean,
 ): PlannedEdits {
   const nodes = memberNodes(rigFile, readFile);
   const files = new Map<string, Edit[]>();
@@ -50,7 +57,11 @@ export function plannedEdits(
   for (const joint of report.joints) {
     const index = profiles.leader.joints.findIndex(({ name }) => name === joint.joint);
     const node = nodes.leader === null ? null : nodeAt(nodes.leader, ['joints', index]);
-    const values = leaderValues(joint, profiles.leader.joints[index], report.date);
+    const cutoff = smooth ? (report.suggestions.find((each) => each.joint === joint.joint)?.cutoff_hz ?? null) : null;
+    const values = {
+      ...leaderValues(joint, profiles.leader.joints[index], report.date),
+      ...(cutoff === null ? {} : { smooth: { cutoff_hz: hundredth(cutoff) } }),
+    };
     if (node !== null && Object.keys(values).length > 0) put(node, values);
   }
   const putFollower = (arm: string, joint: string, path: Path, value: Readonly<Record<string, PlainValue>>): void => {
@@ -72,7 +83,29 @@ export function plannedEdits(
     const index = profile?.joints.findIndex(({ name }) => name === match.joint) ?? -1;
     putFollower(match.follower, match.joint, ['joints', index], matchValues(match, report.date));
   }
+  for (const { follower, joint, deadbandDeg } of smooth ? deadbandsOf(report) : []) {
+    const profile = profiles.followers.find((each) => each.follower === follower);
+    const index = profile?.joints.findIndex(({ name }) => name === joint) ?? -1;
+    putFollower(follower, joint, ['joints', index], { deadband_deg: upToHundredth(deadbandDeg) });
+  }
   return { files: [...files].map(([file, edits]) => ({ file, edits })), problems };
+}
+
+interface WantedDeadband {
+  readonly follower: string;
+  readonly joint: string;
+  readonly deadbandDeg: number;
+}
+
+/** One a joint that needs one: where several joints of the leader feed it, their noises add as squares. */
+function deadbandsOf({ suggestions }: FitReport): readonly WantedDeadband[] {
+  const found = new Map<string, WantedDeadband>();
+  for (const { follower, joint, deadband_deg } of suggestions.flatMap(({ feeds }) => feeds)) {
+    const key = `${follower}\n${joint}`;
+    const deadbandDeg = Math.hypot(found.get(key)?.deadbandDeg ?? 0, deadband_deg);
+    if (deadbandDeg > 0) found.set(key, { follower, joint, deadbandDeg });
+  }
+  return [...found.values()];
 }
 
 function leaderValues(

@@ -82,6 +82,13 @@ function pointsFigures(points: PointsReport, unit: string, slopeUnit: string): r
   ];
 }
 
+/** There is something to write. */
+export function wantsSmoothing({ suggestions }: FitReport): boolean {
+  return suggestions.some(
+    ({ cutoff_hz, feeds }) => cutoff_hz !== null || feeds.some(({ deadband_deg }) => deadband_deg > 0),
+  );
+}
+
 export function suggestionLines({ suggestions }: FitReport): readonly FigureLine[] {
   return suggestions.map(({ joint, cutoff_hz, lag_ms, feeds }) => {
     const smoothing =

@@ -54,13 +54,14 @@ export function fitCaptures(profiles: RigProfiles, captures: readonly Capture[],
     });
   });
   const joints = parts.map(({ report }) => report);
+  const matches = fitted.flatMap(({ match }) => match ?? []);
   return {
     rig: options.rig,
     date: options.date,
     joints,
     servos: fitted.flatMap(({ servo }) => servo ?? []),
-    matches: fitted.flatMap(({ match }) => match ?? []),
-    suggestions: suggestions(profiles, joints, options.wish, rateOf(captures, profiles)),
+    matches,
+    suggestions: suggestions(profiles, joints, matches, options.wish, rateOf(captures, profiles)),
     problems,
   };
 }

@@ -38,4 +38,4 @@ export type SessionEffect =
   | { readonly kind: 'wake'; readonly follower: number }
   | { readonly kind: 'jog'; readonly follower: number; readonly servo: number; readonly pulseUs: number }
   /** It is over: fit what was captured, or leave it for another time. */
-  | { readonly kind: 'end'; readonly fit: boolean };
+  | { readonly kind: 'end'; readonly fit: boolean /** With the suggested smoothing. */; readonly smooth: boolean };

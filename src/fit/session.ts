@@ -1,12 +1,12 @@
 import type { RigProfiles } from '../rig/compile.ts';
-import { type Bench, type BenchServo, benchServos, type Outcome, prompt, type Step } from './bench.ts';
-import type { Capture, CaptureStep } from './captures.ts';
-import { servoAlone } from './follower-part.ts';
-import { deadbandStep } from './deadband-step.ts';
-import { hornStep, matchStep, servoWiringStep, travelStep } from './follower-steps.ts';
-import { pointsStep, stillStep, sweepStep, wiringStep } from './leader-steps.ts';
+import { type Bench, type Outcome, prompt, type Step } from './bench.ts';
+import type { Capture } from './captures.ts';
+import { suggestionLines, wantsSmoothing } from './figures.ts';
+import { fitCaptures } from './fit.ts';
 import { sendHome } from './motion.ts';
 import type { Prompt, SessionEffect, SessionEvent } from './prompt.ts';
+import { inputsOf, type ListedStep, stepsOf } from './step-list.ts';
+import type { SuggestWish } from './suggest.ts';
 
 /**
  * A measuring session as a plain state machine: events in, prompts and effects out. It knows no port, file, clock or
@@ -24,21 +24,14 @@ export interface Session {
   effects(): readonly SessionEffect[];
 }
 
-type Mark = 'open' | 'done' | 'skipped';
-
-interface ListedStep {
-  readonly name: string;
-  mark: Mark;
-  run(): Step<Outcome>;
-}
-
 /** Words that are heard at every prompt. */
 const HELP = [
   'At any question: list leaves the step and shows all steps, redo begins it anew, skip marks it skipped,',
   'quit leaves the session. What was captured is kept, and the next session goes on from there.',
 ];
 
-export function session(profiles: RigProfiles, captured: readonly Capture[]): Session {
+/** @param wish what smoothing is offered for before the fit; null: none is offered */
+export function session(profiles: RigProfiles, captured: readonly Capture[], wish: SuggestWish | null): Session {
   const bench: Bench = {
     profiles,
     captures: [...captured],
@@ -52,6 +45,8 @@ export function session(profiles: RigProfiles, captured: readonly Capture[]): Se
   let at: ListedStep | null = null;
   let running: Step<Outcome> | null = null;
   let over = false;
+  /** Smoothing was offered, and is to be answered. */
+  let offered = false;
 
   const list = (lines: readonly string[]): Prompt => {
     const width = Math.max(...steps.map(({ name }) => name.length));
@@ -90,28 +85,51 @@ export function session(profiles: RigProfiles, captured: readonly Capture[]): Se
     leave(result.value.lines);
   };
   const leave = (lines: readonly string[]): void => {
+    offered = false;
     running?.return({ done: false, lines: [] });
     sendHome(bench);
     running = null;
     at = null;
     show(list(lines));
   };
-  const end = (fit: boolean): void => {
+  const end = (fit: boolean, smooth = false): void => {
     leave([]);
     over = true;
-    bench.effects.push({ kind: 'end', fit });
+    bench.effects.push({ kind: 'end', fit, smooth });
     show(prompt([]));
+  };
+  /** Smoothing changes how a rig feels: it is written only to who says so. */
+  const offer = (): void => {
+    const report = wish === null ? null : fitCaptures(profiles, bench.captures, { rig: '', date: '', wish });
+    if (report === null || !wantsSmoothing(report)) {
+      end(true);
+      return;
+    }
+    offered = true;
+    show(
+      prompt(
+        [
+          'To keep the tips as still as wished:',
+          ...suggestionLines(report).map(([joint, what]) => `  ${joint}: ${what}`),
+        ],
+        'Write this smoothing and these deadbands too (yes, or Enter: no; list: not done yet)? ',
+      ),
+    );
   };
 
   const choose = (text: string): void => {
     const next = steps.find(({ mark }) => mark === 'open');
     const chosen = text === '' ? next : steps[Number(text) - 1];
-    if (text === 'fit' || (text === '' && next === undefined)) end(true);
+    if (text === 'fit' || (text === '' && next === undefined)) offer();
     else if (chosen !== undefined) begin(chosen);
     else show(prompt([`There is no step ${text}.`], shown.ask));
   };
 
   const line = (text: string): void => {
+    if (offered && (text === '' || text === 'yes' || text === 'no')) {
+      end(true, text === 'yes');
+      return;
+    }
     switch (text) {
       case 'quit':
         end(false);
@@ -133,7 +151,8 @@ export function session(profiles: RigProfiles, captured: readonly Capture[]): Se
         return;
       }
       default:
-        if (running === null) choose(text);
+        if (offered) show(prompt(['Type yes to have it, or Enter for the maps alone.'], shown.ask));
+        else if (running === null) choose(text);
         else proceed(running.next({ kind: 'line', text }));
     }
   };
@@ -174,82 +193,4 @@ export function session(profiles: RigProfiles, captured: readonly Capture[]): Se
     said: () => unsaid.splice(0),
     effects: () => bench.effects.splice(0),
   };
-}
-
-/** What an earlier session has found about the wiring stands in its captures. */
-function inputsOf({ leader }: RigProfiles, captured: readonly Capture[]): number[] {
-  const channels = [...leader.joints, ...leader.buttons].map(({ channel }) => channel);
-  return leader.joints.map(({ name }, joint) => {
-    const told = captured.findLast(
-      (c) => c.arm === leader.leader && c.joint === name && !Number.isNaN(c.channel) && c.step !== 'match',
-    );
-    const input = told === undefined ? -1 : channels.indexOf(told.channel);
-    return input < 0 ? joint : input;
-  });
-}
-
-function stepsOf(bench: Bench): readonly ListedStep[] {
-  const { leader, followers } = bench.profiles;
-  const servos = benchServos(bench.profiles);
-  const alone = servos.filter(({ follower, joint }) => {
-    const profile = followers[follower];
-    return profile !== undefined && servoAlone(profile, joint) !== null;
-  });
-  const has = (arm: string, joint: string | null, ...wanted: readonly CaptureStep[]): Mark =>
-    bench.captures.some((c) => c.arm === arm && (joint === null || c.joint === joint) && wanted.includes(c.step))
-      ? 'done'
-      : 'open';
-  const sourceOf = ({ follower, joint }: BenchServo): number => {
-    const from = followers[follower]?.joints.find(({ name }) => name === joint)?.from;
-    return leader.joints.findIndex(({ name }) => name === from);
-  };
-  return [
-    ...servos.map((servo) => ({
-      name: `horn of ${servo.arm} ${servo.joint}`,
-      mark: has(servo.arm, servo.joint, 'servo-point', 'match'),
-      run: () => hornStep(bench, servo),
-    })),
-    ...leader.joints.map(({ name }, joint) => ({
-      name: `wiring of ${leader.leader} ${name}`,
-      mark: has(leader.leader, name, 'leader-sweep', 'leader-point'),
-      run: () => wiringStep(bench, joint),
-    })),
-    ...servos.map((servo) => ({
-      name: `wiring of ${servo.arm} ${servo.joint}`,
-      mark: has(servo.arm, servo.joint, 'servo-point', 'match'),
-      run: () => servoWiringStep(bench, servo),
-    })),
-    { name: `${leader.leader} at rest`, mark: has(leader.leader, null, 'leader-still'), run: () => stillStep(bench) },
-    ...leader.joints.map(({ name }, joint) => ({
-      name: `sweep of ${leader.leader} ${name}`,
-      mark: has(leader.leader, name, 'leader-sweep'),
-      run: () => sweepStep(bench, joint),
-    })),
-    ...leader.joints.map(({ name }, joint) => ({
-      name: `points of ${leader.leader} ${name}`,
-      mark: has(leader.leader, name, 'leader-point'),
-      run: () => pointsStep(bench, joint),
-    })),
-    ...alone.map((servo) => ({
-      name: `travel of ${servo.arm} ${servo.joint}`,
-      mark: has(servo.arm, servo.joint, 'servo-point'),
-      run: () => travelStep(bench, servo),
-    })),
-    ...alone.map((servo) => ({
-      name: `deadband of ${servo.arm} ${servo.joint}`,
-      mark: has(servo.arm, servo.joint, 'servo-step'),
-      run: () => deadbandStep(bench, servo),
-    })),
-    ...alone.flatMap((servo) => {
-      const source = sourceOf(servo);
-      if (source < 0) return [];
-      return [
-        {
-          name: `match of ${servo.arm} ${servo.joint}`,
-          mark: has(servo.arm, servo.joint, 'match'),
-          run: () => matchStep(bench, servo, source),
-        },
-      ];
-    }),
-  ];
 }

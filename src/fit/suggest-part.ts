@@ -2,7 +2,7 @@ import { leversM } from '../arm/extent.ts';
 import { compileArm } from '../rig/compile-arm.ts';
 import type { RigProfiles } from '../rig/compile.ts';
 import type { FollowerProfile } from '../rig/schema/follower.ts';
-import type { JointReport, SuggestionReport } from './report.ts';
+import type { JointReport, MatchReport, SuggestionReport } from './report.ts';
 import { type Feed, suggest, type SuggestWish } from './suggest.ts';
 
 const RAD = Math.PI / 180;
@@ -20,10 +20,11 @@ interface NamedFeed extends Feed {
 export function suggestions(
   { followers }: RigProfiles,
   joints: readonly JointReport[],
+  matches: readonly MatchReport[],
   wish: SuggestWish,
   rateHz: number,
 ): readonly SuggestionReport[] {
-  const all = followers.flatMap(feedsOf);
+  const all = followers.flatMap((profile) => feedsOf(profile, matches));
   return joints.flatMap(({ joint, still, sweep }): SuggestionReport[] => {
     const noiseDeg = still?.noise_deg ?? sweep?.noise_deg;
     const feeds = all.filter((feed) => feed.from === joint);
@@ -45,7 +46,10 @@ export function suggestions(
   });
 }
 
-function feedsOf(profile: FollowerProfile): readonly (NamedFeed & { readonly from: string })[] {
+function feedsOf(
+  profile: FollowerProfile,
+  matches: readonly MatchReport[],
+): readonly (NamedFeed & { readonly from: string })[] {
   const { arm, joints, follower } = profile;
   if (arm === undefined) return [];
   const spec = compileArm(arm, joints);
@@ -57,11 +61,13 @@ function feedsOf(profile: FollowerProfile): readonly (NamedFeed & { readonly fro
     const weights = typeof joint.from === 'string' ? { [joint.from]: 1 } : (joint.from ?? {});
     // What stretch makes of the gain is at most its range over the leader's travel; without that it is left out.
     if (leverM === 0 || joint.stretch) return [];
+    const match = matches.find((each) => each.follower === follower && each.joint === joint.name);
+    const gain = match?.gain.is ?? joint.gain;
     return Object.entries(weights).map(([from, weight]) => ({
       from,
       follower,
       joint: joint.name,
-      gain: joint.gain * weight,
+      gain: gain * weight,
       leverM,
     }));
   });

@@ -6,9 +6,9 @@ import { virtualClock } from '../../src/clock/virtual.ts';
 import { fitMeasured } from '../../src/cli/fit.ts';
 import { filesOnDisk } from '../../src/cli/fit-files.ts';
 import type { FitReport } from '../../src/fit/report.ts';
-import { countsOf, heldJoint, type Horn, play, replies, sitting } from '../fit/workbench.ts';
+import { countsOf, heldJoint, type Horn, plantedServo, play, replies, sitting } from '../fit/workbench.ts';
 import { median } from './solo.ts';
-import { trainOf, widthsOf } from './trains.ts';
+import { calm, trainOf, widthsOf } from './trains.ts';
 import { troupe } from './troupe.ts';
 import { wiredBoard } from './wired.ts';
 
@@ -24,6 +24,9 @@ const BASE = {
 const ELBOW = { counts: (deg: number) => 530 - 3.5 * deg, noise: 0.6, dead: null };
 /** The servo turns against its points, and 168 degrees over 600 to 2400 us rather than 180, off by 4. */
 const hornDeg = (us: number): number => 4 - ((us - 1500) * 168) / 1800;
+/** It answers 6 us and not less, and its horn has a degree of play. */
+const DEADBAND_US = 5;
+const PLAY_DEG = 1;
 /** follower = -0.5 leader + 6 */
 const ALIKE = { gain: -0.5, offset: 6 };
 
@@ -82,8 +85,19 @@ describe('An evening with a new arm, on real firmware', () => {
     leader.forEach((joint, channel) =>
       wired.board.setVolts(channel, (atUs) => ((countsOf(joint, atUs, channel) + 0.5) * 5) / 1024),
     );
-    const pulseOn = (pin: number): number => lastPulse(widthsOf(trainOf(wired.board, pin, clock.nowUs() - 200_000)));
-    const horns: Horn[] = [{ joint: 'base', deg: hornDeg, pulseUs: () => pulseOn(9) }];
+    const servo = plantedServo('base', hornDeg, {
+      deadbandUs: DEADBAND_US,
+      playUs: PLAY_DEG / Math.abs(hornDeg(1) - hornDeg(0)),
+    });
+    let fedUs = 0;
+    /** All that has been on its pin since it was last looked at. */
+    const fed = (): typeof servo => {
+      const train = trainOf(wired.board, 9, fedUs - 60_000);
+      for (const { startUs, widthUs } of calm(train)) if (startUs >= fedUs) servo.feed(Math.round(widthUs));
+      fedUs = train.at(-1)?.startUs ?? fedUs;
+      return servo;
+    };
+    const horns: Horn[] = [{ ...servo, pulseUs: () => fed().pulseUs(), standsDeg: () => fed().standsDeg() }];
     const person = {
       leader,
       horns,
@@ -105,6 +119,7 @@ describe('An evening with a new arm, on real firmware', () => {
         dryRun: false,
         partly: false,
         report: path('report.html'),
+        smooth: false,
         wish: { jitterM: 0.0005, lagS: 0.06 },
         captures: undefined,
       },
@@ -116,7 +131,7 @@ describe('An evening with a new arm, on real firmware', () => {
       status = code;
       return 'fit' as const;
     });
-    await play(clock, seat, done, replies(person, { stopsDeg: [-130, 130], sweepS: 4 }), 900);
+    await play(clock, seat, done, replies(person, { stopsDeg: [-130, 130], sweepS: 2.5 }), 900);
     printed = seat.printed() + said.join('');
     report = JSON.parse(out.join('')) as FitReport;
   }, EVENING_MS);
@@ -172,9 +187,19 @@ describe('An evening with a new arm, on real firmware', () => {
 
   it('measures the servo’s true travel, and that it turns against its points', () => {
     const [base] = report.servos;
-    expect(base?.travel_deg).toBeCloseTo(168, 0);
-    expect(base?.points.slope_deg_per_unit.is).toBeLessThan(0);
+    expect(base?.travel?.travel_deg).toBeCloseTo(168, 0);
+    expect(base?.travel?.points.slope_deg_per_unit.is).toBeLessThan(0);
     expect(printed).toContain('base turns against its points');
+  });
+
+  it('tells its deadband and its backlash apart', () => {
+    const { deadband_us, backlash_deg } = report.servos[0] ?? {};
+    expect(Math.abs((deadband_us?.is ?? Number.NaN) - DEADBAND_US)).toBeLessThanOrEqual(
+      (deadband_us?.error_95 ?? 0) + 0.01,
+    );
+    expect(deadband_us?.error_95).toBeLessThan(2);
+    expect(Math.abs((backlash_deg?.is ?? Number.NaN) - PLAY_DEG)).toBeLessThan(backlash_deg?.error_95 ?? 0);
+    expect(backlash_deg?.error_95).toBeLessThan(1);
   });
 
   it('matches the follower to the leader, and says that it turns the other way', () => {

@@ -96,7 +96,7 @@ describe('A session', () => {
     const { clock, leader, horns, seat } = bench();
     const loaded = load();
     const at = capturesBeside(RIG);
-    const ending = measure(loaded, [], keeper(at), seat.table);
+    const ending = measure(loaded, [], null, keeper(at), seat.table);
     const person = {
       leader,
       horns,
@@ -146,7 +146,7 @@ describe('A session', () => {
     const at = files.path('crash.csv');
     const first = bench();
     first.leader[0]?.go(30, 0);
-    const crashed = measure(load(), [], keeper(at), first.seat.table);
+    const crashed = measure(load(), [], null, keeper(at), first.seat.table);
     // The crash: nobody answers any more, and nothing is closed.
     const typed = typing([
       [/a number: that step/, '10'],
@@ -159,7 +159,7 @@ describe('A session', () => {
 
     const second = bench();
     second.leader[0]?.go(-40, 0);
-    const again = measure(load(), kept.captures, keeper(at), second.seat.table);
+    const again = measure(load(), kept.captures, null, keeper(at), second.seat.table);
     const more = typing([
       [/a number: that step/, inTurn('10', 'quit')],
       [/^Angle of base/, inTurn('-40', '')],
@@ -180,7 +180,7 @@ describe('A session', () => {
   it('refuses a hold that moves, with the reason, and takes it when it is still', async () => {
     const { clock, leader, seat } = bench();
     const at = files.path('moving.csv');
-    const ended = measure(load(), [], keeper(at), seat.table);
+    const ended = measure(load(), [], null, keeper(at), seat.table);
     const typed = typing([
       [/a number: that step/, inTurn('10', 'quit')],
       [/^Angle of base/, inTurn('20', '20', '')],
@@ -193,7 +193,7 @@ describe('A session', () => {
 
   it('moves no servo before the arm is said to be safe', async () => {
     const { clock, seat, pulses } = bench();
-    const ended = measure(load(), [], keeper(files.path('safe.csv')), seat.table);
+    const ended = measure(load(), [], null, keeper(files.path('safe.csv')), seat.table);
     const typed = typing([
       [/a number: that step/, inTurn('1', 'quit')],
       [/^Type yes/, inTurn('no', '', 'list')],
@@ -205,7 +205,7 @@ describe('A session', () => {
 
   it('tells when a port vanishes halfway, leaves the step, and loses nothing', async () => {
     const { clock, seat, arm } = bench();
-    const ended = measure(load(), [], keeper(files.path('vanish.csv')), seat.table);
+    const ended = measure(load(), [], null, keeper(files.path('vanish.csv')), seat.table);
     let angles = 0;
     const typed = typing([
       [/a number: that step/, inTurn('12', 'quit')],
@@ -227,7 +227,7 @@ describe('A session', () => {
 
   it('ends as interrupted when its terminal goes, and moves nothing', async () => {
     const { clock, seat, pulses } = bench();
-    const ended = measure(load(), [], keeper(files.path('gone.csv')), seat.table);
+    const ended = measure(load(), [], null, keeper(files.path('gone.csv')), seat.table);
     let standing: number[] = [];
     const typed = typing([
       [/a number: that step/, '12'],
@@ -249,7 +249,7 @@ describe('A session', () => {
 
   it('brings a servo home that was away when its operator leaves', async () => {
     const { clock, seat, pulses } = bench();
-    const ended = measure(load(), [], keeper(files.path('home.csv')), seat.table);
+    const ended = measure(load(), [], null, keeper(files.path('home.csv')), seat.table);
     const typed = typing([
       [/a number: that step/, '12'],
       [/^Type yes/, 'yes'],

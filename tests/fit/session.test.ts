@@ -33,7 +33,7 @@ interface Seat {
 }
 
 function seat(captured: readonly Capture[] = []): Seat {
-  const at = session(profiles(), captured);
+  const at = session(profiles(), captured, null);
   const did: SessionEffect[] = [];
   let tUs = 0;
   const after = (): void => void did.push(...at.effects());
@@ -168,6 +168,54 @@ describe('A step', () => {
   });
 });
 
+describe('A session that is to be fitted', () => {
+  const wish = { jitterM: 0.0001, lagS: 0.06 };
+  const ARM = 'arm: { links: [{ joint: base, axis: z, to_mm: [400, 0, 0] }] }';
+  const armed = loadRig('bench.yaml', () => ({ text: RIG.replace('wake: ask', `wake: ask\n    ${ARM}`) }));
+  const trembling = Array.from({ length: 200 }, (_, i) => ({
+    ...emptyCapture('leader-still', 'stick', 'base'),
+    counts: 500 + (i % 3),
+  }));
+  const offered = (): Session => {
+    if ('mistakes' in armed) throw new Error(JSON.stringify(armed.mistakes));
+    const at = session(armed.profiles, trembling, wish);
+    at.said();
+    at.take({ kind: 'line', text: 'fit' });
+    return at;
+  };
+
+  it('offers smoothing, and writes it only to who says yes', () => {
+    for (const [text, smooth] of [
+      ['yes', true],
+      ['no', false],
+      ['', false],
+    ] as const) {
+      const at = offered();
+      expect(at.over).toBe(false);
+      expect(at.said().join('\n')).toMatch(/base: smooth: \{ cutoff_hz: [\d.]+ \}/);
+      at.take({ kind: 'line', text });
+      expect(at.effects()).toEqual([{ kind: 'end', fit: true, smooth }]);
+    }
+  });
+
+  it('asks again for what is neither yes nor no, and can be gone back from', () => {
+    const at = offered();
+    at.said();
+    at.take({ kind: 'line', text: 'perhaps' });
+    expect(at.said()).toEqual(['Type yes to have it, or Enter for the maps alone.']);
+    at.take({ kind: 'line', text: 'list' });
+    expect(at.said().join('\n')).toContain('sweep of stick base');
+    expect(at.prompt.ask).toContain('a number: that step');
+    expect(at.over).toBe(false);
+  });
+
+  it('offers nothing where nothing is to be smoothed', () => {
+    const { at, type } = seat();
+    type('fit');
+    expect(at.over).toBe(true);
+  });
+});
+
 it('A session that ends says what is to be done with its captures', () => {
   for (const [text, fit] of [
     ['fit', true],
@@ -175,7 +223,7 @@ it('A session that ends says what is to be done with its captures', () => {
   ] as const) {
     const { at, type, did } = seat();
     type(text);
-    expect(did).toEqual([{ kind: 'end', fit }]);
+    expect(did).toEqual([{ kind: 'end', fit, smooth: false }]);
     expect(at.over).toBe(true);
   }
 });

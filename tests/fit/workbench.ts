@@ -1,5 +1,6 @@
 import { PassThrough } from 'node:stream';
 import { setImmediate as turn } from 'node:timers/promises';
+import type { Clock } from '../../src/clock/clock.ts';
 import type { VirtualClock } from '../../src/clock/virtual.ts';
 import type { FitEnding, FitTable } from '../../src/cli/fit-session.ts';
 import { noiseAt, random } from '../../src/sim/random.ts';
@@ -29,7 +30,7 @@ export interface HeldJoint {
   readonly doneUs: number;
 }
 
-export function heldJoint(clock: VirtualClock, name: string, pot: Pot): HeldJoint {
+export function heldJoint(clock: Pick<Clock, 'nowUs'>, name: string, pot: Pot): HeldJoint {
   const legs: { fromUs: number; toUs: number; from: number; to: number }[] = [];
   return {
     name,
