@@ -35,7 +35,7 @@ const FLUSH_US = 200 * US_PER_MS;
 /** A power cut may lose 1.25 s: 0.8 s up to the next sync, a batch, and what writing and syncing take. */
 const FLUSHES_A_SYNC = 4;
 /** So long after a batch was handed over a sync finds it written. */
-const SYNC_AFTER_US = 50 * US_PER_MS;
+const SYNC_AFTER_US = 100 * US_PER_MS;
 
 /**
  * Begins at once. Subscribe after the drive's own pipeline: each event is written as it has been handled.

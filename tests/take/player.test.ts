@@ -3,12 +3,11 @@ import { beforeAll, describe, expect, it } from 'vitest';
 import type { CompiledRig } from '../../src/rig/compiled.ts';
 import { castFollowers, castLeader, renames } from '../../src/take/cast.ts';
 import { isTakeFault } from '../../src/take/fault.ts';
-import { type Phase, type Player, player, type PlayerOptions } from '../../src/take/player.ts';
-import { reel, type ReelOptions } from '../../src/take/reel.ts';
 import type { Take } from '../../src/take/reader.ts';
 import type { Row } from '../../src/take/row.ts';
-import { Performance, rigOf, rigYaml } from '../bridge/performance.ts';
+import { rigOf, rigYaml } from '../bridge/performance.ts';
 import { expectLawful } from './laws.ts';
+import { type Played, playingOf, type PlayingOptions, until } from './playing.ts';
 import { filmed, opened, rowsOf, takesFolderForTests, TWO_ARMS } from './studio.ts';
 
 const folder = takesFolderForTests();
@@ -23,66 +22,7 @@ beforeAll(async () => {
   recorded = rowsOf(take);
 });
 
-interface Played {
-  readonly performance: Performance;
-  readonly player: Player;
-  readonly phases: Phase[];
-  /** Each move of a follower: when, and where to. */
-  readonly moves: { tUs: number; follower: number; x: Float64Array; v: Float64Array; pulses: Float64Array }[];
-}
-
-function playing(
-  rig: CompiledRig,
-  options: Partial<PlayerOptions> & { readonly map?: readonly string[]; readonly reel?: Partial<ReelOptions> } = {},
-): Played {
-  const map = renames(take, options.map ?? []);
-  if (isTakeFault(map)) throw new Error(map.detail);
-  const by = options.by ?? 'leader';
-  const leader = castLeader(take, rig.plan, map);
-  const followers = castFollowers(take, rig.plan, map);
-  const moves: Played['moves'] = [];
-  const phases: Phase[] = [];
-  const performance = new Performance(rig, {
-    onStart: (drive, events$) => {
-      const commands = drive.followers.map((f) => f.commands);
-      events$.subscribe(() => {
-        drive.followers.forEach((f) => {
-          if (f.commands === commands[f.index]) return;
-          commands[f.index] = f.commands;
-          if (f.kind !== 'move') return;
-          moves.push({
-            tUs: drive.common.nowUs[0] as number,
-            follower: f.index,
-            x: f.arm.governor.x.slice(),
-            v: f.arm.governor.v.slice(),
-            pulses: f.arm.frame.sentUs.slice(),
-          });
-        });
-      });
-    },
-  });
-  performance.run(1_000_000);
-  const rows = reel(take, { fromUs: 3_000_000, toUs: 8_000_000, speed: 1, loopBlendS: null, ...options.reel });
-  const started = player(performance.live, performance.clock, rows, {
-    cast: {
-      leader: isTakeFault(leader) ? [] : leader,
-      followers: isTakeFault(followers) ? [] : followers,
-    },
-    by,
-    posed: new Uint8Array(rig.plan.leader.joints.length).fill(1),
-    countInUs: 1_000_000,
-    changed: (phase) => phases.push(phase),
-    ...options,
-  });
-  return { performance, player: started, phases, moves };
-}
-
-/** Runs until the player has come to a phase, and says when. */
-function until({ performance, player: { is } }: Played, phase: Phase, limitS = 60): number {
-  for (let s = 0; s < limitS * 100 && is.phase !== phase; s++) performance.run(10_000);
-  if (is.phase !== phase) throw new Error(`it is still ${is.phase}`);
-  return performance.clock.nowUs();
-}
+const playing = (rig: CompiledRig, options: PlayingOptions = {}): Played => playingOf(take, rig, options);
 
 describe('a take that leads', () => {
   it('eases in, counts in, plays, and keeps every arm until it is parked', () => {
