@@ -1,12 +1,10 @@
-import { type ChildProcess, spawn } from 'node:child_process';
 import { mkdtempSync, readdirSync, readFileSync, rmSync, writeFileSync } from 'node:fs';
 import { tmpdir } from 'node:os';
 import { join } from 'node:path';
-import { afterAll, afterEach, describe, expect, it, vi } from 'vitest';
-import { noPty } from '../port/pty.ts';
+import { afterAll, afterEach, describe, expect, it } from 'vitest';
+import { type Screen, screen, until } from './screen.ts';
 
 /** A measuring session at a real terminal, over simulated boards. */
-const LIMIT_MS = 90_000;
 const folder = mkdtempSync(join(tmpdir(), 'eidograph-fit-'));
 afterAll(() => rmSync(folder, { recursive: true, force: true }));
 
@@ -22,33 +20,14 @@ followers:
 const FILE = join(folder, 'bench.yaml');
 writeFileSync(FILE, RIG);
 
-let socat: ChildProcess | null = null;
-afterEach(() => {
-  socat?.kill('SIGKILL');
-});
-
-function terminal(script: string): { shown(): string; type(text: string): void } {
-  if (noPty !== null) throw new Error(`the smoke test needs pseudo-terminals: ${noPty}`);
-  const child = spawn('socat', ['STDIO', `SYSTEM:${script},pty,setsid,ctty,stderr`], {
-    stdio: ['pipe', 'pipe', 'ignore'],
-    env: { ...process.env, TERM: 'xterm-256color', LANG: 'C.UTF-8' },
-  });
-  socat = child;
-  let shown = '';
-  child.stdout.on('data', (bytes: Buffer) => {
-    shown += bytes.toString();
-  });
-  return { shown: () => shown, type: (text) => void child.stdin.write(text) };
-}
-
-const until = (condition: () => boolean): Promise<unknown> =>
-  vi.waitUntil(condition, { interval: 20, timeout: LIMIT_MS });
+let at: Screen;
+afterEach(() => at.close());
 
 const FIT = `${process.execPath} --import tsx src/cli/main.ts fit ${FILE}; echo status $?`;
 
 describe('eidograph fit at a terminal', () => {
   it('lists its steps, draws the tape while a joint is swept, and leaves with what was captured kept', async () => {
-    const at = terminal(FIT);
+    at = screen(FIT);
     await until(() => at.shown().includes('sweep of stick base') && at.shown().includes('the board answers'));
     const sweep = /(\d+) {2}sweep of stick base/.exec(at.shown())?.[1] ?? '';
     at.type(`${sweep}\r`);
@@ -66,7 +45,7 @@ describe('eidograph fit at a terminal', () => {
   });
 
   it('ends with 130 at Ctrl-C, whatever it was asking, and has written nothing', async () => {
-    const at = terminal(FIT);
+    at = screen(FIT);
     await until(() => at.shown().includes('Enter: step'));
     at.type('1\r');
     await until(() => at.shown().includes('Type yes'));
