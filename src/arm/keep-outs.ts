@@ -4,7 +4,7 @@ import type { KeepOut } from './spec.ts';
 
 /**
  * Whether an arm stays out of where it must not be. Links are the straight lines between their ends: how thick they are
- * is not known here, so a keep-out is drawn with the links' thickness in mind. Link ends are given as in `Chain.at`.
+ * is not known here, so a keep-out is larger by that much, see `clearance_mm`. Link ends are given as in `Chain.at`.
  */
 export interface KeepOuts {
   readonly some: boolean;

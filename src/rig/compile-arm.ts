@@ -106,10 +106,21 @@ function compileSpring({ n_per_mm, free_mm, from_mm, to_mm }: NonNullable<Link['
   return { nPerM: n_per_mm / metres(1), freeM: metres(free_mm), fromM: metresOf(from_mm), toM: metresOf(to_mm) };
 }
 
-/** A place no link may enter, in metres. */
+/**
+ * A place no link may enter, in metres, larger by its clearance. Links are lines here: one whose line stays out of a box
+ * that is larger by r on every side has no part nearer than r to the box, corners included.
+ */
 export function compileKeepOut(place: FollowerProfile['keep_out'][number]): KeepOut {
-  if ('below_mm' in place) return { kind: 'below', zM: metres(place.below_mm) };
-  return { kind: 'box', minM: metresOf(place.box_mm[0]), maxM: metresOf(place.box_mm[1]) };
+  const further = metres(place.clearance_mm);
+  if ('below_mm' in place) return { kind: 'below', zM: metres(place.below_mm) + further };
+  const [low, high] = place.box_mm;
+  const [x, y, z] = metresOf(low);
+  const [toX, toY, toZ] = metresOf(high);
+  return {
+    kind: 'box',
+    minM: [x - further, y - further, z - further],
+    maxM: [toX + further, toY + further, toZ + further],
+  };
 }
 
 function metresOf(vector: Vec3): Vec3 {

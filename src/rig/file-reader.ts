@@ -28,7 +28,8 @@ export const readFromDisk: ReadFile = (file) => {
   }
 };
 
-function faultOf(error: unknown): FileText {
+/** What the system says of a file that it does not give. */
+export function faultOf(error: unknown): FileText {
   const code = error instanceof Error && 'code' in error ? error.code : null;
   if (code === 'ENOENT' || code === 'ENOTDIR') return { fault: 'missing', detail: 'there is no such file' };
   if (code === 'EACCES' || code === 'EPERM') return { fault: 'unreadable', detail: 'permission is denied' };

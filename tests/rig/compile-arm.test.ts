@@ -1,8 +1,7 @@
 import { describe, expect, it } from 'vitest';
-import { compileWhole } from '../../src/rig/compile-arm.ts';
+import { compileArm, compileKeepOut, compileWhole } from '../../src/rig/compile-arm.ts';
 import { reaching } from '../../src/arm/reaching.ts';
 import { arm } from '../../src/rig/schema/arm.ts';
-import { compileArm } from '../../src/rig/compile-arm.ts';
 import { follower } from '../../src/rig/schema/follower.ts';
 import type { FollowerProfile } from '../../src/rig/schema/follower.ts';
 import { edited, RIG, rigIn, STORK } from './memory.ts';
@@ -173,6 +172,17 @@ describe('what a follower has to keep as a whole arm', () => {
       endSpeedMS: 0.25,
       limitLoad: true,
       limitAccel: true,
+    });
+  });
+
+  it('keeps out of places that are larger by their clearance, up and on every side', () => {
+    const [floor, box] = FIVE.keep_out as [FollowerProfile['keep_out'][number], FollowerProfile['keep_out'][number]];
+    // By hand: -20 + 5 mm; a box of 1 to 4, 2 to 5 and 3 to 6 mm, 10 larger each way.
+    expect(compileKeepOut({ ...floor, clearance_mm: 5 })).toEqual({ kind: 'below', zM: expect.closeTo(-0.015, 12) });
+    expect(compileKeepOut({ ...box, clearance_mm: 10 })).toEqual({
+      kind: 'box',
+      minM: [-9, -8, -7].map((mm) => expect.closeTo(mm / 1000, 12) as number),
+      maxM: [14, 15, 16].map((mm) => expect.closeTo(mm / 1000, 12) as number),
     });
   });
 

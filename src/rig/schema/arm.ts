@@ -102,20 +102,31 @@ export const arm = z
   })
   .describe('the geometry of the arm: links, masses and what holds them');
 
+const clearance = z
+  .number()
+  .min(0)
+  .max(1000)
+  .default(0)
+  .describe('how much further off every link has to stay, for its thickness, in millimetres');
+
 export const keepOut = z
   .array(
     z.union([
-      z.strictObject({ below_mm: millimetres().describe('the height that no link may go below, in millimetres') }),
+      z.strictObject({
+        below_mm: millimetres().describe('the height that no link may go below, in millimetres'),
+        clearance_mm: clearance,
+      }),
       z.strictObject({
         box_mm: z
           .tuple([at('the lower corner'), at('the upper corner')])
           .describe('a box that no link may enter, [[x, y, z], [x, y, z]] in millimetres, lower corner first'),
+        clearance_mm: clearance,
       }),
     ]),
   )
   .max(64)
   .describe(
-    'places no link may enter: { below_mm: 0 } or { box_mm: [[x, y, z], [x, y, z]] }, in the base’s level frame',
+    'places no link may enter: { below_mm: 0 } or { box_mm: [[x, y, z], [x, y, z]] }, either with clearance_mm: 30, in the base’s level frame',
   );
 
 export const supply = z

@@ -36,6 +36,14 @@ export const WHOLE_ARM_CASES: readonly MistakeCase[] = [
     ],
   },
   {
+    title: 'a rest pose in the clearance of a keep-out',
+    // The tip at rest stands at x = -171, z = 570 mm, as above, and the link leads away from the box, 5 mm behind it.
+    stork: [armed, asked('keep_out: [{ box_mm: [[-400, -50, 500], [-176, 50, 640]], clearance_mm: 8 }]')],
+    says: [
+      'RIG_POSE_KEPT_OUT stork.yaml:8:3: joints: the rest pose is inside a keep-out, by 3 mm; move the pose or the keep-out; both are in the base’s level frame',
+    ],
+  },
+  {
     title: 'a load limit of an arm without motors',
     stork: [armed, asked('load: limit\nmoving_load: limit')],
     says: [
