@@ -1,6 +1,6 @@
 import { closeSync, existsSync, fdatasyncSync, openSync, readFileSync, statSync, writeSync } from 'node:fs';
 import type { Capture } from '../fit/captures.ts';
-import type { FileText } from '../rig/file-reader.ts';
+import { faultOf, type FileText } from '../rig/file-reader.ts';
 import { captureLine, CAPTURES_HEADER } from './fit-captures-csv.ts';
 
 /** Ten joints swept for ten minutes at a hundred readings a second are 30 MB. */
@@ -8,10 +8,12 @@ const CAPTURES_BYTES_MAX = 64 * 1024 * 1024;
 
 export function readCapturesFile(file: string): FileText {
   try {
-    if (statSync(file).size > CAPTURES_BYTES_MAX) return { fault: 'too large', detail: 'it is no file of captures' };
+    const stat = statSync(file);
+    if (!stat.isFile()) return { fault: 'unreadable', detail: 'it is not a file' };
+    if (stat.size > CAPTURES_BYTES_MAX) return { fault: 'too large', detail: 'it is larger than any captures' };
     return { text: readFileSync(file, 'utf8') };
   } catch (fault) {
-    return { fault: 'unreadable', detail: fault instanceof Error ? fault.message : String(fault) };
+    return faultOf(fault);
   }
 }
 

@@ -27,6 +27,10 @@ export function fitFromCaptures(file: string, options: FitOptions, files: FitFil
   }
   const captures = capturesOf(options.from ?? options.check ?? '', files, printer);
   if (captures === null) return 2;
+  if (captures.length === 0) {
+    printer.err(`error: ${options.from ?? options.check}: there are no captures in it; measure some first\n`);
+    return 2;
+  }
   if (options.check !== undefined) return checkAgainst(loaded, captures, options.json, printer);
   return fitInto(file, loaded, captures, options, files, printer);
 }
@@ -88,13 +92,14 @@ function quantityOption(unit: string): (text: string) => number {
 
 const EXPLAINED = `
 Without --from or --check it measures at this terminal, step by step: horns, wiring, noise at rest,
-sweeps, points at known angles, servo travel, and the follower set alike. Every capture is kept as it
+sweeps, points at known angles, servo travel and deadband, and the follower set alike. Every capture is kept as it
 is made; list, redo, skip and quit are heard at every question, and the same command goes on later.
 
 ${CAUTIONS.join('\n')}
 
 Captures are CSV with the columns step,arm,joint,counts,pulse_us,known_deg (more are allowed); the
-steps are leader-still, leader-sweep, leader-point, servo-point and match.
+steps are leader-still and leader-sweep (counts), leader-point (counts, known_deg), servo-point
+(pulse_us, known_deg), servo-step (pulse_us, moved: 1 or 0) and match (counts, pulse_us).
 
 Exit status: 0 done, 1 the run failed, some joint could not be fitted, or a map has drifted,
 2 the input was wrong and nothing was written, 130 interrupted.`;
@@ -123,8 +128,8 @@ export function fitCommand(
       quantityOption('mm'),
       JITTER_MM,
     )
-    .option('--smooth', 'write the suggested smoothing and deadbands too; a session asks')
     .option('--lag <ms>', 'longest delay that the suggested smoothing may add', quantityOption('ms'), LAG_MS)
+    .option('--smooth', 'write the suggested smoothing and deadbands too; a session asks')
     .addHelpText('after', EXPLAINED)
     .action(async (file, given) => {
       const { from, check, report, jitter, lag } = given;

@@ -5,7 +5,7 @@ import { suggestionLines, wantsSmoothing } from './figures.ts';
 import { fitCaptures } from './fit.ts';
 import { sendHome } from './motion.ts';
 import type { Prompt, SessionEffect, SessionEvent } from './prompt.ts';
-import { inputsOf, type ListedStep, stepsOf } from './step-list.ts';
+import { inputsOf, LEGEND, type ListedStep, listed, nameOf, stepsOf } from './step-list.ts';
 import type { SuggestWish } from './suggest.ts';
 
 /**
@@ -26,8 +26,10 @@ export interface Session {
 
 /** Words that are heard at every prompt. */
 const HELP = [
-  'At any question: list leaves the step and shows all steps, redo begins it anew, skip marks it skipped,',
-  'quit leaves the session. What was captured is kept, and the next session goes on from there.',
+  'At any question: list leaves the step and shows all steps, redo begins it',
+  'anew, skip marks it skipped, quit leaves the session. Between steps: a number',
+  'goes to that step, and fit fits and writes what was measured. What was',
+  'captured is kept, and the next session goes on from there.',
 ];
 
 /** @param wish what smoothing is offered for before the fit; null: none is offered */
@@ -48,28 +50,27 @@ export function session(profiles: RigProfiles, captured: readonly Capture[], wis
   /** Smoothing was offered, and is to be answered. */
   let offered = false;
 
-  const list = (lines: readonly string[]): Prompt => {
-    const width = Math.max(...steps.map(({ name }) => name.length));
-    const rows = steps.map(({ name, mark }, i) => `${String(i + 1).padStart(3)}  ${name.padEnd(width)}  ${mark}`);
+  /** What is asked between steps. */
+  const between = (lines: readonly string[]): Prompt => {
     const next = steps.findIndex(({ mark }) => mark === 'open');
-    const enter = next < 0 ? 'Enter: fit' : `Enter: step ${next + 1}`;
-    return prompt(
-      [...lines, '', ...rows, ''],
-      `${enter}; a number: that step; fit: fit and write; quit: leave (?: help): `,
-    );
+    const step = steps[next];
+    const enter = step === undefined ? 'fit' : `${next + 1} ${nameOf(step)}`;
+    return prompt(lines, `Enter: ${enter} (or a number, list, fit, quit, ?): `);
   };
+  const list = (): readonly string[] => ['', ...listed(steps), LEGEND, ''];
   const unsaid: string[] = [];
   let shown = prompt([]);
   const show = (next: Prompt): void => {
     shown = next;
     unsaid.push(...next.lines);
   };
-  const opening = list([
-    ...(captured.length > 0 ? [`${captured.length} captures of an earlier session are taken up.`] : []),
-    ...HELP,
-  ]);
-
-  show(opening);
+  show(
+    between([
+      ...(captured.length > 0 ? [`${captured.length} captures of an earlier session are taken up.`] : []),
+      ...HELP,
+      ...list(),
+    ]),
+  );
 
   const begin = (step: ListedStep): void => {
     at = step;
@@ -90,7 +91,7 @@ export function session(profiles: RigProfiles, captured: readonly Capture[], wis
     sendHome(bench);
     running = null;
     at = null;
-    show(list(lines));
+    show(between(lines));
   };
   const end = (fit: boolean, smooth = false): void => {
     leave([]);
@@ -138,11 +139,11 @@ export function session(profiles: RigProfiles, captured: readonly Capture[], wis
         show({ ...shown, lines: HELP });
         return;
       case 'list':
-        leave([]);
+        leave(list());
         return;
       case 'skip':
         if (at !== null) at.mark = 'skipped';
-        leave(at === null ? ['There is no step to skip: choose one.'] : []);
+        leave(at === null ? ['There is no step to skip: choose one.'] : [`${nameOf(at)} is skipped.`]);
         return;
       case 'redo': {
         const again = at;

@@ -10,7 +10,10 @@ type Mark = 'open' | 'done' | 'skipped';
 
 /** A step as the session lists it. */
 export interface ListedStep {
-  readonly name: string;
+  /** `sweep of handstick`, for one joint each. */
+  readonly kind: string;
+  /** Of the joint, or what else is measured. */
+  readonly label: string;
   mark: Mark;
   run(): Step<Outcome>;
 }
@@ -31,6 +34,11 @@ export function inputsOf({ leader }: RigProfiles, captured: readonly Capture[]):
 export function stepsOf(bench: Bench): readonly ListedStep[] {
   const { leader, followers } = bench.profiles;
   const servos = benchServos(bench.profiles);
+  // A joint that two servos turn has two horns.
+  const labelOf = ({ follower, joint, channel }: BenchServo): string =>
+    servos.filter((other) => other.follower === follower && other.joint === joint).length > 1
+      ? `${joint} (channel ${channel})`
+      : joint;
   const alone = servos.filter(({ follower, joint }) => {
     const profile = followers[follower];
     return profile !== undefined && servoAlone(profile, joint) !== null;
@@ -45,38 +53,50 @@ export function stepsOf(bench: Bench): readonly ListedStep[] {
   };
   return [
     ...servos.map((servo) => ({
-      name: `horn of ${servo.arm} ${servo.joint}`,
+      kind: `horn of ${servo.arm}`,
+      label: labelOf(servo),
       mark: has(servo.arm, servo.joint, 'servo-point', 'match'),
       run: () => hornStep(bench, servo),
     })),
     ...leader.joints.map(({ name }, joint) => ({
-      name: `wiring of ${leader.leader} ${name}`,
+      kind: `wiring of ${leader.leader}`,
+      label: name,
       mark: has(leader.leader, name, 'leader-sweep', 'leader-point'),
       run: () => wiringStep(bench, joint),
     })),
     ...servos.map((servo) => ({
-      name: `wiring of ${servo.arm} ${servo.joint}`,
+      kind: `wiring of ${servo.arm}`,
+      label: labelOf(servo),
       mark: has(servo.arm, servo.joint, 'servo-point', 'match'),
       run: () => servoWiringStep(bench, servo),
     })),
-    { name: `${leader.leader} at rest`, mark: has(leader.leader, null, 'leader-still'), run: () => stillStep(bench) },
+    {
+      kind: `rest of ${leader.leader}`,
+      label: 'all joints',
+      mark: has(leader.leader, null, 'leader-still'),
+      run: () => stillStep(bench),
+    },
     ...leader.joints.map(({ name }, joint) => ({
-      name: `sweep of ${leader.leader} ${name}`,
+      kind: `sweep of ${leader.leader}`,
+      label: name,
       mark: has(leader.leader, name, 'leader-sweep'),
       run: () => sweepStep(bench, joint),
     })),
     ...leader.joints.map(({ name }, joint) => ({
-      name: `points of ${leader.leader} ${name}`,
+      kind: `points of ${leader.leader}`,
+      label: name,
       mark: has(leader.leader, name, 'leader-point'),
       run: () => pointsStep(bench, joint),
     })),
     ...alone.map((servo) => ({
-      name: `travel of ${servo.arm} ${servo.joint}`,
+      kind: `travel of ${servo.arm}`,
+      label: servo.joint,
       mark: has(servo.arm, servo.joint, 'servo-point'),
       run: () => travelStep(bench, servo),
     })),
     ...alone.map((servo) => ({
-      name: `deadband of ${servo.arm} ${servo.joint}`,
+      kind: `deadband of ${servo.arm}`,
+      label: servo.joint,
       mark: has(servo.arm, servo.joint, 'servo-step'),
       run: () => deadbandStep(bench, servo),
     })),
@@ -85,11 +105,37 @@ export function stepsOf(bench: Bench): readonly ListedStep[] {
       if (source < 0) return [];
       return [
         {
-          name: `match of ${servo.arm} ${servo.joint}`,
+          kind: `match of ${servo.arm}`,
+          label: servo.joint,
           mark: has(servo.arm, servo.joint, 'match'),
           run: () => matchStep(bench, servo, source),
         },
       ];
     }),
   ];
+}
+
+/** A line of the list is no longer, unless one name is. */
+const LINE_CHARACTERS = 78;
+const SIGN: Readonly<Record<Mark, string>> = { open: ' ', done: '+', skipped: '-' };
+
+/** All steps, numbered, a line or more for each kind: `sweep of stick   +8 base   9 elbow`. */
+export function listed(steps: readonly ListedStep[]): readonly string[] {
+  const width = Math.max(...steps.map(({ kind }) => kind.length));
+  const lines: string[] = [];
+  let kindBefore = '';
+  for (const [i, { kind, label, mark }] of steps.entries()) {
+    const entry = `  ${SIGN[mark]}${i + 1} ${label}`;
+    const last = lines.at(-1) ?? '';
+    if (kind === kindBefore && last.length + entry.length <= LINE_CHARACTERS) lines[lines.length - 1] = last + entry;
+    else lines.push((kind === kindBefore ? '' : kind).padEnd(width) + entry);
+    kindBefore = kind;
+  }
+  return lines;
+}
+
+export const LEGEND = '+ is done, - is skipped';
+
+export function nameOf({ kind, label }: ListedStep): string {
+  return `${kind} ${label}`;
 }

@@ -149,7 +149,7 @@ describe('A session', () => {
     const crashed = measure(load(), [], null, keeper(at), first.seat.table);
     // The crash: nobody answers any more, and nothing is closed.
     const typed = typing([
-      [/a number: that step/, '10'],
+      [/or a number/, '10'],
       [/^Angle of base/, inTurn('30', '31', null)],
     ]);
     await expect(play(first.clock, first.seat, crashed, typed, 5)).rejects.toThrow('has not ended');
@@ -161,12 +161,12 @@ describe('A session', () => {
     second.leader[0]?.go(-40, 0);
     const again = measure(load(), kept.captures, null, keeper(at), second.seat.table);
     const more = typing([
-      [/a number: that step/, inTurn('10', 'quit')],
+      [/or a number/, inTurn('10', 'quit')],
       [/^Angle of base/, inTurn('-40', '')],
     ]);
     expect(await play(second.clock, second.seat, again, more, 20)).toBe('quit');
     expect(second.seat.printed()).toContain('2 captures of an earlier session are taken up.');
-    expect(second.seat.printed()).toMatch(/10 {2}points of stick base +done/);
+    expect(second.seat.printed()).toMatch(/points of stick +\+10 base/);
     const all = readCaptures(readFileSync(at, 'utf8'));
     if ('mistakes' in all) throw new Error(JSON.stringify(all.mistakes));
     // Done anew: a new attempt, which replaces the former one.
@@ -182,7 +182,7 @@ describe('A session', () => {
     const at = files.path('moving.csv');
     const ended = measure(load(), [], null, keeper(at), seat.table);
     const typed = typing([
-      [/a number: that step/, inTurn('10', 'quit')],
+      [/or a number/, inTurn('10', 'quit')],
       [/^Angle of base/, inTurn('20', '20', '')],
     ]);
     leader[0]?.go(20, 3);
@@ -195,7 +195,7 @@ describe('A session', () => {
     const { clock, seat, pulses } = bench();
     const ended = measure(load(), [], null, keeper(files.path('safe.csv')), seat.table);
     const typed = typing([
-      [/a number: that step/, inTurn('1', 'quit')],
+      [/or a number/, inTurn('1', 'quit')],
       [/^Type yes/, inTurn('no', '', 'list')],
     ]);
     expect(await play(clock, seat, ended, typed, 20)).toBe('quit');
@@ -208,7 +208,7 @@ describe('A session', () => {
     const ended = measure(load(), [], null, keeper(files.path('vanish.csv')), seat.table);
     let angles = 0;
     const typed = typing([
-      [/a number: that step/, inTurn('12', 'quit')],
+      [/or a number/, inTurn('12', 'quit')],
       [/^Type yes/, 'yes'],
       [
         /^Angle at/,
@@ -230,7 +230,7 @@ describe('A session', () => {
     const ended = measure(load(), [], null, keeper(files.path('gone.csv')), seat.table);
     let standing: number[] = [];
     const typed = typing([
-      [/a number: that step/, '12'],
+      [/or a number/, '12'],
       [/^Type yes/, 'yes'],
       [
         /^Angle at (\d+)/,
@@ -251,7 +251,7 @@ describe('A session', () => {
     const { clock, seat, pulses } = bench();
     const ended = measure(load(), [], null, keeper(files.path('home.csv')), seat.table);
     const typed = typing([
-      [/a number: that step/, '12'],
+      [/or a number/, '12'],
       [/^Type yes/, 'yes'],
       [/^Angle at/, () => (pulses()[0] === 1500 ? '0' : 'quit')],
     ]);

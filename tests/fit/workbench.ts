@@ -164,7 +164,7 @@ export function replies(person: Person, { stopsDeg, sweepS }: PersonOptions): (a
   let moving = '';
   let stood: { joint: string; deg: number } | null = null;
   return (ask, before) => {
-    if (ask.includes('a number: that step')) return at('');
+    if (ask.includes('(or a number')) return at('');
     if (ask.startsWith('Type yes')) return at('yes');
     if (ask.includes('past the middle')) {
       moving = /(\w+) is at its middle pulse/.exec(before)?.[1] ?? '';

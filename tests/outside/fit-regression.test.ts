@@ -51,6 +51,16 @@ describe('The straight fit', () => {
     near(fit.sigma * Math.sqrt(fit.slopeLeverage(0)), 0.157817399981659e-9);
   });
 
+  it('gives the certified coefficients of NIST StRD Wampler1, a polynomial of the fifth degree without scatter', () => {
+    // y = 1 + x + x^2 + x^3 + x^4 + x^5 at x = 0 to 20; every certified coefficient is 1, the residuals are 0.
+    const x = Array.from({ length: 21 }, (_, i) => i);
+    const sum = (at: number): number => [0, 1, 2, 3, 4, 5].reduce((total, k) => total + at ** k, 0);
+    const fit = polynomials(x, x.map(sum), 5)[5] as Polynomial;
+    // Between the points and beyond them only the right coefficients agree.
+    for (const at of [-10, -2.5, 0.5, 7.3, 19.9, 30]) expect(Math.abs(fit.value(at) / sum(at) - 1)).toBeLessThan(1e-8);
+    expect(fit.sigma / sum(20)).toBeLessThan(1e-14);
+  });
+
   /** F. J. Anscombe, "Graphs in Statistical Analysis", Am. Statistician 27 (1973) 17-21. */
   const ANSCOMBE = {
     x: [10, 8, 13, 9, 11, 14, 6, 4, 12, 7, 5],
@@ -129,6 +139,29 @@ describe('The robust line', () => {
     const { slope, offset } = theilSen(NORRIS.x, NORRIS.y);
     expect(slope).toBeCloseTo(1.0021968365553604, 12);
     expect(offset).toBeCloseTo(-0.3010984182776848, 12);
+  });
+});
+
+describe('The robust line of a textbook', () => {
+  /**
+   * M. Hollander, D. A. Wolfe, E. Chicken, Nonparametric Statistical Methods, 3rd ed. (Wiley, 2014), example 9.1, the effect
+   * of cloud seeding on rainfall; data as the book's R package NSM3 has them (`theil(example = TRUE)`).
+   */
+  const years = [1, 2, 3, 4, 5];
+  const ratio = [1.26, 1.27, 1.12, 1.16, 1.03];
+
+  it('has the middle of its ten slopes', () => {
+    // Slopes in order: -0.15 -0.13 -0.08 -0.07 -0.0575 | -0.055 -0.045 -0.0333 0.01 0.04; the book rounds to -0.056 (from memory).
+    // What is then left: 1.28875 1.31125 1.31625 1.3825 1.385.
+    const { slope, offset } = theilSen(years, ratio);
+    expect(slope).toBeCloseTo(-0.05625, 12);
+    expect(offset).toBeCloseTo(1.31625, 12);
+  });
+
+  it('does not move far when one year is misread, and the least-squares line does', () => {
+    const misread = ratio.map((each, i) => (i === 4 ? 10.3 : each));
+    expect(Math.abs(theilSen(years, misread).slope - -0.05625)).toBeLessThan(0.1);
+    expect(line(years, misread).slope(0)).toBeGreaterThan(1.5);
   });
 });
 

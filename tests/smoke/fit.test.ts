@@ -1,8 +1,9 @@
+import { spawnSync } from 'node:child_process';
 import { mkdtempSync, readdirSync, readFileSync, rmSync, writeFileSync } from 'node:fs';
 import { tmpdir } from 'node:os';
 import { join } from 'node:path';
 import { afterAll, afterEach, describe, expect, it } from 'vitest';
-import { type Screen, screen, until } from './screen.ts';
+import { linesOf, type Screen, screen, until } from './screen.ts';
 
 /** A measuring session at a real terminal, over simulated boards. */
 const folder = mkdtempSync(join(tmpdir(), 'eidograph-fit-'));
@@ -23,13 +24,14 @@ writeFileSync(FILE, RIG);
 let at: Screen;
 afterEach(() => at.close());
 
-const FIT = `${process.execPath} --import tsx src/cli/main.ts fit ${FILE}; echo status $?`;
+const PROGRAM = ['--import', 'tsx', 'src/cli/main.ts'];
+const FIT = `${process.execPath} ${PROGRAM.join(' ')} fit ${FILE}; echo status $?`;
 
 describe('eidograph fit at a terminal', () => {
   it('lists its steps, draws the tape while a joint is swept, and leaves with what was captured kept', async () => {
     at = screen(FIT);
-    await until(() => at.shown().includes('sweep of stick base') && at.shown().includes('the board answers'));
-    const sweep = /(\d+) {2}sweep of stick base/.exec(at.shown())?.[1] ?? '';
+    await until(() => at.shown().includes('sweep of stick') && at.shown().includes('the board answers'));
+    const sweep = /sweep of stick +(\d+) base/.exec(at.shown())?.[1] ?? '';
     at.type(`${sweep}\r`);
     // It is drawn five times a second, and a hundred readings, a second of them, make a sweep.
     await until(() => (at.shown().match(/\|[-#o]{50}\| \d+ /g) ?? []).length > 12);
@@ -44,15 +46,45 @@ describe('eidograph fit at a terminal', () => {
     expect(readFileSync(FILE, 'utf8')).toBe(RIG);
   });
 
-  it('ends with 130 at Ctrl-C, whatever it was asking, and has written nothing', async () => {
+  it.each([
+    ['between two steps', []],
+    ['while it asks whether the arm is safe', ['1']],
+    ['while a joint is swept', ['sweep']],
+    ['while a joint is to be held', ['points']],
+    ['while a servo is away from its middle', ['travel', 'yes', '0']],
+  ])('ends with 130 at Ctrl-C %s, and has written nothing', async (_, lines) => {
+    const before = readdirSync(folder);
     at = screen(FIT);
-    await until(() => at.shown().includes('Enter: step'));
-    at.type('1\r');
-    await until(() => at.shown().includes('Type yes'));
+    await until(() => at.shown().includes('Enter: 1 horn') && at.shown().includes('the board answers'));
+    for (const line of lines) {
+      const asked = questions(at).length;
+      const step = new RegExp(`${line} of \\w+ +\\+?(\\d+) base`).exec(at.shown())?.[1];
+      at.type(`${step ?? line}\r`);
+      await until(() => questions(at).length > asked);
+    }
     at.type('\x03');
     await until(() => at.shown().includes('status '));
     expect(at.shown()).toContain('status 130');
+    expect(at.shown()).toContain('The profiles are as they were.');
     expect(readFileSync(FILE, 'utf8')).toBe(RIG);
-    expect(readdirSync(folder).filter((name) => name.startsWith('bench.yaml'))).toEqual(['bench.yaml']);
+    expect(readdirSync(folder).filter((name) => !before.includes(name) && !name.endsWith('.captures.csv'))).toEqual([]);
+  });
+
+  it('without a terminal says what to do instead, and opens and writes nothing', () => {
+    const before = readdirSync(folder);
+    const { status, stderr, stdout } = spawnSync(process.execPath, [...PROGRAM, 'fit', FILE], {
+      encoding: 'utf8',
+      stdio: ['ignore', 'pipe', 'pipe'],
+    });
+    expect([status, stdout]).toEqual([2, '']);
+    expect(stderr).toBe(
+      'error: there is no terminal to ask at; say --from captures.csv to fit what was recorded before\n',
+    );
+    expect(readdirSync(folder)).toEqual(before);
   });
 });
+
+/** Questions that have been asked so far, those drawn anew counted once. */
+function questions(at: Screen): readonly string[] {
+  return linesOf(at.shown()).filter((line, i, all) => /[:?] \S*$/.test(line) && line !== all[i - 1]);
+}
