@@ -9,8 +9,6 @@ export interface PageReader {
   readonly buffers: readonly number[];
   /** Looks at this batch from now on; false where a column lacks values, or time goes back. */
   open(frame: Frame, body: Uint8Array): boolean;
-  /** Stamp of the batch's last row. */
-  readonly lastUs: number;
   /** Row `r` of it, reused. */
   row(r: number): Row;
 }
@@ -102,9 +100,6 @@ export function pageReader(header: TakeHeader): PageReader {
       for (let j = 0; j < joints; j++) pose[j] = new Float64Array(buffer, at(FIXED + inputs + j), rows);
       for (const arm of arms) openArm(arm, at, body);
       return goesForward(time);
-    },
-    get lastUs() {
-      return stampOf(time, rows - 1);
     },
     row(r) {
       row.tUs = stampOf(time, r);

@@ -28,7 +28,7 @@ export interface Take {
   readonly damagedRows: number;
   /** The first `MARKS_MAX`, in order. */
   readonly marks: readonly Mark[];
-  /** Every row from the batch that holds `fromUs` on, in order, in a reused row; earlier rows of that batch come too. */
+  /** Every row from `fromUs` on, in order, in a reused row; some that stand before it come first, if there are any. */
   readFrom(fromUs: number): Iterable<Row>;
   /** Has the system bring this stretch into its memory without waiting for it, so that reading it is quick. */
   fetch(fromUs: number, toUs: number): void;
@@ -87,8 +87,8 @@ function judge(name: string, descriptor: number): Take | TakeFault {
     return takeFault('TAKE_EMPTY', name, 'it was cut before its first rows were written');
 
   let damagedRows = 0;
-  /** Rows of the batches that begin at `fromByte` or after it and before `toByte`, and end at `fromUs` or after it. */
-  const rowsOf = function* (fromByte: number, toByte: number, fromUs: number): Generator<Row> {
+  /** Rows of the batches that begin at `fromByte` or after it and before `toByte`. */
+  const rowsOf = function* (fromByte: number, toByte: number): Generator<Row> {
     const page = pageReader(header);
     const readNext = fileWindow(descriptor, WINDOW_BYTES);
     for (let offset = fromByte; offset < toByte; ) {
@@ -98,12 +98,12 @@ function judge(name: string, descriptor: number): Take | TakeFault {
       offset = frameEnd(frame);
       if (frame.kind !== 'batch' || frame.rows === 0) continue;
       if (!page.open(frame, readNext(bodyAt(frame), frame.bodyBytes))) damagedRows += frame.rows;
-      else if (page.lastUs >= fromUs) for (let r = 0; r < frame.rows; r++) yield page.row(r);
+      else for (let r = 0; r < frame.rows; r++) yield page.row(r);
     }
   };
   const marks: Mark[] = [];
   for (const offset of found.named)
-    for (const row of rowsOf(offset, offset + 1, 0))
+    for (const row of rowsOf(offset, offset + 1))
       if (row.name !== '' && marks.length < MARKS_MAX) marks.push({ name: row.name, tUs: row.tUs });
   damagedRows = 0;
   const pages = fetcher(descriptor);
@@ -121,7 +121,7 @@ function judge(name: string, descriptor: number): Take | TakeFault {
     },
     marks,
     readFrom: (fromUs) => ({
-      [Symbol.iterator]: () => rowsOf(placeFor(found.places, fromUs), found.endBytes, fromUs),
+      [Symbol.iterator]: () => rowsOf(placeFor(found.places, fromUs), found.endBytes),
     }),
     fetch(fromUs, toUs) {
       const from = placeFor(found.places, fromUs);

@@ -1,4 +1,5 @@
 import { US_PER_MS, US_PER_S } from '../clock/clock.ts';
+import type { TakeHeader } from './header.ts';
 import type { Take } from './reader.ts';
 import { copyRow, EVENT_CODES, NO_FOLLOWER, NO_KEY, type Row, row as makeRow, type RowFollower } from './row.ts';
 
@@ -24,7 +25,7 @@ export function* resampled(take: Take, rateHz: number, fromUs = 0, toUs = take.d
   const instants = Math.floor(((toUs - fromUs) * rateHz) / US_PER_S) + 1;
   const slots = Array.from({ length: Math.ceil(HOLD_US / periodUs) + 3 }, () => makeRow(header));
   const sources = Array.from({ length: 1 + header.followers.length }, (): Source => ({ next: 0, atUs: Number.NaN }));
-  const last = makeRow(header);
+  const last = nothingKnown(header);
   let made = 0;
   let given = 0;
   let name = '';
@@ -49,6 +50,8 @@ export function* resampled(take: Take, rateHz: number, fromUs = 0, toUs = take.d
     const source = sources[s] as Source;
     for (; source.next < made && instantUs(source.next) <= untilUs; source.next++) {
       const at = instantUs(source.next);
+      // Until its first value came, an instant keeps how things stood then.
+      if (Number.isNaN(source.atUs) && now?.tUs !== at) continue;
       const gap = now === null ? 0 : now.tUs - source.atUs;
       const share = now === null || !(gap > 0 && gap <= HOLD_US) ? (now?.tUs === at ? 1 : 0) : (at - source.atUs) / gap;
       mix(slotOf(source.next), last, now ?? last, share, s - 1);
@@ -84,6 +87,14 @@ export function* resampled(take: Take, rateHz: number, fromUs = 0, toUs = take.d
     for (let s = 0; s < sources.length; s++) fill(s, Number.POSITIVE_INFINITY, null);
     yield slotOf(given++);
   }
+}
+
+/** How things stand before the first row: nobody knows. */
+function nothingKnown(header: TakeHeader): Row {
+  const row = makeRow(header);
+  for (const arm of row.followers)
+    for (const values of [arm.angleRad, arm.targetRad, arm.speedRadS]) values.fill(Number.NaN);
+  return row;
 }
 
 function isNewFor(follower: number, row: Row): boolean {

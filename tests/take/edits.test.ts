@@ -219,6 +219,30 @@ describe('resampling', () => {
     );
   });
 
+  it('knows no angle before the first event, and each from then on', () => {
+    const first = rowsOf(take)[0] as Row;
+    expect(first.tUs).toBeGreaterThan(10_000);
+    for (const { tUs, followers } of resampled(take, 100, 0, 2_000_000))
+      for (const { angleRad, targetRad, speedRadS } of followers)
+        for (const values of [angleRad, targetRad, speedRadS])
+          expect(Array.from(values, (value) => !Number.isNaN(value))).toEqual([tUs >= first.tUs, tUs >= first.tUs]);
+  });
+
+  it('says the same from a moment on as from the beginning, wherever batches begin', () => {
+    const whole = Array.from(resampled(take, 100), ({ followers }) => followers[0]?.angleRad[0]);
+    fc.assert(
+      fc.property(fc.integer({ min: 100, max: 700 }), (k) => {
+        const some = Array.from(
+          resampled(take, 100, k * 10_000, (k + 20) * 10_000),
+          ({ followers }) => followers[0]?.angleRad[0],
+        );
+        // At either end a neighbour to come from may lie outside the stretch.
+        expect(some.slice(4, 17)).toEqual(whole.slice(k + 4, k + 17));
+      }),
+      { numRuns: 40 },
+    );
+  });
+
   it('lies between the commands on either side', () => {
     const commands = rowsOf(take).filter(({ followers }) => followers[0]?.commanded === 1);
     for (const row of resampled(take, 137, 4_000_000, 6_000_000)) {
