@@ -1,8 +1,9 @@
 import { closeSync, openSync, readSync, writeSync } from 'node:fs';
 import { devNull } from 'node:os';
-import { RecordBatchReader, RecordBatchStreamWriter } from 'apache-arrow';
+import { RecordBatchReader } from 'apache-arrow';
 import { type ExportFormat, exportTakes } from '../../src/take/export.ts';
 import type { Take } from '../../src/take/reader.ts';
+import { arrowStream, END_MARK } from '../../src/take/stream.ts';
 import { summarize } from '../../src/take/summary.ts';
 import { opened } from './take-scene.ts';
 import { median } from './task.ts';
@@ -26,7 +27,7 @@ const WORKS: readonly {
   readonly asked: number | null;
   /** Slow ones take part in the first round only. */
   readonly once: boolean;
-  run(file: string): void | Promise<void>;
+  run(file: string): void;
 }[] = [
   { what: COPY, asked: null, once: false, run: plainCopy },
   { what: 'open', asked: null, once: false, run: (file) => opened(file).close() },
@@ -36,7 +37,7 @@ const WORKS: readonly {
   { what: 'export to Parquet', asked: null, once: true, run: (file) => exported(file, 'parquet') },
 ];
 
-export async function rates(file: string, rounds: number): Promise<readonly Rate[]> {
+export function rates(file: string, rounds: number): readonly Rate[] {
   const take = opened(file);
   const { rows } = take;
   take.close();
@@ -45,7 +46,7 @@ export async function rates(file: string, rounds: number): Promise<readonly Rate
     for (const [i, { run, once }] of WORKS.entries()) {
       if (once && round > 0) continue;
       const begun = performance.now();
-      await run(file);
+      run(file);
       times[i]?.push((performance.now() - begun) / 1e3);
     }
   }
@@ -63,7 +64,7 @@ export async function rates(file: string, rounds: number): Promise<readonly Rate
 
 const PIECE_BYTES = 1024 * 1024;
 
-async function plainCopy(file: string): Promise<void> {
+function plainCopy(file: string): void {
   const from = openSync(file, 'r');
   const to = openSync(devNull, 'w');
   const pieces = function* (): Generator<Uint8Array> {
@@ -74,17 +75,11 @@ async function plainCopy(file: string): Promise<void> {
       yield piece.subarray(0, got);
     }
   };
-  const writer = new RecordBatchStreamWriter();
-  const written = (async () => {
-    for await (const bytes of writer) writeSync(to, bytes);
-  })();
-  for (const batch of RecordBatchReader.from(pieces())) {
-    writer.write(batch);
-    // What has been written leaves before the next: the copy is bounded too.
-    await Promise.resolve();
-  }
-  writer.finish();
-  await written;
+  const batches = RecordBatchReader.from(pieces()).open();
+  const stream = arrowStream(batches.schema);
+  writeSync(to, stream.head);
+  for (const batch of batches) writeSync(to, stream.encode(batch));
+  writeSync(to, END_MARK);
   closeSync(from);
   closeSync(to);
 }

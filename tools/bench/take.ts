@@ -61,7 +61,7 @@ export async function takeFigures(size: TakeSize): Promise<TakeFigures> {
       minutes: (size.readings * size.times[1] * INTERVAL_US) / 60e6,
       rows: take.rows,
       megabytes: take.bytes / 1e6,
-      rates: await rates(long, size.rounds),
+      rates: rates(long, size.rounds),
       memory: await memories({ record: played, show: [short, long], play: played, export: [short, long] }),
     };
   } finally {
