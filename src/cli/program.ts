@@ -41,8 +41,15 @@ function program(): CommandUnknownOpts {
     .showHelpAfterError('(--help explains)')
     .addHelpText('after', EXPLAINED)
     .exitOverride();
-  for (const make of COMMANDS) root.addCommand(make().copyInheritedSettings(root));
+  for (const make of COMMANDS) root.addCommand(inheriting(make(), root));
   return root;
+}
+
+/** What is wrong in a subcommand's subcommand ends like everything else. */
+function inheriting(command: CommandUnknownOpts, parent: CommandUnknownOpts): CommandUnknownOpts {
+  command.copyInheritedSettings(parent);
+  for (const sub of command.commands) inheriting(sub, command);
+  return command;
 }
 
 /**

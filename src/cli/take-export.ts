@@ -1,8 +1,6 @@
 import { resolve } from 'node:path';
-import { existsSync } from 'node:fs';
-import { wholeFile } from '../take/disk.ts';
+import { outputFile } from '../take/disk.ts';
 import { type ExportFormat, exportTakes } from '../take/export.ts';
-import { diskFault, takeFault } from '../take/fault.ts';
 import { withTakes } from './take-files.ts';
 import { refusedStatus, worked } from './take-work.ts';
 import type { TakeWorld } from './take-world.ts';
@@ -30,13 +28,8 @@ export function exportCommand(names: readonly string[], options: ExportCommand, 
       return 'status' in exported ? exported.status : 0;
     }
     const file = resolve(out);
-    if (existsSync(file)) return refusedStatus(takeFault('TAKE_FILE', out, 'it is there already'), world.err);
-    let whole: ReturnType<typeof wholeFile>;
-    try {
-      whole = wholeFile(file);
-    } catch (error) {
-      return refusedStatus(diskFault(out, error), world.err);
-    }
+    const whole = outputFile(file, out);
+    if ('code' in whole) return refusedStatus(whole, world.err);
     try {
       const exported = await worked(exportTakes(takes, settings, whole.write), world);
       if ('status' in exported) return exported.status;

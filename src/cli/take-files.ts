@@ -1,5 +1,6 @@
-import { takeFile, takesFolder } from '../take/folder.ts';
-import { isTakeFault, takeFault } from '../take/fault.ts';
+import { nearest } from '../port/nearest.ts';
+import { takeFile, takeNames, takesFolder } from '../take/folder.ts';
+import { isTakeFault, type TakeFault, takeFault } from '../take/fault.ts';
 import { openTake, type Take } from '../take/reader.ts';
 import { refusedStatus } from './take-work.ts';
 import type { TakeWorld } from './take-world.ts';
@@ -10,13 +11,17 @@ export function takeOrStatus(world: TakeWorld, folder: string, name: string): Ta
   if ('fault' in place) return refusedStatus(place.fault, world.err);
   const take = openTake(place.file);
   if (isTakeFault(take)) {
-    // Whoever looks in vain wants to know where.
-    const where =
-      take.code === 'TAKE_MISSING' ? takeFault(take.code, take.take, `there is no such take in ${folder}`) : take;
-    return refusedStatus(where, world.err);
+    return refusedStatus(take.code === 'TAKE_MISSING' ? missing(folder, name) : take, world.err);
   }
   if (take.lostBytes !== null) world.err.write(`${lostSentence(take)}\n`);
   return take;
+}
+
+/** Whoever looks in vain wants to know where, and what was nearly meant. */
+function missing(folder: string, name: string): TakeFault {
+  const near = nearest(name, takeNames(folder));
+  const meant = near === null ? '' : `, but one that is called ${near}`;
+  return takeFault('TAKE_MISSING', name, `there is no such take in ${folder}${meant}`);
 }
 
 /** Calls `use` with takes that are open, and closes them. */

@@ -139,7 +139,12 @@ function scoreFor(take: Take, rig: CompiledRig, options: PlayOptions): Score | T
   if (isTakeFault(followers)) return followers;
   const inHand = options.layer?.joints ?? [];
   const strange = inHand.find((joint) => !plan.leader.joints.some(({ name }) => name === joint));
-  if (strange !== undefined) return takeFault('TAKE_JOINTS', take.name, `the rig's leader has no joint ${strange}`);
+  if (strange !== undefined)
+    return takeFault(
+      'TAKE_JOINTS',
+      take.name,
+      `the rig's leader has no joint ${strange}, only ${plan.leader.joints.map(({ name }) => name).join(', ')}`,
+    );
   const posed = Uint8Array.from(plan.leader.joints, ({ name }) => (inHand.includes(name) ? 0 : 1));
   return { ...stretch, cast: { leader, followers }, by: options.by, speed: options.speed, posed };
 }

@@ -1,11 +1,10 @@
-import { existsSync } from 'node:fs';
 import { resolve } from 'node:path';
 import { stripSheet } from '../draw/strip-sheet.ts';
-import { wholeFile } from '../take/disk.ts';
+import { outputFile } from '../take/disk.ts';
 import { takeNames, takesFolder, takeFile, writtenAt, freeBytes } from '../take/folder.ts';
 import { diskFault, isTakeFault, type TakeFault, takeFault } from '../take/fault.ts';
 import { openTake, type Take } from '../take/reader.ts';
-import { strips } from '../take/strips.ts';
+import { limitWord, strips } from '../take/strips.ts';
 import { type FollowerSummary, summarize, type TakeSummary } from '../take/summary.ts';
 import { withTakes } from './take-files.ts';
 import { refusedStatus, worked } from './take-work.ts';
@@ -22,7 +21,7 @@ export async function listTakes({ takes, json }: ListOptions, world: TakeWorld):
   const listed = takeNames(folder).map((name) => {
     const place = takeFile(folder, name);
     const take = 'fault' in place ? place.fault : openTake(place.file);
-    if (isTakeFault(take)) return { take: name, fault: take.code };
+    if (isTakeFault(take)) return { take: name, fault: take.code, detail: take.detail };
     take.close();
     return {
       take: name,
@@ -45,7 +44,7 @@ export async function listTakes({ takes, json }: ListOptions, world: TakeWorld):
   const width = Math.max(4, ...listed.map(({ take }) => take.length));
   for (const one of listed) {
     if ('fault' in one) {
-      world.out.write(`${one.take.padEnd(width)}  cannot be read: ${one.fault}\n`);
+      world.out.write(`${one.take.padEnd(width)}  cannot be read: ${one.detail}\n`);
       continue;
     }
     const made = one.parents.length === 0 ? '' : `  ${one.made_by} of ${one.parents.join(' and ')}`;
@@ -94,17 +93,15 @@ async function drawStrips(take: Take, svg: string, only: readonly string[], worl
 
 /** Writes a file whole, never over one that is there. */
 function writeNew(file: string, name: string, text: string): TakeFault | null {
-  if (existsSync(file)) return takeFault('TAKE_FILE', name, 'it is there already');
+  const whole = outputFile(file, name);
+  if ('code' in whole) return whole;
   try {
-    const whole = wholeFile(file);
-    try {
-      whole.write(Buffer.from(text));
-      return whole.keep();
-    } finally {
-      whole.drop();
-    }
+    whole.write(Buffer.from(text));
+    return whole.keep();
   } catch (error) {
     return diskFault(name, error);
+  } finally {
+    whole.drop();
   }
 }
 
@@ -140,7 +137,7 @@ function describeFollower(arm: FollowerSummary): readonly string[] {
         .slice(0, SPANS_SHOWN)
         .map(
           ({ by, from_s, to_s }) =>
-            `      ${by === 'range' ? 'clipped by its range' : `held back by ${by.replace('_', ' ')}`} ${span(from_s, to_s)}`,
+            `      ${by === 'range' ? 'clipped by its range' : `held back by ${limitWord(by)}`} ${span(from_s, to_s)}`,
         ),
     ]),
   ];

@@ -26,9 +26,21 @@ export function renames(take: Take, pairs: readonly string[]): Renames | TakeFau
     const [was, is, ...more] = pair.split('=').map((part) => part.trim());
     if (was === undefined || is === undefined || was === '' || is === '' || more.length > 0)
       return takeFault('TAKE_JOINTS', take.name, `"${pair}" is no pair of names`);
+    if (!hasPart(take, was)) {
+      const { leader, followers } = take.header;
+      const known = [...leader.joints, ...followers.map(({ name }) => name)].join(', ');
+      return takeFault('TAKE_JOINTS', take.name, `it has no joint or follower ${was}, only ${known}`);
+    }
     map.set(is, was);
   }
   return map;
+}
+
+function hasPart({ header: { leader, followers } }: Take, name: string): boolean {
+  return (
+    leader.joints.includes(name) ||
+    followers.some((arm) => arm.name === name || arm.joints.some((joint) => joint.name === name))
+  );
 }
 
 /** Casts a take's leader joints to a rig's leader: every joint of the rig needs a part. */

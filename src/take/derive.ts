@@ -1,4 +1,5 @@
 import { join } from 'node:path';
+import { US_PER_S } from '../clock/clock.ts';
 import { offlineDisk, wholeFile } from './disk.ts';
 import { diskFault, takeFault, type TakeFault } from './fault.ts';
 import { takeFile } from './folder.ts';
@@ -86,7 +87,7 @@ export function stretchOf(take: Take, from: string | undefined, to: string | und
   const toUs = to === undefined ? take.durationUs : momentUs(take, to);
   if (typeof toUs !== 'number') return toUs;
   if (fromUs < 0 || toUs > take.durationUs || fromUs >= toUs) {
-    const seconds = (us: number): string => `${us / 1e6} s`;
+    const seconds = (us: number): string => `${Number((us / US_PER_S).toFixed(3))} s`;
     const wrong = `${seconds(fromUs)} to ${seconds(toUs)} is no stretch of its ${seconds(take.durationUs)}`;
     return takeFault('TAKE_RANGE', take.name, wrong);
   }

@@ -5,6 +5,7 @@ import {
   fdatasync,
   fdatasyncSync,
   ftruncate,
+  linkSync,
   mkdirSync,
   openSync,
   renameSync,
@@ -65,10 +66,12 @@ export interface WholeFile {
   drop(): void;
 }
 
-/** Throws what the system says: whoever writes a whole file catches it where the work as a whole is guarded. */
-export function wholeFile(file: string, over = false): WholeFile {
-  mkdirSync(dirname(file), { recursive: true });
-  const beside = join(dirname(file), `.${basename(file)}.new`);
+/**
+ * A new file in a folder that is there. Throws what the system says: whoever writes a whole file catches it where the work
+ * as a whole is guarded.
+ */
+export function wholeFile(file: string): WholeFile {
+  const beside = join(dirname(file), `.${basename(file)}.${process.pid}.new`);
   const descriptor = openSync(beside, 'w');
   let open = true;
   const shut = (): void => {
@@ -83,12 +86,9 @@ export function wholeFile(file: string, over = false): WholeFile {
     keep() {
       fdatasyncSync(descriptor);
       shut();
-      if (!over && existsSync(file)) {
-        rmSync(beside, { force: true });
-        return takeFault('TAKE_EXISTS', nameOf(file), 'there is a take of this name');
-      }
-      renameSync(beside, file);
-      return null;
+      const isNew = placed(beside, file);
+      rmSync(beside, { force: true });
+      return isNew ? null : takeFault('TAKE_EXISTS', nameOf(file), 'there is a take of this name');
     },
     drop() {
       if (!open) return;
@@ -96,6 +96,32 @@ export function wholeFile(file: string, over = false): WholeFile {
       rmSync(beside, { force: true });
     },
   };
+}
+
+/** Gives a file its name, unless that is taken, however late: false. */
+function placed(beside: string, file: string): boolean {
+  try {
+    linkSync(beside, file);
+    return true;
+  } catch (error) {
+    if (existsSync(file)) return false;
+    // Some disks have no links (FAT); there a name can only be looked for first.
+    if (error instanceof Error && 'code' in error && error.code === 'ENOENT') throw error;
+    renameSync(beside, file);
+    return true;
+  }
+}
+
+/** A file of an export or a drawing; what is wrong is said of the file, not of a take. */
+export function outputFile(file: string, name: string): WholeFile | TakeFault {
+  if (existsSync(file)) return takeFault('TAKE_FILE', name, 'it is there already');
+  try {
+    return wholeFile(file);
+  } catch (error) {
+    const isMissing =
+      error instanceof Error && 'code' in error && (error.code === 'ENOENT' || error.code === 'ENOTDIR');
+    return isMissing ? takeFault('TAKE_FILE', name, `there is no folder ${dirname(file)}`) : diskFault(name, error);
+  }
 }
 
 /** A whole file as a disk: what is written has been written when the call returns. */

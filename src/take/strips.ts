@@ -171,7 +171,7 @@ function limitedRuns(columns: Uint8Array): readonly ShadedRun[] {
   return (['clipped', 'limited', 'held'] as const).flatMap((shade) =>
     runsOf(columns, LIMITS_SHOWN[shade]).map((run): ShadedRun => {
       const met = columns.slice(run.from, run.to).reduce((bits, each) => bits | each, 0) & LIMITS_SHOWN[shade];
-      const words = Object.entries(LIMITS).flatMap(([word, bit]) => ((met & bit) === 0 ? [] : [WORDS[word] ?? word]));
+      const words = Object.entries(LIMITS).flatMap(([word, bit]) => ((met & bit) === 0 ? [] : [limitWord(word)]));
       return { ...run, shade, word: words.join(', ') };
     }),
   );
@@ -179,6 +179,11 @@ function limitedRuns(columns: Uint8Array): readonly ShadedRun[] {
 
 /** Where a limit's name is not yet a word for people. */
 const WORDS: Readonly<Record<string, string>> = { end_speed: 'end speed', keep_out: 'keep-out', sick: 'sick pot' };
+
+/** What people call one of `LIMITS`. */
+export function limitWord(limit: string): string {
+  return WORDS[limit] ?? limit;
+}
 
 function laneOf(states: Uint8Array): StripGroup['lane'] {
   const runs: { from: number; to: number; word: string }[] = [];

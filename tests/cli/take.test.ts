@@ -142,6 +142,11 @@ describe('eidograph take', () => {
 
   it.each([
     ['show nothing', /nothing: there is no such take in .*take list/],
+    ['show bwo', /bwo: there is no such take in .*, but one that is called bow; name one that/],
+    ['show ..', /this is no name for a take; use letters/],
+    ['show bow/../../etc/passwd', /this is no name for a take; use letters/],
+    ['show bow --svg nowhere/bow.svg', /nowhere\/bow.svg: there is no folder .*nowhere; name another file/],
+    ['export bow --out nowhere/bow.csv', /nowhere\/bow.csv: there is no folder .*nowhere; name another file/],
     ['show ../bow', /this is no name for a take; use letters/],
     ['trim bow --from 3s --to 2s --as x', /3 s to 2 s is no stretch of its 6 s/],
     ['trim bow --from never --as x', /it has no mark "never"/],
@@ -150,6 +155,17 @@ describe('eidograph take', () => {
   ])('refuses "%s" with a remedy and status 2', async (args, sentence) => {
     const { status, err } = await take(args);
     expect([status, err]).toEqual([2, expect.stringMatching(sentence)]);
+  });
+
+  it('lists what cannot be read with what is the matter', async () => {
+    writeFileSync(join(folder, 'nothing.arrows'), '');
+    writeFileSync(join(folder, 'letter.arrows'), 'Dear stork, '.repeat(30));
+    const { out, status } = await take('list');
+    expect(status).toBe(0);
+    expect(out).toMatch(/^nothing +cannot be read: there is nothing in it$/m);
+    expect(out).toMatch(/^letter +cannot be read: it is no Arrow stream/m);
+    const { takes } = JSON.parse((await take('list --json')).out) as { takes: Record<string, unknown>[] };
+    expect(takes.find((one) => one['take'] === 'nothing')).toMatchObject({ fault: 'TAKE_EMPTY' });
   });
 
   it('opens a take that was cut, and says so', async () => {
