@@ -33,6 +33,8 @@ const DRAW_US = 200 * US_PER_MS;
 /** The longest way home: the whole span of a servo, at the speed of a jog. */
 const HOME_US = 25 * US_PER_S;
 const STILL_US = US_PER_S;
+/** A board that sends nothing for so long has lost its cable, or its mind. */
+const SILENT_US = 3 * US_PER_S;
 
 interface Asked {
   readonly follower: number;
@@ -66,6 +68,8 @@ export async function measure(
   let finish: (why: FitEnding) => void = () => {};
   const over = new Promise<FitEnding>((resolve) => (finish = resolve));
   let drawn = '';
+  /** The last reading, or when it last did not matter. */
+  let heardUs = clock.nowUs();
   let drawnUs = Number.NEGATIVE_INFINITY;
 
   const print = (text: string): void => {
@@ -153,6 +157,9 @@ export async function measure(
       }
     });
     if (asked !== null) jogging(asked, nowUs);
+    if (!session.listens) heardUs = nowUs;
+    else if (nowUs - heardUs > SILENT_US)
+      session.take({ kind: 'silent', why: `${measured.plan.leader.name} sends no readings; look to its port.` });
     after();
     cancel = clock.at(nowUs + LOOK_US, look);
   };
@@ -176,7 +183,9 @@ export async function measure(
   };
 
   const readings = live.events$.subscribe((event) => {
-    if (event.kind === 'reading') session.take({ kind: 'reading', tUs: event.tUs, counts: event.counts });
+    if (event.kind !== 'reading') return;
+    heardUs = clock.nowUs();
+    session.take({ kind: 'reading', tUs: event.tUs, counts: event.counts });
   });
   const interrupt = (): void => {
     // Nothing goes home: a frightened hand wants everything to stay where it is.

@@ -27,6 +27,8 @@ export type SessionEvent =
   | { readonly kind: 'jogged'; readonly follower: number; readonly home: boolean }
   /** A follower has its pulses and stands still: its servos can be jogged. */
   | { readonly kind: 'awake'; readonly follower: number }
+  /** No reading has come for so long that none is on its way; only told while `listens`. */
+  | { readonly kind: 'silent'; readonly why: string }
   /** Its port went down, its board restarted, or it was stopped: no jog until it is awake again. */
   | { readonly kind: 'asleep'; readonly follower: number; readonly why: string };
 

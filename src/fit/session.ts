@@ -17,6 +17,8 @@ export interface Session {
   /** What the operator is asked or told now. */
   readonly prompt: Prompt;
   readonly over: boolean;
+  /** The step that is under way cannot go on without readings. */
+  readonly listens: boolean;
   take(event: SessionEvent): void;
   /** What is new to be read, in order; each line is handed out once. */
   said(): readonly string[];
@@ -165,6 +167,9 @@ export function session(profiles: RigProfiles, captured: readonly Capture[], wis
     get over() {
       return over;
     },
+    get listens() {
+      return at?.listens === true;
+    },
     take(event) {
       if (over) return;
       switch (event.kind) {
@@ -182,6 +187,9 @@ export function session(profiles: RigProfiles, captured: readonly Capture[], wis
             bench.away = null;
             leave([`${event.why} The step was left; do it again when the arm is back.`]);
           }
+          return;
+        case 'silent':
+          if (at?.listens === true) leave([`${event.why} The step was left; do it again when readings come.`]);
           return;
         case 'jogged':
           if (event.home) bench.away = null;

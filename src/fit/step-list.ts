@@ -14,6 +14,8 @@ export interface ListedStep {
   readonly kind: string;
   /** Of the joint, or what else is measured. */
   readonly label: string;
+  /** It cannot go on without the leader's readings. */
+  readonly listens: boolean;
   mark: Mark;
   run(): Step<Outcome>;
 }
@@ -56,48 +58,56 @@ export function stepsOf(bench: Bench): readonly ListedStep[] {
       kind: `horn of ${servo.arm}`,
       label: labelOf(servo),
       mark: has(servo.arm, servo.joint, 'servo-point', 'match'),
+      listens: false,
       run: () => hornStep(bench, servo),
     })),
     ...leader.joints.map(({ name }, joint) => ({
       kind: `wiring of ${leader.leader}`,
       label: name,
       mark: has(leader.leader, name, 'leader-sweep', 'leader-point'),
+      listens: true,
       run: () => wiringStep(bench, joint),
     })),
     ...servos.map((servo) => ({
       kind: `wiring of ${servo.arm}`,
       label: labelOf(servo),
       mark: has(servo.arm, servo.joint, 'servo-point', 'match'),
+      listens: false,
       run: () => servoWiringStep(bench, servo),
     })),
     {
       kind: `rest of ${leader.leader}`,
       label: 'all joints',
       mark: has(leader.leader, null, 'leader-still'),
+      listens: true,
       run: () => stillStep(bench),
     },
     ...leader.joints.map(({ name }, joint) => ({
       kind: `sweep of ${leader.leader}`,
       label: name,
       mark: has(leader.leader, name, 'leader-sweep'),
+      listens: true,
       run: () => sweepStep(bench, joint),
     })),
     ...leader.joints.map(({ name }, joint) => ({
       kind: `points of ${leader.leader}`,
       label: name,
       mark: has(leader.leader, name, 'leader-point'),
+      listens: true,
       run: () => pointsStep(bench, joint),
     })),
     ...alone.map((servo) => ({
       kind: `travel of ${servo.arm}`,
       label: servo.joint,
       mark: has(servo.arm, servo.joint, 'servo-point'),
+      listens: false,
       run: () => travelStep(bench, servo),
     })),
     ...alone.map((servo) => ({
       kind: `deadband of ${servo.arm}`,
       label: servo.joint,
       mark: has(servo.arm, servo.joint, 'servo-step'),
+      listens: false,
       run: () => deadbandStep(bench, servo),
     })),
     ...alone.flatMap((servo) => {
@@ -108,6 +118,7 @@ export function stepsOf(bench: Bench): readonly ListedStep[] {
           kind: `match of ${servo.arm}`,
           label: servo.joint,
           mark: has(servo.arm, servo.joint, 'match'),
+          listens: true,
           run: () => matchStep(bench, servo, source),
         },
       ];

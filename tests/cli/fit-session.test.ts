@@ -225,6 +225,40 @@ describe('A session', () => {
     expect('captures' in read && read.captures.length).toBeGreaterThan(0);
   });
 
+  it('tells when the leader’s port vanishes halfway, leaves the step, and keeps what was captured', async () => {
+    const { clock, seat, hand } = bench();
+    const ended = measure(load(), [], null, keeper(files.path('silent.csv')), seat.table);
+    let angles = 0;
+    const typed = typing([
+      [/or a number/, inTurn('10', 'quit')],
+      [
+        /^Angle of base/,
+        () => {
+          if (++angles === 2) hand.far.unplug();
+          return '0';
+        },
+      ],
+    ]);
+    expect(await play(clock, seat, ended, typed, 60)).toBe('quit');
+    expect(seat.printed()).toMatch(/stick: tcp leader:1 was closed/);
+    expect(seat.printed()).toContain('stick sends no readings; look to its port. The step was left');
+    const read = readCaptures(readFileSync(files.path('silent.csv'), 'utf8'));
+    expect('captures' in read && read.captures.map(({ knownDeg }) => knownDeg)).toEqual([0]);
+  });
+
+  it('refuses a joint that never gets still, each time it is held', async () => {
+    const { clock, leader, seat } = bench();
+    const ended = measure(load(), [], null, keeper(files.path('restless.csv')), seat.table);
+    for (let i = 0; i < 60; i++) leader[0]?.go(i % 2 === 0 ? 5 : -5, 0.1);
+    const typed = typing([
+      [/or a number/, inTurn('10', 'quit')],
+      [/^Angle of base/, inTurn('0', '')],
+    ]);
+    expect(await play(clock, seat, ended, typed, 60)).toBe('quit');
+    expect(seat.printed()).toMatch(/Not taken: it was (not still enough|still moving)/);
+    expect(seat.printed()).toContain('No point was taken.');
+  });
+
   it('ends as interrupted when its terminal goes, and moves nothing', async () => {
     const { clock, seat, pulses } = bench();
     const ended = measure(load(), [], null, keeper(files.path('gone.csv')), seat.table);
