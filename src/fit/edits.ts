@@ -139,11 +139,18 @@ function matchValues(
     gain: tenThousandth(gain.is),
     ...(direction === was ? {} : { direction }),
     offset_deg: hundredth(offset_deg.is),
-    fitted: note(points, 'match', date),
+    fitted: note(inFollowerDeg(points, gain.is), 'match', date),
   };
 }
 
-function note({ rms_deg, error_95_deg, used }: PointsReport, method: string, date: string): PlainValue {
+/** The hand errs in degrees of the leader; a follower's joint turns its gain of them. */
+function inFollowerDeg({ rms_deg, error_95_deg, used }: Noted, gain: number): Noted {
+  return { rms_deg: rms_deg * gain, error_95_deg: error_95_deg === null ? null : error_95_deg * gain, used };
+}
+
+type Noted = Pick<PointsReport, 'rms_deg' | 'error_95_deg' | 'used'>;
+
+function note({ rms_deg, error_95_deg, used }: Noted, method: string, date: string): PlainValue {
   const error = error_95_deg === null ? {} : { error_deg: hundredth(error_95_deg) };
   return { date, method, residual_deg: hundredth(rms_deg), ...error, points: used };
 }

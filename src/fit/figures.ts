@@ -64,7 +64,7 @@ export function matchFigures({ from, gain, direction, offset_deg, points }: Matc
     ['direction', direction],
     ['offset', `${withError(offset_deg, 2)} deg`],
     ['poses', String(points.used)],
-    ['residual', `${round(points.rms_deg, 2)} deg rms, worst ${round(points.worst_deg, 2)}`],
+    ['residual', `${round(points.rms_deg, 2)} deg of the leader rms, worst ${round(points.worst_deg, 2)}`],
   ];
 }
 
@@ -107,7 +107,7 @@ export function suggestionLines({ suggestions }: FitReport): readonly FigureLine
 function withError({ is, error_95 }: Figure, digits: number): string {
   return error_95 === null
     ? `${round(is, digits)} (error unknown)`
-    : `${round(is, digits)} +- ${round(error_95, digits)}`;
+    : `${round(is, digits)} ± ${round(error_95, digits)}`;
 }
 
 function stretches(all: readonly (readonly [number, number])[]): string {

@@ -168,7 +168,7 @@ describe('eidograph fit --from', () => {
     ].map(([us, moved]) => `servo-step,wren,base,,${us},,${moved}\n`);
     const { status, out } = fit(`step,arm,joint,counts,pulse_us,known_deg,moved\n${steps.join('')}`);
     expect(status).toBe(0);
-    expect(out).toMatch(/deadband +4\.5 \+- 0\.5 us/);
+    expect(out).toMatch(/deadband +4\.5 ± 0\.5 us/);
     expect(read('wren.yaml')).toBe(
       WREN.replace(
         'servo: { channel: 0, points: [[-90, 600], [90, 2400]] }',
