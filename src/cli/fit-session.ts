@@ -11,6 +11,7 @@ import type { CompiledBoard } from '../rig/compiled.ts';
 import type { LoadedRig } from '../rig/load.ts';
 import type { Keeper } from './fit-keeper.ts';
 import { rigToMeasure } from './fit-rig.ts';
+import { wrapped } from './view/layout.ts';
 
 /** Where a session meets its operator, its boards and its disk; a test is such a place too. */
 export interface FitTable {
@@ -20,6 +21,8 @@ export interface FitTable {
   readonly output: NodeJS.WritableStream;
   /** The output is a terminal: lines are edited on it, and the tape is drawn anew in its place. */
   readonly isTerminal: boolean;
+  /** Characters in a line of it, now. */
+  readonly columns: () => number;
 }
 
 /** `fit`: what was captured is to be fitted; `smoothed`: and the suggested smoothing written too; `quit`: it is left; `interrupted`: somebody was frightened. */
@@ -73,9 +76,10 @@ export async function measure(
   let drawnUs = Number.NEGATIVE_INFINITY;
 
   const print = (text: string): void => {
-    // In place of the question, which is then asked anew below.
-    if (drawn !== '') table.output.write(table.isTerminal ? '\r\x1b[K' : '\n');
-    table.output.write(`${text}\n`);
+    // In place of the question, which is then asked anew below; on a narrow terminal it has several lines.
+    if (drawn !== '') table.output.write(table.isTerminal ? `${up(rl.getCursorPos().rows)}\r\x1b[J` : '\n');
+    for (const line of text.split('\n'))
+      table.output.write(`${line.length > table.columns() ? wrapped(line, table.columns()).join('\n') : line}\n`);
     drawn = '';
   };
 
@@ -214,6 +218,10 @@ export async function measure(
   await live.close();
   keeping.close();
   return why;
+}
+
+function up(rows: number): string {
+  return rows > 0 ? `\x1b[${rows}A` : '';
 }
 
 /** `|--####----####--| 512`: where it has been, and where it is. */

@@ -168,5 +168,6 @@ function realTable(): ((rig: CompiledRig) => FitTable) | null {
     input: stdin,
     output,
     isTerminal: process.env['TERM'] !== 'dumb',
+    columns: () => output.columns,
   });
 }

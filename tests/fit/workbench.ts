@@ -248,7 +248,11 @@ export function sitting(clock: VirtualClock, openPort: FitTable['openPort']): Si
   const output = new PassThrough();
   let text = '';
   output.on('data', (chunk: Buffer) => (text += chunk.toString()));
-  return { input, table: { clock, openPort, input, output, isTerminal: false }, printed: () => text };
+  return {
+    input,
+    table: { clock, openPort, input, output, isTerminal: false, columns: () => 1000 },
+    printed: () => text,
+  };
 }
 
 const LOOK_US = 20_000;
