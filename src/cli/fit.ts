@@ -168,6 +168,7 @@ function realTable(): ((rig: CompiledRig) => FitTable) | null {
     input: stdin,
     output,
     isTerminal: process.env['TERM'] !== 'dumb',
-    columns: () => output.columns,
+    // A terminal that does not tell has lines of any length.
+    columns: () => (output.columns > 0 ? output.columns : Number.POSITIVE_INFINITY),
   });
 }
