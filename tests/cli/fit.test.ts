@@ -310,6 +310,49 @@ describe('Bad captures', () => {
     expect(there()).toEqual([...before, 'captures.csv'].sort());
   });
 
+  it.each([
+    [
+      'FIT_NO_SERVO',
+      'servo-point,wren,base,,700,-80\nservo-point,wren,base,,2300,80\n',
+      /no servo turns this joint alone/,
+      (text: string) =>
+        text
+          .replace('{base.us}', '{0.us},{2.us}')
+          .replace(', servo: { channel: 0, points: [[-90, 600], [90, 2400]] }', '')
+          .concat(
+            'servos:\n  - { channel: 0, turns: { base: 1 }, points: [[-90, 600], [90, 2400]] }\n' +
+              '  - { channel: 2, turns: { base: 1 }, points: [[-90, 2400], [90, 600]] }\n',
+          ),
+    ],
+    [
+      'FIT_STRETCHED',
+      'match,wren,base,100,700,\nmatch,wren,base,900,2300,\n',
+      /it is stretched over its range/,
+      (text: string) => text.replace('from: base,', 'from: base, stretch: true,'),
+    ],
+  ] as const)('of a follower that cannot be fitted so are told by %s', (code, captures, words, profile) => {
+    files.write('bench.yaml', 'rig: bench\nleader: leader.yaml\nfollowers: [wren.yaml]\n');
+    const text = profile(WREN);
+    files.write('wren.yaml', text);
+    const { status, err } = fit(HEADER + captures);
+    expect(err).toMatch(words);
+    expect(err).toContain(`${FIT_CODES[code]} (${code})`);
+    expect(status).toBe(2);
+    expect(read('wren.yaml')).toBe(text);
+  });
+
+  it('that are none are no fit', () => {
+    for (const from of [{}, { from: undefined, check: files.path('captures.csv') }]) {
+      const { status, err } = fit(HEADER, from);
+      expect(err).toMatch(/captures\.csv: there are no captures in it; measure some first/);
+      expect(status).toBe(2);
+    }
+    rmSync(files.path('captures.csv'));
+    const missing = fit(HEADER, { from: files.path('nowhere.csv') });
+    expect(missing.err).toMatch(/nowhere\.csv: there is no such file; name a file of captures/);
+    expect(missing.status).toBe(2);
+  });
+
   it('keep nothing from being written with --partly but the joint that they spoil', () => {
     const { status } = fit(`${HEADER}leader-point,stick,elbow,500,,0\n${points('base')}`, { partly: true });
     expect(status).toBe(1);
