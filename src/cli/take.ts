@@ -12,6 +12,10 @@ written over: each edit makes a new take that remembers its parents.
 
 Moments are marks, or times such as 2.5s, 500ms or -1s (from the end).`;
 
+const BEST_EXPLAINED = `
+Each take gets a place in each of five: spectral arc length, log dimensionless jerk, how long joints were held back,
+dropouts, and how far it is from the other takes, laid over each other in time. The least sum of places is best.`;
+
 /** `eidograph take …`: each subcommand loads what it needs, so that the others start without it. */
 export function takeCommand(
   world: () => TakeWorld = realTakeWorld,
@@ -22,7 +26,7 @@ export function takeCommand(
     return playTake(name, options, stage(), world());
   };
   const take = new Command('take')
-    .description('list, show, play, edit, compare and export recordings')
+    .description('list, show, play, edit, compare, choose and export recordings')
     .addHelpText('after', EXPLAINED);
 
   take.addCommand(
@@ -92,6 +96,16 @@ export function takeCommand(
         const { compareTakes } = await import('./take-edit.ts');
         const { json, takes, timed } = options;
         process.exitCode = await compareTakes([a, b], { json, takes, timed }, world());
+      }),
+  );
+  take.addCommand(
+    folder(new Command('best').description('order takes of one motion, the best first'))
+      .argument('<names...>')
+      .option('--json', 'print it as JSON', false)
+      .addHelpText('after', BEST_EXPLAINED)
+      .action(async (names, { takes, json }) => {
+        const { bestTake } = await import('./take-best.ts');
+        process.exitCode = await bestTake(names, { takes, json }, world());
       }),
   );
   take.addCommand(

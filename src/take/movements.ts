@@ -23,6 +23,8 @@ const PERIOD_US = US_PER_S / RATE_HZ;
 const STANDING_RAD_S = 0.02;
 /** A movement's ends are where its speed passes this share of its peak (common practice, no source). */
 const ENDS_SHARE = 0.05;
+/** A moving arm is commanded far more often than this. */
+const PAUSE_US = US_PER_S;
 /** Shorter ones are twitches: their spectrum says nothing. */
 const SAMPLES_MIN = 20;
 /** An arm that never stands is judged in stretches of a minute. */
@@ -69,9 +71,11 @@ export function movements(joints: number): Movements {
       for (let j = 0; j < joints; j++) sum += (speedRadS[j] as number) ** 2;
       const now = Math.sqrt(sum);
       if (Number.isNaN(lastUs)) nextUs = tUs;
-      // A pause in the commands is an arm that stands: none of its samples is worth taking one by one.
-      if (last < STANDING_RAD_S && now < STANDING_RAD_S) {
-        if (count > 0) close(tUs);
+      // A pause in the commands is an arm that stands: none of its samples is worth taking one by one. So is one in the
+      // middle of a movement, where a clock jumped: nobody knows what happened in it.
+      const isPause = (last < STANDING_RAD_S && now < STANDING_RAD_S) || tUs - lastUs > PAUSE_US;
+      if (isPause) {
+        if (count > 0) close(lastUs);
         nextUs = tUs;
       }
       for (; nextUs <= tUs; nextUs += PERIOD_US) {

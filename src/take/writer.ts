@@ -8,7 +8,7 @@ import { arrowStream, END_MARK } from './stream.ts';
 
 /** Rows in, an Arrow stream out. Nothing here waits, and nothing grows with the length of the take. */
 export interface TakeWriter {
-  /** Fill it, then `append`. */
+  /** Fill it, then `append`: one that is stamped before the row that came before it gets that one's stamp. */
   readonly row: Row;
   readonly is: Readonly<WriterStanding>;
   append(): void;
@@ -47,6 +47,7 @@ export function takeWriter(
   const waiting: Uint8Array[] = [];
   const is: WriterStanding = { rows: 0, bytes: 0, fault: null };
   let waitingBytes = 0;
+  let lastUs = 0;
   let leaving = false;
   let syncing = false;
   let syncedBytes = 0;
@@ -115,6 +116,9 @@ export function takeWriter(
     is,
     append() {
       if (is.fault !== null) return;
+      // A reader takes no batch in which time goes back: a clock that jumped must not cost the rows around it.
+      if (!(row.tUs >= lastUs)) row.tUs = lastUs;
+      lastUs = row.tUs;
       page.append(row);
       is.rows++;
       if (page.full) flush();

@@ -7,6 +7,7 @@ import { describe, expect, it } from 'vitest';
 import { isTakeFault } from '../../src/take/fault.ts';
 import { openTake } from '../../src/take/reader.ts';
 import { readingAhead } from '../../src/take/read-ahead.ts';
+import { summarize } from '../../src/take/summary.ts';
 import { bytesOf, fileWriter, headerOf, opened, rowsOf, takesFolderForTests, TWO_ARMS } from './studio.ts';
 
 const folder = takesFolderForTests();
@@ -140,6 +141,63 @@ describe('a take', () => {
       ),
       { numRuns: 100 },
     );
+  });
+
+  it('keeps every row where the clock jumped while it was recorded, and goes forward all the same', async () => {
+    const jumps = fc.oneof(
+      fc.integer({ min: -10_000_000, max: 10_000_000 }),
+      fc.constantFrom(-(2 ** 40), 2 ** 40, Number.NaN),
+    );
+    await fc.assert(
+      fc.asyncProperty(fc.array(jumps, { minLength: 1, maxLength: 40 }), fc.uuid(), async (steps, name) => {
+        const writer = fileWriter(folder, `jumped-${name}`, headerOf(TWO_ARMS));
+        let tUs = 1_000_000;
+        for (const step of steps) {
+          tUs = Number.isNaN(step) ? tUs : tUs + step;
+          writer.row.tUs = Number.isNaN(step) ? step : tUs;
+          for (const arm of writer.row.followers) {
+            arm.commanded = 1;
+            arm.speedRadS.fill(1);
+          }
+          writer.append();
+          if (step % 3 === 0) writer.flush();
+        }
+        await writer.end();
+        const take = opened(join(folder, `jumped-${name}.arrows`));
+        const stamps = rowsOf(take).map((row) => row.tUs);
+        expect([take.lostBytes, take.damagedRows, stamps.length]).toEqual([null, 0, steps.length]);
+        expect(stamps).toEqual(stamps.toSorted((a, b) => a - b));
+        // And whoever shows it is done with the years in between at once.
+        const work = summarize(take);
+        let step = work.next();
+        while (step.done !== true) step = work.next();
+        expect(step.value.rows).toBe(steps.length);
+        take.close();
+      }),
+      { numRuns: 40 },
+    );
+  });
+
+  it('whose stamps go back opens up to there, and says how much is left out', async () => {
+    const writer = fileWriter(folder, 'forward', headerOf(TWO_ARMS));
+    for (let i = 0; i < 90; i++) {
+      writer.row.tUs = i * 10_000;
+      writer.append();
+      if (i % 30 === 29) writer.flush();
+    }
+    await writer.end();
+    const bytes = bytesOf(join(folder, 'forward.arrows')).slice();
+    // The stamp of row 60 stands first in the third batch's body: 600,000 us becomes 0.
+    const stamp = Buffer.alloc(16);
+    stamp.writeBigInt64LE(600_000n, 0);
+    stamp.writeBigInt64LE(610_000n, 8);
+    const at = Buffer.from(bytes).indexOf(stamp);
+    expect(at).toBeGreaterThan(0);
+    bytes.fill(0, at, at + 8);
+    const take = opened(fileOf('backward', bytes));
+    expect(rowsOf(take).map(({ tUs }) => tUs)).toEqual(Array.from({ length: 60 }, (_, i) => i * 10_000));
+    expect(take.lostBytes).toBeGreaterThan(1_000);
+    take.close();
   });
 
   it('refuses what is no take, with a code for each', async () => {
