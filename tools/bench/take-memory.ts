@@ -22,10 +22,10 @@ const TURN = 100;
 const JOBS = {
   record: async (file: string): Promise<void> => {
     const rows = rowsOf(file);
-    const { read, recorder } = scenery(`${file}.recorded`);
+    const { read, recorder, settled } = scenery(`${file}.recorded`);
     for (let k = 0; k < rows; k++) {
       read(k);
-      if (k % TURN === 0) await new Promise((resume) => setImmediate(resume));
+      if (k % TURN === 0) await settled();
     }
     await recorder?.end();
   },

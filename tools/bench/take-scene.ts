@@ -5,7 +5,7 @@ import type { VirtualClock } from '../../src/clock/virtual.ts';
 import { virtualClock } from '../../src/clock/virtual.ts';
 import { type Drive, drive as makeDrive } from '../../src/drive/drive.ts';
 import type { DriveEvent } from '../../src/drive/events.ts';
-import { newTakeFile, offlineDisk, wholeFile } from '../../src/take/disk.ts';
+import { newTakeFile, offlineDisk, type TakeDisk, wholeFile } from '../../src/take/disk.ts';
 import { takeSentence } from '../../src/take/fault.ts';
 import { type TakeHeader, takeHeader } from '../../src/take/header.ts';
 import { openTake, type Take } from '../../src/take/reader.ts';
@@ -27,6 +27,8 @@ export interface Scenery {
   push(event: DriveEvent & { tUs: number }): void;
   /** Reading `k`, at its instant. */
   read(k: number): void;
+  /** Waits for the disk: readings come much faster here than a kilohertz, and it may have others to serve. */
+  settled(): Promise<void>;
 }
 
 /** @param file where it is recorded; null: it is not */
@@ -46,7 +48,18 @@ export function scenery(file: string | null): Scenery {
   );
   const disk = file === null ? null : newTakeFile(file);
   if (disk !== null && 'fault' in disk) throw new Error(takeSentence(disk.fault));
-  const writer = disk === null ? null : takeWriter('bench', header(), null, disk.disk);
+  let underWay = 0;
+  const watched = (to: TakeDisk): TakeDisk => ({
+    ...to,
+    write(bytes, done) {
+      underWay++;
+      to.write(bytes, (error) => {
+        underWay--;
+        done(error);
+      });
+    },
+  });
+  const writer = disk === null ? null : takeWriter('bench', header(), null, watched(disk.disk));
   const event = { kind: 'reading' as const, tUs: 0, counts: new Float64Array(JOINTS) };
   return {
     drive,
@@ -58,6 +71,10 @@ export function scenery(file: string | null): Scenery {
       for (let j = 0; j < JOINTS; j++) event.counts[j] = countAt(k, j);
       clock.runTo(event.tUs);
       source.push(event);
+    },
+    async settled() {
+      do await new Promise((resume) => setImmediate(resume));
+      while (underWay > 0);
     },
   };
 }

@@ -96,14 +96,14 @@ interface Handled {
 
 /** @param file null: nothing is recorded */
 async function handled(file: string | null, readings: number): Promise<Handled> {
-  const { read, recorder } = scenery(file);
+  const { read, recorder, settled } = scenery(file);
   const times = new Float64Array(readings);
   const before = process.cpuUsage();
   for (let k = 0; k < readings; k++) {
     const begun = performance.now();
     read(k);
     times[k] = 1e3 * (performance.now() - begun);
-    if (k % TURN === 0) await new Promise((resume) => setImmediate(resume));
+    if (k % TURN === 0) await settled();
   }
   const { user, system } = process.cpuUsage(before);
   const fault = (await recorder?.end()) ?? null;
