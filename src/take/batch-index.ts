@@ -1,3 +1,4 @@
+import { END_MARK } from './stream.ts';
 import { NAME_BUFFER, TIME_BUFFER } from './columns.ts';
 import { bodyAt, type Frame, frameAt, frameEnd, type ReadAt } from './framing.ts';
 
@@ -35,8 +36,11 @@ export function indexOf(from: number, size: number, read: ReadAt): TakeIndex {
   let lastUs = 0;
   for (;;) {
     const frame = frameAt(offset, size, read, [TIME_BUFFER, NAME_BUFFER]);
-    if (frame === 'end' || frame === 'broken')
-      return { places, named, rows, lastUs, endBytes: offset, whole: frame === 'end' };
+    if (frame === 'end' || frame === 'broken') {
+      // An end with something after it is a length that was damaged to nothing.
+      const whole = frame === 'end' && offset + END_MARK.length === size;
+      return { places, named, rows, lastUs, endBytes: offset, whole };
+    }
     if (frame.kind === 'batch' && frame.rows > 0) {
       const [time, name] = frame.buffers;
       const instants =
