@@ -110,7 +110,7 @@ function int64(data: DataView, at: number): number {
 }
 
 /** Where field `id` of the table at `table` stands, or null where it has its default. */
-function fieldAt(data: DataView, table: number, id: number): number | null {
+export function fieldAt(data: DataView, table: number, id: number): number | null {
   const vtable = table - data.getInt32(table, true);
   const slot = 4 + 2 * id;
   if (slot >= data.getUint16(vtable, true)) return null;

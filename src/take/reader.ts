@@ -4,12 +4,13 @@ import { RecordBatchReader, type Schema } from 'apache-arrow';
 import { strangeColumn } from './columns.ts';
 import { diskFault, takeFault, type TakeFault } from './fault.ts';
 import { fileWindow } from './file-window.ts';
-import { bodyAt, frameAt, frameEnd } from './framing.ts';
+import { bodyAt, type Frame, frameAt, frameEnd } from './framing.ts';
 import { headerFrom, PROFILES_KEY, type TakeHeader } from './header.ts';
 import { type BatchPlace, indexOf } from './batch-index.ts';
 import { fetcher } from './read-ahead.ts';
 import { pageReader } from './page-reader.ts';
 import type { Row } from './row.ts';
+import { isBoundedSchema } from './schema-bounds.ts';
 import { END_MARK } from './stream.ts';
 
 /** A take that can be read from any of its moments on, one batch in memory at a time. */
@@ -73,7 +74,7 @@ function judge(name: string, descriptor: number): Take | TakeFault {
   if (first === 'end' || first === 'broken' || first.kind !== 'schema')
     return takeFault('TAKE_FOREIGN', name, 'it is no Arrow stream, or was cut before its first row');
   const head = read(0, frameEnd(first)).slice();
-  const schema = schemaOf(head);
+  const schema = schemaOf(head, first);
   const header = schema === null ? 'foreign' : headerFrom(schema.metadata);
   if (schema === null || header === 'foreign')
     return takeFault('TAKE_FOREIGN', name, 'it is an Arrow stream, but no take');
@@ -153,7 +154,9 @@ function placesBefore(places: readonly BatchPlace[], tUs: number): number {
 }
 
 /** null where Arrow cannot make sense of it: damaged bytes make it throw errors of many kinds. */
-function schemaOf(head: Uint8Array): Schema | null {
+function schemaOf(head: Uint8Array, first: Frame): Schema | null {
+  const metadata = head.subarray(bodyAt(first) - first.metadataBytes, bodyAt(first));
+  if (!isBoundedSchema(new DataView(metadata.buffer, metadata.byteOffset, metadata.byteLength))) return null;
   try {
     return RecordBatchReader.from([head, END_MARK]).open().schema;
   } catch {

@@ -83,6 +83,11 @@ describe('a take with a corrupt length', () => {
       expect(['TAKE_FOREIGN', 'TAKE_EMPTY']).toContain(judged('schema', with32(4, length)));
   });
 
+  it('inside its schema, where it would be thousands of millions of fields, is no take', () => {
+    // Found by the law below: Arrow went on making fields until memory ended.
+    expect(judged('fields', with32((frames[0] as Frame).offset + PREFIX_BYTES + 36, -1))).toBe('TAKE_FOREIGN');
+  });
+
   it('anywhere in a message throws nothing, gives no row that was not written, and takes no memory it says it needs', () => {
     const place = fc.tuple(fc.nat(BATCHES), fc.nat(), fc.constantFrom(...EXTREMES));
     fc.assert(
