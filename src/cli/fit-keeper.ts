@@ -17,6 +17,11 @@ export function readCapturesFile(file: string): FileText {
   }
 }
 
+/** Whether a session can add to a file: its columns are the session's own. */
+export function takesCaptures(text: string): boolean {
+  return text === '' || text.replace('\r\n', '\n').startsWith(CAPTURES_HEADER);
+}
+
 /** Captures kept as they are made: what has been measured outlives a crash. */
 export interface Keeper {
   /** Appends and brings to the disk; throws what the system says when it cannot. */

@@ -3,12 +3,13 @@ import type { CommandUnknownOpts } from '@commander-js/extra-typings';
 import { existsSync } from 'node:fs';
 import { CAUTIONS } from '../bridge/words.ts';
 import { realClock } from '../clock/clock.ts';
+import type { Capture } from '../fit/captures.ts';
 import type { CompiledRig } from '../rig/compiled.ts';
 import { loadRig } from '../rig/load.ts';
 import { mistakeLine } from '../rig/mistake.ts';
 import { metres } from '../rig/units.ts';
 import { filesOnDisk, type FitFiles } from './fit-files.ts';
-import { keeper } from './fit-keeper.ts';
+import { keeper, takesCaptures } from './fit-keeper.ts';
 import { capturesOf, checkAgainst, type FitFlags, fitInto, type Printer } from './fit-offline.ts';
 import { type FitTable, measure } from './fit-session.ts';
 import { portOf } from './port-of.ts';
@@ -42,6 +43,17 @@ export function capturesBeside(rigFile: string): string {
   return `${rigFile.replace(/\.ya?ml$/i, '')}.captures.csv`;
 }
 
+function capturesToGoOnFrom(at: string, files: FitFiles, printer: Printer): readonly Capture[] | null {
+  const text = files.read(at);
+  if ('text' in text && text.text === '') return [];
+  const captures = capturesOf(at, files, printer);
+  if (captures === null || !('text' in text) || takesCaptures(text.text)) return captures;
+  printer.err(
+    `error: ${at}: its columns are not those of a session; name another file with --captures, or fit this one with --from\n`,
+  );
+  return null;
+}
+
 /**
  * Measures at a terminal, then fits; resolves with the exit status.
  * @param tableFor null: nobody sits at a terminal
@@ -63,7 +75,7 @@ export async function fitMeasured(
     return 2;
   }
   const at = options.captures ?? capturesBeside(file);
-  const former = existsSync(at) ? capturesOf(at, files, printer) : [];
+  const former = existsSync(at) ? capturesToGoOnFrom(at, files, printer) : [];
   if (former === null) return 2;
   const keeping = keeper(at);
   const ending = await measure(loaded, former, options.smooth ? null : options.wish, keeping, tableFor(loaded.rig));

@@ -186,6 +186,29 @@ describe('eidograph fit --check', () => {
   });
 });
 
+it('A session adds nothing to captures of other columns, and says what to do instead', async () => {
+  const at = desk.write('bench.captures.csv', HEADER + points('base'));
+  const err: string[] = [];
+  const flags = {
+    json: false,
+    dryRun: false,
+    partly: false,
+    report: undefined,
+    smooth: false,
+    wish: { jitterM: 1, lagS: 1 },
+    captures: undefined,
+  };
+  const nobody = (): never => {
+    throw new Error('a session was begun');
+  };
+  const printer = { out: () => {}, err: (text: string) => void err.push(text) };
+  expect(await fitMeasured(desk.rig, flags, nobody, filesOnDisk(), printer)).toBe(2);
+  expect(err.join('')).toBe(
+    `error: ${at}: its columns are not those of a session; name another file with --captures, or fit this one with --from\n`,
+  );
+  expect(read('bench.captures.csv')).toBe(HEADER + points('base'));
+});
+
 it('eidograph fit without a terminal says what to do instead', async () => {
   const err: string[] = [];
   const printer = { out: () => {}, err: (text: string) => void err.push(text) };
