@@ -23,7 +23,7 @@ const POT = {
 };
 /** Turns against its points, 110 degrees over 900 to 2100 us rather than 120, and stands off by 3. */
 const hornDeg = (us: number): number => 3 - ((us - 1500) * 110) / 1200;
-const SERVO = { deadbandUs: 2, playUs: 4 };
+const SERVO = { deadbandUs: 1, playUs: 4 };
 /** follower = -0.4 leader + 5 */
 const ALIKE = { gain: -0.4, offset: 5 };
 
@@ -85,7 +85,7 @@ describe('An evening at a real terminal', () => {
         errorDeg: 0.3,
         seed: 5,
       },
-      { stopsDeg: [-125, 125], sweepS: 3 },
+      { stopsDeg: [-125, 125], sweepS: 2 },
     );
     const at = screen(
       `${process.execPath} ${PROGRAM.join(' ')} fit ${path('bench.yaml')} --json --report ${path('report.html')} >${path('fit.json')}; echo status $?`,
@@ -114,7 +114,7 @@ describe('An evening at a real terminal', () => {
     expect(base?.points?.curve).toBe('monotone');
     expect(base?.sweep?.dead_spots_counts).toHaveLength(1);
     const [from, to] = base?.sweep?.dead_spots_counts[0] ?? [0, 0];
-    // 125 degrees in 1.5 s are 11 counts a reading.
+    // 250 degrees in 2 s are 16 counts a reading.
     expect(Math.abs(from - POT.counts(35))).toBeLessThan(25);
     expect(Math.abs(to - POT.counts(40))).toBeLessThan(25);
     expect(report.servos[0]?.travel?.travel_deg).toBeCloseTo(110, -0.5);
