@@ -1,6 +1,5 @@
 import { read } from 'node:fs';
 import { US_PER_S } from '../clock/clock.ts';
-import type { Take } from './reader.ts';
 import type { Row } from './row.ts';
 
 /** Has the system bring parts of a file into its memory, on another thread. */
@@ -40,8 +39,14 @@ const AHEAD_US = 3 * US_PER_S;
 /** How often somebody looks whether that is so, on the take's own time. */
 const LOOK_US = US_PER_S;
 
+/** A take as far as it is read ahead. */
+interface Ahead {
+  readFrom(fromUs: number): Iterable<Row>;
+  fetch(fromUs: number, toUs: number): void;
+}
+
 /** The same take for one who plays it: no row waits for the disk, because the system has fetched it while others played. */
-export function readingAhead(take: Take): Take {
+export function readingAhead<T extends Ahead>(take: T): T {
   const readFrom = function* (fromUs: number): Generator<Row> {
     let lookUs = fromUs;
     for (const row of take.readFrom(fromUs)) {
@@ -52,5 +57,5 @@ export function readingAhead(take: Take): Take {
       yield row;
     }
   };
-  return { ...take, readFrom: (fromUs) => ({ [Symbol.iterator]: () => readFrom(fromUs) }) };
+  return { ...take, readFrom: (fromUs: number) => ({ [Symbol.iterator]: () => readFrom(fromUs) }) };
 }
