@@ -112,35 +112,54 @@ function describe(summary: TakeSummary): string {
     `${summary.take}: ${made} from ${summary.rig}, ${summary.duration_s.toFixed(2)} s, ${summary.rows} rows, ${size(summary.bytes)}`,
     ...(summary.damaged_rows > 0 ? [`  ${summary.damaged_rows} rows stand in damaged batches and are left out`] : []),
     ...(marks.length > 0 ? [`  marks: ${marks.map(({ mark, t_s }) => `${mark} ${t_s.toFixed(2)} s`).join(', ')}`] : []),
-    `leader ${leader.leader}: ${leader.joints.join(', ')}; ${leader.readings} readings, ${leader.dropouts.length} dropouts`,
+    `leader ${leader.leader}: ${leader.joints.join(', ')}`,
+    `  ${leader.readings} readings, ${leader.dropouts.length} dropouts`,
     ...leader.dropouts.slice(0, SPANS_SHOWN).map(({ from_s, to_s }) => `  nothing ${span(from_s, to_s)}`),
   ];
   return `${[...head, ...summary.followers.flatMap(describeFollower)].join('\n')}\n`;
 }
 
-const SPANS_SHOWN = 5;
+const SPANS_SHOWN = 3;
+/** Shorter than this in all is not worth a word: it would be told as 0.0 s. */
+const TOLD_S = 0.05;
 
 function describeFollower(arm: FollowerSummary): readonly string[] {
-  const states = Object.entries(arm.states).map(([state, seconds]) => `${state} ${seconds.toFixed(1)} s`);
   const smooth =
     arm.spectral_arc_length === null
       ? 'no movement'
       : `${arm.movements} movements, spectral arc length ${arm.spectral_arc_length.toFixed(2)}, log dimensionless jerk ${arm.log_dimensionless_jerk?.toFixed(2)}`;
-  const blocked = Object.entries(arm.blocked_s).map(([why, seconds]) => `${why} ${seconds.toFixed(1)} s`);
+  const blocked = durations(arm.blocked_s);
   return [
-    `follower ${arm.follower}: ${arm.commands} commands; ${states.join(', ')}`,
-    `  ${smooth}${blocked.length === 0 ? '' : `; kept from following: ${blocked.join(', ')}`}`,
+    `follower ${arm.follower}: ${arm.commands} commands; ${durations(arm.states)}`,
+    `  ${smooth}`,
+    ...(blocked === '' ? [] : [`  kept from following: ${blocked}`]),
+    '    joint         least    most  peak deg/s   limit  deg/s2  limit',
     ...arm.joints.flatMap((joint) => [
-      `    ${joint.joint.padEnd(10)} ${degrees(joint.least_deg)} to ${degrees(joint.most_deg)} deg  peak ${joint.speed_deg_s.toFixed(1).padStart(6)} deg/s (${percent(joint.speed_share)})  ${joint.accel_deg_s2.toFixed(0).padStart(6)} deg/s2 (${percent(joint.accel_share)})`,
-      ...joint.limited
-        .filter(({ by }) => by !== 'deadband')
-        .slice(0, SPANS_SHOWN)
-        .map(
-          ({ by, from_s, to_s }) =>
-            `      ${by === 'range' ? 'clipped by its range' : `held back by ${limitWord(by)}`} ${span(from_s, to_s)}`,
-        ),
+      `    ${joint.joint.padEnd(12)} ${degrees(joint.least_deg)}  ${degrees(joint.most_deg)}  ${joint.speed_deg_s.toFixed(1).padStart(10)}   ${percent(joint.speed_share)}  ${joint.accel_deg_s2.toFixed(0).padStart(6)}  ${percent(joint.accel_share)}`,
+      ...describeLimits(joint),
     ]),
   ];
+}
+
+/** One line for each limit that a joint met: for how long in all, and its first stretches. */
+function describeLimits({ limited_s, limited }: FollowerSummary['joints'][number]): readonly string[] {
+  return Object.entries(limited_s)
+    .filter(([by]) => by !== 'deadband')
+    .map(([by, seconds]) => {
+      const spans = limited.filter((one) => one.by === by);
+      const shown = spans.slice(0, SPANS_SHOWN).map(({ from_s, to_s }) => `${from_s.toFixed(2)}-${to_s.toFixed(2)}`);
+      const more = spans.length > SPANS_SHOWN ? ' ...' : '';
+      const what = by === 'range' ? 'clipped by its range' : `held back by ${limitWord(by)}`;
+      const when = shown.length === 0 ? '' : `: ${shown.join(', ')}${more}`;
+      return `      ${what} ${seconds.toFixed(2)} s${when}`;
+    });
+}
+
+function durations(seconds: Readonly<Record<string, number>>): string {
+  return Object.entries(seconds)
+    .filter(([, s]) => s >= TOLD_S)
+    .map(([word, s]) => `${word} ${s.toFixed(1)} s`)
+    .join(', ');
 }
 
 function span(from: number, to: number): string {
@@ -152,7 +171,7 @@ function degrees(value: number): string {
 }
 
 function percent(share: number): string {
-  return `${(100 * share).toFixed(0)} %`;
+  return `${(100 * share).toFixed(0)} %`.padStart(5);
 }
 
 export function size(bytes: number): string {

@@ -93,6 +93,8 @@ describe('eidograph take', () => {
     expect((await take('show bow')).out).toMatch(
       /bow: recorded from rehearsal, 6\.00 s[^]*follower wren: \d+ commands/,
     );
+    // Nothing that a terminal of 80 columns would break.
+    for (const line of (await take('show bow')).out.split('\n')) expect(line.length).toBeLessThanOrEqual(80);
   });
 
   it('draws a take, whole, and never over a file that is there', async () => {
