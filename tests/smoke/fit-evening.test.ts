@@ -21,11 +21,11 @@ const POT = {
   noise: 1.5,
   dead: [35, 40] as const,
 };
-/** Turns against its points, 110 degrees over 900 to 2100 us rather than 120, and stands off by 3. */
+/** Turns against its points, 82.5 degrees over 1050 to 1950 us rather than 90, and stands off by 3. */
 const hornDeg = (us: number): number => 3 - ((us - 1500) * 110) / 1200;
 const SERVO = { deadbandUs: 1, playUs: 4 };
-/** follower = -0.4 leader + 5 */
-const ALIKE = { gain: -0.4, offset: 5 };
+/** follower = -0.3 leader + 2 */
+const ALIKE = { gain: -0.3, offset: 2 };
 
 const READING_MS = 10;
 const LOOK_MS = 25;
@@ -50,7 +50,7 @@ followers:
     wire: { lines: { template: "{base.us}\\n" } }
     wake: ask
     joints:
-      - { name: base, from: base, range_deg: [-42, 52], speed_deg_s: 90, accel_deg_s2: 360, servo: { channel: 0, points: [[-60, 900], [60, 2100]] } }
+      - { name: base, from: base, range_deg: [-34, 38], speed_deg_s: 90, accel_deg_s2: 360, servo: { channel: 0, points: [[-45, 1050], [45, 1950]] } }
 `;
 
 describe('An evening at a real terminal', () => {
@@ -117,7 +117,7 @@ describe('An evening at a real terminal', () => {
     // 250 degrees in 2 s are 16 counts a reading.
     expect(Math.abs(from - POT.counts(35))).toBeLessThan(25);
     expect(Math.abs(to - POT.counts(40))).toBeLessThan(25);
-    expect(report.servos[0]?.travel?.travel_deg).toBeCloseTo(110, -0.5);
+    expect(report.servos[0]?.travel?.travel_deg).toBeCloseTo(82.5, -0.5);
     expect(report.servos[0]?.deadband_us).toEqual({ is: SERVO.deadbandUs + 0.5, error_95: 0.5 });
     expect(report.matches[0]?.direction).toBe('reversed');
   });
