@@ -31,8 +31,17 @@ export interface TakeDisk {
 
 /** Makes a new file, and its folder where there is none; never opens one that is there. */
 export function newTakeFile(file: string): { readonly disk: TakeDisk } | { readonly fault: TakeFault } {
+  const folder = dirname(file);
   try {
-    mkdirSync(dirname(file), { recursive: true });
+    mkdirSync(folder, { recursive: true });
+  } catch (error) {
+    // A file stands where a folder is asked for.
+    const isFile = error instanceof Error && 'code' in error && (error.code === 'EEXIST' || error.code === 'ENOTDIR');
+    return {
+      fault: isFile ? takeFault('TAKE_DISK', nameOf(file), `${folder} is no folder`) : diskFault(nameOf(file), error),
+    };
+  }
+  try {
     return { disk: threaded(openSync(file, 'wx')) };
   } catch (error) {
     return { fault: diskFault(nameOf(file), error) };

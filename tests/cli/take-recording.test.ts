@@ -6,7 +6,7 @@ import { recording, type RecordingDisk, type RecordingOptions } from '../../src/
 import { isTakeFault, takeFault } from '../../src/take/fault.ts';
 import { openTake, type Take } from '../../src/take/reader.ts';
 import { memoryDisk } from '../take/studio.ts';
-import { scratch, smallRigText } from './rigs.ts';
+import { scratch, smallRig, smallRigText } from './rigs.ts';
 import { stage, type Stage } from './stage.ts';
 
 const files = scratch();
@@ -234,6 +234,26 @@ describe('a disk that fills', () => {
 });
 
 describe('on the real disk', () => {
+  it('a folder for takes that is none is said to be none, before anything moves', async () => {
+    const file = files.write('letter.txt', 'Dear stork');
+    for (const [folder, sentence] of [
+      [file, /letter\.txt is no folder; look to the disk, or name another takes folder with --takes/],
+      [
+        join(file, 'takes'),
+        /letter\.txt\/takes is no folder; look to the disk, or name another takes folder with --takes/,
+      ],
+    ] as const) {
+      const said: string[] = [];
+      const rig = smallRig();
+      const made = recording(
+        { folder, name: 'bow', countInUs: 0, marks: [], rig, profiles: null as never },
+        (text) => void said.push(text),
+      );
+      expect(made).toBeNull();
+      expect(said.join('')).toMatch(sentence);
+    }
+  });
+
   it('a run that ends during the count-in leaves nothing in the folder', async () => {
     const on = stage({ terminal: false, env: { XDG_STATE_HOME: files.path('state') } });
     const folder = files.path('real-takes');
