@@ -148,6 +148,7 @@ function fillEvent(row: Row, event: DriveEvent): void {
       row.kept = event.kept ? 1 : 0;
       return;
     case 'target':
+      // What it asks is not kept: whoever was led by commands is played again by the angles of the followers.
       row.follower = event.follower;
       return;
     case 'lead':
