@@ -24,13 +24,19 @@ export function stretchFor(demands: readonly Demand[]): number {
 
 /** A joint counts as moving at its limit from 0.999 of it on: motions are stretched to stay just below. */
 const LIMIT_SHARE = 0.998;
+/**
+ * Pieces at either end that are not judged: in a stretch out of the middle of a motion an arm has to come up to it from
+ * standing, and to stand at its end. The governor does that within the limits, and a tenth of a second is no reason to play
+ * the whole many times slower.
+ */
+const EDGE = 11;
 /** Pieces of the path between two looks at what an arm would have to hold. */
 const LOAD_EVERY = 10;
 const STEPS_A_LOOK = 500;
 
 /**
  * The least factor by which time has to be stretched so that every follower keeps its limits along the path it is then
- * commanded along, and what asks for it. Played a factor slower a path has speeds by 1/factor and accelerations by
+ * commanded along, its very ends apart, and what asks for it. Played a factor slower a path has speeds by 1/factor and accelerations by
  * 1/factor^2 (J. M. Hollerbach, "Dynamic scaling of manipulator trajectories", ASME J. Dyn. Sys. 106 (1984) 102-106).
  * @param factors by which each follower of the rig is slower than the take anyhow
  */
@@ -45,14 +51,14 @@ export function* leastStretch(motion: Motion, factors: readonly number[]): Gener
   });
   const round = samplesOfRound(motion);
   // A loop goes on into its second round: the seam is judged with what lies on either side of it.
-  const count = round + 2 * REACH + 2;
+  const end = motion.loopBlendS === null ? round + REACH - EDGE : round + 2 * REACH + EDGE;
   let k = 0;
   for (const piece of pieces(samples(motion, playing(motion)))) {
-    const atS = Math.max(0, k - REACH) / SAMPLES_HZ;
-    for (const watch of watches) watch.look(piece, atS, k % LOAD_EVERY === 0);
+    if (k >= REACH + EDGE)
+      for (const watch of watches) watch.look(piece, (k - REACH) / SAMPLES_HZ, k % LOAD_EVERY === 0);
     k++;
-    if (k === count) break;
-    if (k % STEPS_A_LOOK === 0) yield k / count;
+    if (k >= end) break;
+    if (k % STEPS_A_LOOK === 0) yield k / end;
   }
   return watches.flatMap((watch) => watch.demands()).toSorted((a, b) => b.factor - a.factor);
 }

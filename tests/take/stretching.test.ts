@@ -95,6 +95,18 @@ describe('the least stretch of time', () => {
     expect(stretchFor(demandsOf(motionOf(take)))).toBe(1);
   });
 
+  it('is not asked for by a start or an end in the middle of a motion: the governor comes up to it and stops', async () => {
+    // Amplitude 0.6 rad at 0.25 Hz, from its fastest moment to its fastest moment: 0.94 of 1.05 rad/s.
+    const motion = motionOf(await led('cut-out', (s) => 0.6 * Math.sin(0.5 * Math.PI * s), 8));
+    expect(stretchFor(demandsOf(motion))).toBe(1);
+    const commands = played(motion, [1, 1], TWO_ARMS, 60);
+    expectLawful(TWO_ARMS, commands);
+    const beganUs = commands[0]?.tUs ?? 0;
+    const inside = commands.filter(({ tUs }) => tUs > beganUs + 1_000_000 && tUs < beganUs + 7_900_000);
+    expect(inside.length).toBeGreaterThan(600);
+    expect(inside.filter(({ isLimited }) => isLimited)).toEqual([]);
+  });
+
   it('counts the seam of a loop', async () => {
     // A ramp from -0.8 to 0.8 rad that has to come back in half a second: 1.6 rad by minimum jerk at 1.875 times its mean
     // speed (T. Flash, N. Hogan, J. Neurosci. 5 (1985)) is 6 rad/s, and faster still from and to a speed the other way.
