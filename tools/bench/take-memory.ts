@@ -65,7 +65,9 @@ export async function memories(
 
 async function peakOf(what: keyof typeof JOBS, file: string): Promise<number> {
   const self = join(import.meta.dirname, 'take-memory.ts');
-  const { stdout } = await promisify(execFile)(process.execPath, ['--import', 'tsx', self, what, file]);
+  const { stdout } = await promisify(execFile)(process.execPath, ['--import', 'tsx', self, what, file], {
+    cwd: import.meta.dirname,
+  });
   return Number(stdout);
 }
 
