@@ -215,6 +215,25 @@ function arm(mm: number): string {
   return `    arm: { links: [${link('base')}, ${link('elbow')}] }`;
 }
 
+describe('a cap on the speed of link ends', () => {
+  const capped = rigOf(
+    rigYaml([
+      ['wren', 'sim:arm?name=wren', `    tip_speed_mm_s: 250\n${arm(400)}`],
+      ['stork', 'sim:arm?name=stork'],
+    ]),
+  );
+
+  it('is kept by the same promise', async () => {
+    const motion = motionOf(await cosine('capped', 0.5, 0.25), capped);
+    const demands = demandsOf(motion);
+    expect(demands[0]).toMatchObject({ follower: 'wren', of: 'link ends', kind: 'end speed' });
+    const factor = stretchFor(demands);
+    expect(played(motion, [factor, factor], capped, 60).filter(({ isLimited }) => isLimited)).toEqual([]);
+    const faster = played(motion, [0.97 * factor, 0.97 * factor], capped, 60);
+    expect(faster.filter(({ isLimited }) => isLimited).length).toBeGreaterThan(50);
+  });
+});
+
 describe('the weight of an arm', () => {
   it('stretches its time as a pendulum of its size: T = 2 pi sqrt(L / g)', () => {
     // g = 9.80665 m/s^2 (3rd CGPM, 1901): periods of 0.634482 s at 0.1 m and 2.006409 s at 1 m.
