@@ -1,7 +1,7 @@
 import { Command, InvalidArgumentError, Option } from '@commander-js/extra-typings';
 import type { CommandUnknownOpts } from '@commander-js/extra-typings';
 import { durationOption } from './options.ts';
-import type { PlayOptions } from './take-play.ts';
+import type { PlayOptions } from './take-play-options.ts';
 import { realTakeWorld, type TakeWorld } from './take-world.ts';
 import { realWorld, type World } from './world.ts';
 

@@ -1,7 +1,8 @@
 import { existsSync, readdirSync, statSync, writeFileSync } from 'node:fs';
 import { join } from 'node:path';
 import { afterAll, beforeAll, describe, expect, it } from 'vitest';
-import { playTake, type PlayOptions } from '../../src/cli/take-play.ts';
+import { playTake } from '../../src/cli/take-play.ts';
+import type { PlayOptions } from '../../src/cli/take-play-options.ts';
 import type { TakeWorld } from '../../src/cli/take-world.ts';
 import { filmed } from '../take/studio.ts';
 import { scratch, smallRig, smallRigText, type SmallRig } from './rigs.ts';
@@ -154,6 +155,18 @@ describe('a play', () => {
     expect(await on.ended(on.ending)).toBe(2);
     expect(on.told()).toMatch(sentence);
     expect(on.isOpen()).toBe(false);
+  });
+
+  it.each([
+    [true, /time is stretched [2-9]\.\d\d times: the speed of wren's base/],
+    [false, /^(?!.*time is stretched)/s],
+  ])('stretches the time of commands where the rig goes in unison (%s)', async (unison, sentence) => {
+    const slow = [{ name: 'wren', base: 'range_deg: [-40, 40], speed_deg_s: 8, accel_deg_s2: 240' }];
+    const text = smallRigText({ followers: slow }).replace('rig: small', `rig: small\nunison: ${unison}`);
+    const on = play({ rig: files.write('slow.yaml', text), by: 'commands', from: '2s', to: '4s' });
+    await until(on, /playing bow/);
+    expect(await on.ended(on.ending)).toBe(0);
+    expect(on.told()).toMatch(sentence);
   });
 
   it('names the joint that a rig has and the take has not', async () => {
