@@ -114,6 +114,21 @@ describe('eidograph take', () => {
     expect(existsSync(`${file}2`)).toBe(false);
   });
 
+  it('orders demonstrations, the best first, each with what it was judged by', async () => {
+    const plain = await take('best bow bow-again');
+    expect(plain.status).toBe(0);
+    const lines = plain.out.trimEnd().split('\n');
+    expect(lines.map((line) => line.split(' ')[0]).toSorted()).toEqual(['bow', 'bow-again']);
+    expect(lines[0]).toMatch(/places: arc length -\d+\.\d\d, jerk -\d+\.\d\d, held back \d+\.\d s, \d+ dropouts, \d/);
+    const { takes } = JSON.parse((await take('best bow bow-again --json')).out) as {
+      takes: readonly { take: string; places: number }[];
+    };
+    expect(takes.map((one) => one.take)).toEqual(lines.map((line) => line.split(' ')[0]));
+    expect(takes[0]?.places).toBeLessThanOrEqual(takes[1]?.places ?? 0);
+    const alone = await take('best bow');
+    expect([alone.status, alone.err]).toEqual([2, expect.stringContaining('there is no other take to choose from')]);
+  });
+
   it('compares two takes', async () => {
     const { joints } = JSON.parse((await take('compare bow bow-again --json')).out) as {
       joints: { joint: string; rms_deg: number }[];
