@@ -30,6 +30,7 @@ export function playing(
     by: 'layer',
     parents: [{ take: take.name, rows: take.rows }],
     how: { in_hand: layer?.joints.join(' ') ?? '' },
+    posed: true,
   };
 
   const changed = (phase: Phase): void => {

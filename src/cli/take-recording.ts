@@ -49,7 +49,7 @@ const ROOM_MIN_BYTES = 64 * 1024 * 1024;
 const ROOM_LOW_BYTES = 1024 * 1024 * 1024;
 const LOOK_US = US_PER_S;
 const LOOKS_A_ROOM_LOOK = 10;
-const RECORDED: Made = { by: 'record', parents: [], how: {} };
+const RECORDED: Made = { by: 'record', parents: [], how: {}, posed: false };
 /** Batches encoded before anything moves: the first ones of a cold process would keep commands waiting. */
 const WARM_BATCHES = 30;
 

@@ -60,7 +60,8 @@ export function* derive(
 /** The header of a take made of `parents`, the first of which gives its joints. */
 export function derivedHeader(parents: readonly Take[], by: Made['by'], how: Made['how']): TakeHeader {
   const [first] = parents as readonly [Take, ...Take[]];
-  const made = { by, how, parents: parents.map(({ name, rows }) => ({ take: name, rows })) };
+  const posed = by === 'smooth' || by === 'splice' || parents.some((parent) => parent.header.made.posed);
+  const made = { by, how, posed, parents: parents.map(({ name, rows }) => ({ take: name, rows })) };
   return { ...first.header, fromStart: false, made };
 }
 

@@ -46,6 +46,8 @@ export interface Made {
   readonly parents: readonly { readonly take: string; readonly rows: number }[];
   /** What was asked for, in the units of its keys. */
   readonly how: Readonly<Record<string, string | number | boolean>>;
+  /** Its poses were led by a take, or made up afterwards: counts tell only what the hand did meanwhile. */
+  readonly posed: boolean;
 }
 
 const TAKE_VERSION = 1;
@@ -80,6 +82,7 @@ const header = z.object({
     by: z.enum(['record', 'layer', 'trim', 'splice', 'smooth', 'retime']),
     parents: z.array(z.object({ take: z.string(), rows: finite })),
     how: z.record(z.string(), z.union([z.string(), finite, z.boolean()])),
+    posed: z.boolean(),
   }),
 });
 

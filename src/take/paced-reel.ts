@@ -24,7 +24,7 @@ interface Walk {
  */
 export function* pacedReel(motion: Motion, factors: readonly number[]): Generator<Row> {
   const { take, plan } = motion;
-  const made = { by: 'retime', parents: [], how: {} } as const;
+  const made = { by: 'retime', parents: [], how: {}, posed: true } as const;
   const row = makeRow(takeHeader({ name: take.header.rig, plan }, [], 0, false, made));
   row.event = EVENT_CODES.target;
   const walks = walksOf(motion, factors);

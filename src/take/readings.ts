@@ -57,8 +57,7 @@ function* tellings(take: Take, places: readonly number[], cast: readonly number[
 
 /** Who moved the arms of a take. */
 function ledBy(take: Take): 'hand' | 'poses' | 'commands' {
-  const { by } = take.header.made;
-  let found: 'hand' | 'poses' = by === 'smooth' || by === 'splice' || by === 'layer' ? 'poses' : 'hand';
+  let found: 'hand' | 'poses' = take.header.made.posed ? 'poses' : 'hand';
   for (const { event } of take.readFrom(0)) {
     if (event === EVENT_CODES.target) return 'commands';
     if (event === EVENT_CODES.pose || event === EVENT_CODES.blend) found = 'poses';

@@ -243,6 +243,29 @@ describe('eidograph trace', () => {
     expect(new Set(angles.map(([, target]) => target)).size).toBeGreaterThan(50);
   });
 
+  it('reads the poses of a take that was smoothed, however it was cut afterwards', async () => {
+    await take('smooth bow --cutoff 0.5 --as calm');
+    await take('trim calm --from 1s --to 5s --as calm-cut');
+    await take('trim bow --from 1s --to 5s --as bow-cut');
+    const targets = async (name: string, fromMs: number): Promise<readonly number[]> =>
+      (await traced(name)).rows
+        .map((row) => row.split(','))
+        .filter(([ms, arm, , joint]) => Number(ms) >= fromMs && arm === 'wren' && joint === 'base')
+        .slice(0, 100)
+        .map(([, , , , target]) => Number(target));
+    // Two seconds into the cut the arms have long met.
+    const [whole, cut, raw] = [
+      await targets('calm', 3_000),
+      await targets('calm-cut', 2_000),
+      await targets('bow-cut', 2_000),
+    ];
+    const apart = (a: readonly number[], b: readonly number[]): number =>
+      Math.max(...a.map((target, i) => Math.abs(target - (b[i] ?? Number.NaN))));
+    expect(whole.length).toBe(100);
+    expect(apart(cut, whole)).toBeLessThan(0.5);
+    expect(apart(cut, raw)).toBeGreaterThan(1);
+  });
+
   it('refuses a take whose arms were led by commands, with a remedy', async () => {
     const writer = fileWriter(folder, 'commanded', headerOf(TWO_ARMS));
     for (let i = 0; i < 100; i++) {

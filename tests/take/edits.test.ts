@@ -66,6 +66,7 @@ describe('trim', () => {
     });
     expect(made('trimmed').header.made).toEqual({
       by: 'trim',
+      posed: false,
       parents: [{ take: 'raw', rows: take.rows }],
       how: { from_s: 3, to_s: stretch.toUs / 1e6 },
     });

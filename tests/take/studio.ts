@@ -13,7 +13,7 @@ import { copyRow, row as makeRow, type Row } from '../../src/take/row.ts';
 import { takeWriter, type TakeWriter } from '../../src/take/writer.ts';
 import { Performance, rigOf, rigYaml } from '../bridge/performance.ts';
 
-const RECORDED: Made = { by: 'record', parents: [], how: {} };
+const RECORDED: Made = { by: 'record', parents: [], how: {}, posed: false };
 
 /** A folder of its own for a test file, gone afterwards. */
 export function takesFolderForTests(): string {

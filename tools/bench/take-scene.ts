@@ -82,7 +82,7 @@ export function scenery(file: string | null): Scenery {
 function header(): TakeHeader {
   const { plan } = scene(FOLLOWERS, 'frames');
   const inputs = plan.leader.joints.map(({ name }) => name);
-  return takeHeader({ name: 'bench', plan }, inputs, 0, true, { by: 'record', parents: [], how: {} });
+  return takeHeader({ name: 'bench', plan }, inputs, 0, true, { by: 'record', parents: [], how: {}, posed: false });
 }
 
 /** A take that is another one so many times over, in batches as a recording has them. */
