@@ -118,7 +118,7 @@ describe('eidograph take', () => {
     const plain = await take('best bow bow-again');
     expect(plain.status).toBe(0);
     const lines = plain.out.trimEnd().split('\n');
-    expect(lines.map((line) => line.split(' ')[0]).toSorted()).toEqual(['bow', 'bow-again']);
+    expect(new Set(lines.map((line) => line.split(' ')[0]))).toEqual(new Set(['bow', 'bow-again']));
     expect(lines[0]).toMatch(/places: arc length -\d+\.\d\d, jerk -\d+\.\d\d, held back \d+\.\d s, \d+ dropouts, \d/);
     const { takes } = JSON.parse((await take('best bow bow-again --json')).out) as {
       takes: readonly { take: string; places: number }[];
