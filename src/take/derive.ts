@@ -3,7 +3,7 @@ import { US_PER_S } from '../clock/clock.ts';
 import { offlineDisk, wholeFile } from './disk.ts';
 import { diskFault, takeFault, type TakeFault } from './fault.ts';
 import { takeFile } from './folder.ts';
-import type { Made, TakeHeader } from './header.ts';
+import { type Made, POSING, type TakeHeader } from './header.ts';
 import type { Mark, Take } from './reader.ts';
 import { copyRow, type Row } from './row.ts';
 import { takeWriter } from './writer.ts';
@@ -60,7 +60,7 @@ export function* derive(
 /** The header of a take made of `parents`, the first of which gives its joints. */
 export function derivedHeader(parents: readonly Take[], by: Made['by'], how: Made['how']): TakeHeader {
   const [first] = parents as readonly [Take, ...Take[]];
-  const posed = by === 'smooth' || by === 'splice' || parents.some((parent) => parent.header.made.posed);
+  const posed = POSING.has(by) || parents.some((parent) => parent.header.made.posed);
   const made = { by, how, posed, parents: parents.map(({ name, rows }) => ({ take: name, rows })) };
   return { ...first.header, fromStart: false, made };
 }

@@ -50,6 +50,9 @@ export interface Made {
   readonly posed: boolean;
 }
 
+/** What makes poses of its own, or takes them from another take. */
+export const POSING: ReadonlySet<Made['by']> = new Set(['layer', 'splice', 'smooth']);
+
 const TAKE_VERSION = 1;
 const VERSION_KEY = 'eidograph.take_version';
 const HEADER_KEY = 'eidograph.take';
@@ -78,12 +81,15 @@ const header = z.object({
       }),
     )
     .max(127),
-  made: z.object({
-    by: z.enum(['record', 'layer', 'trim', 'splice', 'smooth', 'retime']),
-    parents: z.array(z.object({ take: z.string(), rows: finite })),
-    how: z.record(z.string(), z.union([z.string(), finite, z.boolean()])),
-    posed: z.boolean(),
-  }),
+  made: z
+    .object({
+      by: z.enum(['record', 'layer', 'trim', 'splice', 'smooth', 'retime']),
+      parents: z.array(z.object({ take: z.string(), rows: finite })),
+      how: z.record(z.string(), z.union([z.string(), finite, z.boolean()])),
+      // Takes made before the key was do not have it, and are used for years.
+      posed: z.boolean().optional(),
+    })
+    .transform(({ posed, ...made }) => ({ ...made, posed: posed ?? POSING.has(made.by) })),
 });
 
 /** @param inputs names of the leader board's inputs, in its own order */
