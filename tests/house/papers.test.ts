@@ -1,4 +1,4 @@
-import { readFileSync } from 'node:fs';
+import { existsSync, readFileSync } from 'node:fs';
 import { createRequire } from 'node:module';
 import { join } from 'node:path';
 import { describe, expect, it } from 'vitest';
@@ -41,4 +41,10 @@ it.each(['README.md', 'DEVELOPERS.md'])('every script that %s names is there', (
   const named = found(read(paper), /npm run ([\w:]+)/g);
   expect(named.length).toBeGreaterThan(0);
   expect(named.filter((name) => !(name in scripts))).toEqual([]);
+});
+
+it.each(['README.md', 'DEVELOPERS.md'])('every file that %s names by its path is there', (paper) => {
+  const named = found(read(paper), /[`(]((?:src|tests|tools|profiles)\/[\w./-]*\w)[`)]/g);
+  expect(named.length).toBeGreaterThan(0);
+  expect(named.filter((path) => !existsSync(join(ROOT, path)))).toEqual([]);
 });
