@@ -178,6 +178,9 @@ export const BLOCK_WORDS: Readonly<Record<keyof typeof BLOCKS, string>> = {
   fault: 'given up after a fault of this program; end the run and report it',
 };
 
+/** Of a follower as the lead goes from hand to take, or back. */
+export const LEAD_CHANGES = 'the lead changes; it joins gently';
+
 export const LIMIT_WORDS: Readonly<Record<keyof typeof LIMITS, string>> = {
   range: 'end of range',
   speed: 'full speed',

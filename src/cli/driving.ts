@@ -1,7 +1,7 @@
 import { live as makeLive, type Live } from '../bridge/live.ts';
 import type { LogLevel } from '../bridge/log.ts';
 import type { WakeMemory } from '../bridge/wake-memory.ts';
-import { CAUTIONS, ENDINGS, INTERRUPTED, leftHolding, notParked } from '../bridge/words.ts';
+import { CAUTIONS, ENDINGS, INTERRUPTED, LEAD_CHANGES, leftHolding, notParked } from '../bridge/words.ts';
 import { type Cancel, US_PER_MS } from '../clock/clock.ts';
 import type { Port } from '../port/types.ts';
 import type { CompiledBoard, CompiledRig } from '../rig/compiled.ts';
@@ -110,11 +110,13 @@ function wakesAt(rig: CompiledRig, memory: WakeMemory | null): readonly WakesAt[
 }
 
 function tellStates(live: Live, { display, atUs }: Showing): Cancel {
-  return watchStates(live, (f, from, to) => {
+  return watchStates(live, (f, from, to, by) => {
     const { followers, boards } = live.status();
     const status = followers[f] as (typeof followers)[number];
     const port = boards.find((board) => board.followers.includes(status.follower)) ?? null;
-    display.changed({ atUs: atUs(), follower: status.follower, from, to, reasons: reasons(status, port) });
+    // Whoever leads from now on has said nothing yet, in the very instant in which it takes over.
+    const why = by.kind === 'lead' ? [LEAD_CHANGES] : reasons(status, port);
+    display.changed({ atUs: atUs(), follower: status.follower, from, to, reasons: why });
   });
 }
 

@@ -114,6 +114,9 @@ describe('a play', () => {
     await until(on, /the hand leads, bow waits/);
     await on.pass(3_000);
     on.type('o');
+    await on.pass(100);
+    expect(on.screen()).toMatch(/wren has stopped following and is holding: the lead changes; it joins\s+gently/);
+    expect(on.screen()).not.toContain('no fresh reading');
     await until(on, /bow in 3 s/);
     await until(on, /playing bow 1 s/);
     expect(await on.ended(on.ending)).toBe(0);
