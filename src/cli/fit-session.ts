@@ -83,6 +83,12 @@ export async function measure(
     drawn = '';
   };
 
+  /** The question stands again at once: a person may be about to press Enter, and would answer nothing that can be seen. */
+  const tell = (text: string): void => {
+    print(text);
+    show();
+  };
+
   const live: Live = makeLive({
     rig: measured,
     clock,
@@ -90,8 +96,8 @@ export async function measure(
     memory: null,
     unasked: false,
     dry: false,
-    say: (word) => print(speak(word).text),
-    onBug: (follower, bug) => print(`${follower} is given up after a fault of this program: ${String(bug)}`),
+    say: (word) => tell(speak(word).text),
+    onBug: (follower, bug) => tell(`${follower} is given up after a fault of this program: ${String(bug)}`),
   });
 
   const effect = (wanted: SessionEffect): void => {

@@ -92,6 +92,25 @@ const inTurn = (...texts: readonly (string | null)[]): (() => string | null) => 
 };
 
 describe('A session', () => {
+  it('has its question stand again in the instant in which something else is said', async () => {
+    const { clock, seat } = bench();
+    const ending = measure(load(), [], null, { keep: () => {}, close: () => {} }, seat.table);
+    const questions = new Set<string>();
+    let said = 0;
+    // The boards open, one answers at once, and the other is taken to be ready after 2.5 s.
+    for (let ms = 1; ms <= 4_000; ms++) {
+      clock.runTo(ms * 1000);
+      const printed = seat.printed();
+      if (printed.length === said) continue;
+      said = printed.length;
+      questions.add(printed.slice(printed.lastIndexOf('\n') + 1));
+    }
+    expect(seat.printed()).toContain('wren: ');
+    expect([...questions].filter((question) => !/[:?] $/.test(question))).toEqual([]);
+    seat.input.end();
+    await expect(ending).resolves.toBe('interrupted');
+  });
+
   it('takes a person through every step, and what it keeps gives back the planted truth', async () => {
     const { clock, leader, horns, seat } = bench();
     const loaded = load();

@@ -29,6 +29,7 @@ const ALIKE = { gain: -0.3, offset: 2 };
 
 const READING_MS = 10;
 const LOOK_MS = 25;
+const PATIENCE_US = 20_000_000;
 /** A quarter of an hour of a machine that is busy with much else; a minute and a half of one that is not. */
 const EVENING_MS = 900_000;
 
@@ -157,6 +158,7 @@ async function sat(at: Screen, answer: ReturnType<typeof replies>, hand: Pick<Cl
   const endUs = hand.nowUs() + EVENING_MS * 1000;
   let looked = '';
   let typed: string | null = null;
+  let typedUs = 0;
   let from = 0;
   for (;;) {
     await pause(LOOK_MS);
@@ -171,7 +173,8 @@ async function sat(at: Screen, answer: ReturnType<typeof replies>, hand: Pick<Cl
     if (typed !== null) {
       // A notice may come between: only a line that was entered counts.
       const entered = lines.findIndex((line, i) => i >= from && i < lines.length - 1 && line === typed);
-      if (entered < 0) continue;
+      // A question that stands so long waits for an answer, wherever the last one went.
+      if (entered < 0 && hand.nowUs() - typedUs < PATIENCE_US) continue;
       from = entered + 1;
       typed = null;
     }
@@ -180,6 +183,7 @@ async function sat(at: Screen, answer: ReturnType<typeof replies>, hand: Pick<Cl
     const reply = answer(ask, lines.join('\n'));
     while (hand.nowUs() < reply.untilUs) await pause(LOOK_MS);
     typed = ask + reply.text;
+    typedUs = hand.nowUs();
     from = lines.length - 1;
     at.type(`${reply.text}\r`);
   }
