@@ -47,6 +47,8 @@ const BEND_LEAST = 1e-5;
 const BEND_MOST = 1e-1;
 const BENDS = 31;
 
+/** The same curves for every map: a report says the same each time it is made. */
+const SEED = 1;
 /** Curves that are drawn: the 95th of a hundred is then within a half of its place. */
 const CURVES = 2000;
 /** Places along a map where a curve is compared with it: five to each half wave of the highest degree. */
@@ -78,7 +80,7 @@ export function errorOfMap(
   const terms = Float64Array.from(places.flatMap((x) => all.map(({ last }) => last.value(x))));
   const map = Float64Array.from(places, value);
   const drawn = new Float64Array(all.length);
-  const normal = normals();
+  const chance = random(SEED, 0);
   const off = new Float64Array(CURVES);
   let at = 0;
   let passed = 0;
@@ -90,7 +92,7 @@ export function errorOfMap(
     const { scatter, bends } = beliefs[at] as Belief;
     for (const [degree, { last }] of all.entries()) {
       const kept = degree < 2 ? 1 : (bends[degree] as number) / ((bends[degree] as number) + scatter * scatter);
-      drawn[degree] = kept * last.coefficient + scatter * Math.sqrt(kept) * normal();
+      drawn[degree] = kept * last.coefficient + scatter * Math.sqrt(kept) * chance.normal();
     }
     let most = 0;
     for (let p = 0; p < PLACES; p++) {
@@ -133,12 +135,4 @@ function weighed(all: readonly Polynomial[], span: number, { noise, usualScatter
 /** Logarithm of the density of a half-t, over even steps of the logarithm of its variable. */
 function halfT(t: number, dof: number): number {
   return Math.log(t) - ((dof + 1) / 2) * Math.log1p((t * t) / dof);
-}
-
-const SEED = 1;
-
-/** The same normal deviates for every map: a report says the same each time it is made. Box and Muller (1958). */
-function normals(): () => number {
-  const chance = random(SEED, 0);
-  return () => Math.sqrt(-2 * Math.log(1 - chance.uniform())) * Math.cos(2 * Math.PI * chance.uniform());
 }

@@ -4,6 +4,8 @@ export interface Random {
   uniform(): number;
   /** Uniform in [low, high). */
   between(low: number, high: number): number;
+  /** Gaussian, mean 0 and deviation 1. */
+  normal(): number;
 }
 
 const WORD = 2 ** 32;
@@ -32,21 +34,31 @@ export function random(seed: number, stream: number): Random {
   };
   for (let round = 0; round < MIXING_ROUNDS; round++) word();
   const uniform = (): number => word() / WORD;
-  return { uniform, between: (low, high) => low + (high - low) * uniform() };
+  return {
+    uniform,
+    between: (low, high) => low + (high - low) * uniform(),
+    normal: () => gaussianOf(1 - uniform(), uniform()),
+  };
 }
 
 /**
  * Gaussian noise as a pure function of seed, instant and channel, mean 0 and deviation 1: a noisy reading then
  * depends on when it is taken, never on how many were taken before.
- * Box and Muller, "A Note on the Generation of Random Normal Deviates", Ann. Math. Statist. 29 (1958) 610-611.
  */
 export function noiseAt(seed: number, atUs: number, channel: number): number {
   let hash = mixed(lowWord(seed) + GOLDEN * (channel + 1));
   hash = mixed(hash ^ highWord(seed));
   hash = mixed(hash ^ lowWord(atUs));
   hash = mixed(hash ^ highWord(atUs));
-  const radius = Math.sqrt(-2 * Math.log((hash + 1) / WORD));
-  return radius * Math.cos((2 * Math.PI * mixed(hash ^ GOLDEN)) / WORD);
+  return gaussianOf((hash + 1) / WORD, mixed(hash ^ GOLDEN) / WORD);
+}
+
+/**
+ * Of two independent uniform numbers, the first above 0.
+ * Box and Muller, "A Note on the Generation of Random Normal Deviates", Ann. Math. Statist. 29 (1958) 610-611.
+ */
+function gaussianOf(size: number, turn: number): number {
+  return Math.sqrt(-2 * Math.log(size)) * Math.cos(2 * Math.PI * turn);
 }
 
 /** Finaliser of MurmurHash3 for 32 bits (A. Appleby, public domain; from memory): every input bit stirs every output bit. */
