@@ -11,7 +11,7 @@ import { outbox, type CommandKind } from './outbox.ts';
 import type { Shared } from './shared.ts';
 import type { Shares } from './shares.ts';
 import { standing, type Standing } from './standing.ts';
-import { type Steering, steering } from './steering.ts';
+import { Steering } from './steering.ts';
 
 /** How a follower stands when the drive is made. */
 export interface Start {
@@ -56,7 +56,7 @@ const EARLY_SHARE = 0.1;
 const PERIODS_MAX = 2;
 
 /** What all stages of one drive share. */
-export interface Company {
+export interface DriveParts {
   readonly lead: LeaderStage;
   readonly common: Shared;
   readonly share: Shares;
@@ -80,7 +80,13 @@ class Stage implements FollowerStage {
   readonly #rule: Authority;
   readonly #steer: Steering;
 
-  constructor(arm: Follower, index: number, { lead, common, share }: Company, start: Start, siblings: FollowerStage[]) {
+  constructor(
+    arm: Follower,
+    index: number,
+    { lead, common, share }: DriveParts,
+    start: Start,
+    siblings: FollowerStage[],
+  ) {
     const { spec } = arm;
     const { is } = this;
     const pending = this.#pending;
@@ -94,7 +100,7 @@ class Stage implements FollowerStage {
     this.#siblings = siblings;
     this.#aim = aim(arm.governor.x);
     this.#rule = authority(is, index, arm, lead, common, { share, pending, jogging, unasked: start.unasked });
-    this.#steer = steering(is, index, arm, lead, common, { share, jogging, aim: this.#aim, rule: this.#rule });
+    this.#steer = new Steering(is, index, arm, lead, common, { share, jogging, aim: this.#aim, rule: this.#rule });
   }
 
   switching(): boolean {
@@ -228,7 +234,7 @@ class Stage implements FollowerStage {
 export function followerStage(
   arm: Follower,
   index: number,
-  company: Company,
+  company: DriveParts,
   start: Start,
   siblings: FollowerStage[],
 ): FollowerStage {

@@ -8,14 +8,6 @@ import type { Shared } from './shared.ts';
 import type { Shares } from './shares.ts';
 import type { Standing } from './standing.ts';
 
-/** What the arm does in each state: one governed step, and what its end state entails. */
-export interface Steering {
-  /** Moves the arm by dtS[0] seconds as its state asks. */
-  step(dtS: Float64Array): void;
-  /** Brakes for dtS[0] seconds, whatever its state. */
-  brake(dtS: Float64Array): void;
-}
-
 const MET_RAD = (1 * Math.PI) / 180;
 /** A target is followed on for this many periods of the arm after its instant, and no longer. */
 const AHEAD_PERIODS = 2;
@@ -28,7 +20,8 @@ interface Parts {
   readonly rule: Authority;
 }
 
-class ByState implements Steering {
+/** What the arm does in each state: one governed step, and what its end state entails. */
+export class Steering {
   readonly #is: Standing;
   readonly #index: number;
   readonly #arm: Follower;
@@ -49,6 +42,7 @@ class ByState implements Steering {
     this.#ahead = new Float64Array(parts.aim.speedsRadS.length);
   }
 
+  /** Moves the arm by dtS[0] seconds as its state asks. */
   step(dtS: Float64Array): void {
     const is = this.#is;
     const arm = this.#arm;
@@ -78,6 +72,7 @@ class ByState implements Steering {
     this.#settle();
   }
 
+  /** Brakes for dtS[0] seconds, whatever its state. */
   brake(dtS: Float64Array): void {
     this.#arm.brake(dtS);
     this.#settle();
@@ -145,15 +140,4 @@ class ByState implements Steering {
       if (is.limpAfterPark) rule.raise('limp');
     } else if (is.state === 'stopped' && arm.spec.stopCategory === 1 && is.pulsed) rule.cutPower();
   }
-}
-
-export function steering(
-  is: Standing,
-  index: number,
-  arm: Follower,
-  lead: LeaderStage,
-  common: Shared,
-  parts: Parts,
-): Steering {
-  return new ByState(is, index, arm, lead, common, parts);
 }
