@@ -32,7 +32,7 @@ export function deadbandOf(steps: readonly PulseStep[]): Estimate | null {
       still = 0;
     } else if (onward) still = Math.abs(change);
     // A step back inside the deadband: from here on nobody knows on which side of the play it stands.
-    else if (came !== 0) came = 0;
+    else came = 0;
   }
   const n = between.length;
   if (n === 0) return null;
