@@ -27,6 +27,9 @@ joints:
   - { name: elbow, from: { base: 1, elbow: 1 }, range_deg: [-60, 60], speed_deg_s: 60, accel_deg_s2: 240, servo: { channel: 1, points: [[-90, 600], [90, 2400]] } }
 `;
 
+/** What a fit asks for that asks for nothing beyond. */
+export const PLAIN = { json: false, dryRun: false, partly: false, report: undefined, smooth: false } as const;
+
 export const HEADER = 'step,arm,joint,counts,pulse_us,known_deg\n';
 /** Points of a straight pot, 4 counts a degree, read a little wrong. */
 export const points = (joint: string, wrongAt?: number): string => {
@@ -74,13 +77,9 @@ export function fitDesk(): FitDesk {
       const status = fitFromCaptures(
         rig,
         {
+          ...PLAIN,
           from: at,
           check: undefined,
-          json: false,
-          dryRun: false,
-          partly: false,
-          report: undefined,
-          smooth: false,
           wish: { jitterM: 0.0005, lagS: 0.06 },
           ...options,
         },

@@ -2,7 +2,7 @@ import { afterAll, beforeEach, describe, expect, it } from 'vitest';
 import { fitFromCaptures, fitMeasured } from '../../src/cli/fit.ts';
 import { filesOnDisk } from '../../src/cli/fit-files.ts';
 import type { FitReport } from '../../src/fit/report.ts';
-import { fitDesk, HEADER, LEADER, points, RIG, WREN } from './fit-desk.ts';
+import { fitDesk, HEADER, LEADER, PLAIN, points, RIG, WREN } from './fit-desk.ts';
 
 const desk = fitDesk();
 const { fit, read, there } = desk;
@@ -150,16 +150,7 @@ it('A file that cannot be written takes the others back', () => {
   const err: string[] = [];
   const status = fitFromCaptures(
     desk.rig,
-    {
-      from: at,
-      check: undefined,
-      json: false,
-      dryRun: false,
-      partly: false,
-      report: undefined,
-      smooth: false,
-      wish: { jitterM: 1, lagS: 1 },
-    },
+    { ...PLAIN, from: at, check: undefined, wish: { jitterM: 1, lagS: 1 } },
     {
       ...disk,
       replace: (change) =>
@@ -186,23 +177,17 @@ describe('eidograph fit --check', () => {
   });
 });
 
+/** Of a session that asks for nothing beyond. */
+const FLAGS = { ...PLAIN, wish: { jitterM: 1, lagS: 1 }, captures: undefined };
+
 it('A session adds nothing to captures of other columns, and says what to do instead', async () => {
   const at = desk.write('bench.captures.csv', HEADER + points('base'));
   const err: string[] = [];
-  const flags = {
-    json: false,
-    dryRun: false,
-    partly: false,
-    report: undefined,
-    smooth: false,
-    wish: { jitterM: 1, lagS: 1 },
-    captures: undefined,
-  };
   const nobody = (): never => {
     throw new Error('a session was begun');
   };
   const printer = { out: () => {}, err: (text: string) => void err.push(text) };
-  expect(await fitMeasured(desk.rig, flags, nobody, filesOnDisk(), printer)).toBe(2);
+  expect(await fitMeasured(desk.rig, FLAGS, nobody, filesOnDisk(), printer)).toBe(2);
   expect(err.join('')).toBe(
     `error: ${at}: its columns are not those of a session; name another file with --captures, or fit this one with --from\n`,
   );
@@ -212,16 +197,7 @@ it('A session adds nothing to captures of other columns, and says what to do ins
 it('eidograph fit without a terminal says what to do instead', async () => {
   const err: string[] = [];
   const printer = { out: () => {}, err: (text: string) => void err.push(text) };
-  const flags = {
-    json: false,
-    dryRun: false,
-    partly: false,
-    report: undefined,
-    smooth: false,
-    wish: { jitterM: 1, lagS: 1 },
-    captures: undefined,
-  };
-  expect(await fitMeasured(desk.rig, flags, null, filesOnDisk(), printer)).toBe(2);
+  expect(await fitMeasured(desk.rig, FLAGS, null, filesOnDisk(), printer)).toBe(2);
   expect(err.join('')).toContain('say --from captures.csv');
   expect(there()).toEqual(['bench.yaml', 'leader.yaml', 'wren.yaml']);
 });

@@ -54,18 +54,19 @@ let rigs = 0;
 function play(options: Partial<PlayOptions> = {}, rig: SmallRig = {}, terminal = true): Play {
   const file = files.write(`rig-${rigs++}.yaml`, smallRigText(rig));
   const on = stage({ terminal, env: { XDG_STATE_HOME: files.path('state') }, size: { columns: 80, rows: 30 } });
+  const { at, said } = takeWorldOn(on);
+  const ending = playTake('bow', { ...PLAIN, rig: file, ...options }, on.world, at);
+  return { ...on, ending, told: () => said() + on.err() };
+}
+
+/** Where the take's own words go. */
+function takeWorldOn({ clock }: Stage): { readonly at: TakeWorld; readonly said: () => string } {
   let said = '';
   const err = { write: (text: string) => (said += text) };
-  const at: TakeWorld = {
-    clock: on.clock,
-    env: {},
-    out: err as never,
-    err,
-    watched: false,
-    onInterrupt: () => () => {},
+  return {
+    at: { clock, env: {}, out: err as never, err, watched: false, onInterrupt: () => () => {} },
+    said: () => said,
   };
-  const ending = playTake('bow', { ...PLAIN, rig: file, ...options }, on.world, at);
-  return { ...on, ending, told: () => said + on.err() };
 }
 
 const head = (on: Play): string => on.screen().split('\n')[0] ?? '';
@@ -225,19 +226,10 @@ describe('a take that cannot be played', () => {
   ])('(%s) is refused with what is the matter', async (name, bytes, sentence) => {
     writeFileSync(join(takes, `${name}.arrows`), bytes);
     const on = stage({ terminal: true });
-    let said = '';
-    const err = { write: (text: string) => (said += text) };
-    const at: TakeWorld = {
-      clock: on.clock,
-      env: {},
-      out: err as never,
-      err,
-      watched: false,
-      onInterrupt: () => () => {},
-    };
+    const { at, said } = takeWorldOn(on);
     const rig = files.write('plain.yaml', smallRigText());
     expect(await on.ended(playTake(name, { ...PLAIN, rig }, on.world, at))).toBe(2);
-    expect(said).toMatch(sentence);
+    expect(said()).toMatch(sentence);
     expect(on.isOpen()).toBe(false);
   });
 });

@@ -60,6 +60,18 @@ interface Session extends Stage {
   readonly of: Studio;
 }
 
+/** A run that starts without asking. */
+const JOINED = {
+  join: true,
+  pace: undefined,
+  only: undefined,
+  without: undefined,
+  dry: false,
+  json: false,
+  log: 'warn',
+  logFile: undefined,
+} as const;
+
 function begun(
   options: Partial<RecordingOptions>,
   { of = studio(), terminal = true, forUs = undefined as number | undefined } = {},
@@ -68,15 +80,8 @@ function begun(
   const ending = run(
     RIG,
     {
-      join: true,
-      pace: undefined,
-      only: undefined,
-      without: undefined,
-      dry: false,
+      ...JOINED,
       for: forUs,
-      json: false,
-      log: 'warn',
-      logFile: undefined,
       record: (rig, profiles) =>
         recording(
           { folder: files.path('takes'), name: null, countInUs: 0, marks: [], ...options, rig, profiles },
@@ -262,15 +267,8 @@ describe('on the real disk', () => {
     const ending = run(
       RIG,
       {
-        join: true,
-        pace: undefined,
-        only: undefined,
-        without: undefined,
-        dry: false,
+        ...JOINED,
         for: 1_000_000,
-        json: false,
-        log: 'warn',
-        logFile: undefined,
         record: (rig, profiles) => recording({ ...options, rig, profiles }, on.world.err.write),
       },
       on.world,
